@@ -1,0 +1,229 @@
+package mesh
+
+import (
+	"fmt"
+	"math"
+	"sort"
+
+	"github.com/tautspan/tautspan/engine/scenario"
+	"github.com/tautspan/tautspan/engine/statics"
+)
+
+// Build turns a bound scenario into its mesh. It fails with a
+// *scenario.PathError where the scenario has no static shape to start from.
+func Build(net *scenario.Network) (*Mesh, error) {
+	rest, err := statics.Hold(net)
+	if err != nil {
+		return nil, err
+	}
+	b := &builder{net: net, rest: rest, m: &Mesh{Timing: timing(&net.Run)}}
+	b.cut()
+	b.fittings()
+	b.links()
+	b.starts()
+	if err := b.loads(); err != nil {
+		return nil, err
+	}
+	b.watches()
+	for i := range b.m.Pieces {
+		p := &b.m.Pieces[i]
+		sort.SliceStable(p.Marks, func(a, c int) bool { return p.Marks[a].At < p.Marks[c].At })
+	}
+	b.m.Jump = b.jump()
+	b.m.Band = b.band()
+	for i := range b.m.Channels {
+		c := &b.m.Channels[i]
+		c.Means = means(c.Quantity, b.m.Jump)
+	}
+	return b.m, nil
+}
+
+// timing is the output grid: whole steps that fit into the duration.
+func timing(r *scenario.RunOf[float64]) Timing {
+	return Timing{Every: r.Every, Rows: int(math.Floor(r.For/r.Every*(1+1e-12))) + 1}
+}
+
+// means is how often a record must be averaged over one output interval to be
+// continuous, when derivatives of order jump and above may jump.
+func means(q scenario.Quantity, jump int) int {
+	order := 0
+	switch q {
+	case scenario.Velocity, scenario.Slope, scenario.Force:
+		order = 1
+	case scenario.Acceleration:
+		order = 2
+	case scenario.Tension, scenario.Moment:
+		return 0
+	}
+	return min(max(0, order-jump+1), 2)
+}
+
+type builder struct {
+	net    *scenario.Network
+	rest   *statics.Rest
+	m      *Mesh
+	cuts   [][]float64 // of each line: places where pieces meet, m along it, increasing
+	nodeAt [][]int     // node of each cut
+}
+
+// inner is where a named node, tie end or sensor mass cuts a line.
+func (b *builder) cut() {
+	net := b.net
+	b.cuts = make([][]float64, len(net.Lines))
+	ends := make([][]float64, len(net.Lines)) // segment ends, exact sums in walking order
+	for i := range net.Lines {
+		x := 0.0
+		ends[i] = append(ends[i], 0)
+		for _, s := range net.Lines[i].Segments {
+			x += s.Length
+			ends[i] = append(ends[i], x)
+		}
+		b.cuts[i] = append(b.cuts[i], ends[i]...)
+	}
+	add := func(p scenario.Place) {
+		if p.Node < 0 {
+			b.cuts[p.Line] = append(b.cuts[p.Line], net.Travel(p))
+		}
+	}
+	for _, tie := range net.Ties {
+		add(tie.From)
+		add(tie.To)
+	}
+	for _, w := range net.Watches {
+		if !w.Along && w.Mass > 0 {
+			add(w.At)
+		}
+	}
+	b.nodeAt = make([][]int, len(net.Lines))
+	for i := range net.Lines {
+		sort.Float64s(b.cuts[i])
+		kept := b.cuts[i][:1]
+		for _, x := range b.cuts[i][1:] {
+			if x > kept[len(kept)-1] {
+				kept = append(kept, x)
+			}
+		}
+		b.cuts[i] = kept
+		b.pieces(i, ends[i])
+	}
+}
+
+func (b *builder) pieces(line int, ends []float64) {
+	l := &b.net.Lines[line]
+	meshLine := Line{Name: l.Name, Length: ends[len(ends)-1]}
+	seg := 0
+	for k, x := range b.cuts[line] {
+		b.nodeAt[line] = append(b.nodeAt[line], len(b.m.Nodes))
+		b.m.Nodes = append(b.m.Nodes, Node{Name: "line." + l.Name, Line: line, X: x})
+		if k == 0 {
+			continue
+		}
+		for x > ends[seg+1] {
+			seg++
+		}
+		s := &l.Segments[seg]
+		from := b.cuts[line][k-1]
+		meshLine.Pieces = append(meshLine.Pieces, len(b.m.Pieces))
+		p := Piece{
+			Line: line, Segment: seg, From: len(b.m.Nodes) - 2, To: len(b.m.Nodes) - 1,
+			X0: from, S0: from - ends[seg], Length: x - from,
+			MassPerLength: s.MassPerLength, Tension: s.Tension, Viscous: s.Viscous,
+		}
+		if from == ends[seg] && x == ends[seg+1] {
+			p.Length = s.Length // as given, not as the difference of two sums
+		}
+		b.m.Pieces = append(b.m.Pieces, p)
+	}
+	b.m.Lines = append(b.m.Lines, meshLine)
+}
+
+// cutIndex is the index of the cut at x.
+func (b *builder) cutIndex(line int, x float64) int { return sort.SearchFloat64s(b.cuts[line], x) }
+
+// node is the mesh node at a place that is cut.
+func (b *builder) node(p scenario.Place) int {
+	return b.nodeAt[p.Line][b.cutIndex(p.Line, b.net.Travel(p))]
+}
+
+// spot is the mesh place of a scenario place, which may or may not be cut.
+func (b *builder) spot(p scenario.Place) Spot { return b.spotAt(p.Line, b.net.Travel(p)) }
+
+func (b *builder) spotAt(line int, x float64) Spot {
+	k := b.cutIndex(line, x)
+	cuts := b.cuts[line]
+	if k < len(cuts) && cuts[k] == x {
+		return Spot{Node: b.nodeAt[line][k], Piece: -1}
+	}
+	k = min(max(k, 1), len(cuts)-1)
+	return Spot{Node: -1, Piece: b.m.Lines[line].Pieces[k-1], At: x - cuts[k-1]}
+}
+
+func (b *builder) fittings() {
+	for i := range b.net.Lines {
+		line := &b.net.Lines[i]
+		for k := range line.Nodes {
+			from := &line.Nodes[k]
+			id := b.node(scenario.Place{Line: i, Node: k})
+			n := &b.m.Nodes[id]
+			n.Support = from.Kind == scenario.Support
+			n.Name = "line." + line.Name + "." + from.Name
+			if from.Name == "" {
+				n.Name = "line." + line.Name + "." + line.Segments[k-1].Name + "|" + line.Segments[k].Name
+			}
+			n.Fixed = from.Fixed
+			n.Mass += from.Mass
+			n.Spring += from.Spring
+			for _, d := range from.Dashpots {
+				if d.Bracket {
+					n.Brackets = append(n.Brackets, Maxwell{K: d.Through, C: d.C})
+				} else {
+					n.Dashpot += d.C
+				}
+			}
+			n.Fitting = n.Support || from.Fixed || from.Mass > 0 || from.Spring > 0 || len(from.Dashpots) > 0 || len(from.Tuned) > 0
+			if from.Absorbing {
+				n.Absorbing = true
+				for _, p := range b.m.Pieces {
+					if p.From == id || p.To == id {
+						n.Dashpot += p.Impedance()
+					}
+				}
+			}
+		}
+	}
+	for _, w := range b.net.Watches {
+		if !w.Along && w.Mass > 0 {
+			n := &b.m.Nodes[b.node(w.At)]
+			n.Mass += w.Mass
+			if n.Name == "line."+b.net.Lines[w.At.Line].Name {
+				n.Name += "." + w.Name
+			}
+		}
+	}
+}
+
+func (b *builder) links() {
+	for i := range b.net.Lines {
+		line := &b.net.Lines[i]
+		for k := range line.Nodes {
+			at := b.node(scenario.Place{Line: i, Node: k})
+			for j, td := range line.Nodes[k].Tuned {
+				name := fmt.Sprintf("%s.tuned%d", b.m.Nodes[at].Name, j+1)
+				b.m.Links = append(b.m.Links, Link{Name: name, A: at, B: len(b.m.Nodes), Spring: td.Spring, Dashpot: td.Dashpot})
+				b.m.Nodes = append(b.m.Nodes, Node{Name: name, Line: -1, X: b.m.Nodes[at].X, Mass: td.Mass})
+			}
+		}
+	}
+	for _, tie := range b.net.Ties {
+		ends := [2]int{b.node(tie.From), b.node(tie.To)}
+		for k, place := range []scenario.Place{tie.From, tie.To} {
+			n := &b.m.Nodes[ends[k]]
+			n.Mass += tie.Mass / 2
+			n.Fitting = true
+			if n.Name == "line."+b.net.Lines[place.Line].Name {
+				n.Name += "." + tie.Name
+			}
+		}
+		b.m.Links = append(b.m.Links, Link{Name: "tie." + tie.Name, A: ends[0], B: ends[1], Spring: tie.Spring, Dashpot: tie.Dashpot})
+	}
+}

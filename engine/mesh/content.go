@@ -1,0 +1,260 @@
+package mesh
+
+import (
+	"math"
+	"sort"
+
+	"github.com/tautspan/tautspan/engine/formula"
+	"github.com/tautspan/tautspan/engine/scenario"
+)
+
+// jump finds the lowest order of derivative of the displacement that the
+// excitations make jump. A point force whose own derivative of order k jumps
+// gives a jump of order k+1, a distributed one k+2, a support's displacement k;
+// a pluck bends the start shape, order 1.
+func (b *builder) jump() int {
+	order := SmoothJump
+	note := func(j int) { order = min(order, j) }
+	for _, p := range b.net.Plucks {
+		if p.Until <= 0 {
+			note(1)
+		}
+	}
+	for _, p := range b.m.Pushes {
+		note(1 + b.historyJump(p.Force))
+	}
+	for _, p := range b.m.Presses {
+		note(2 + b.historyJump(p.Force))
+	}
+	for range b.m.Rolls {
+		note(1)
+	}
+	for _, mv := range b.net.Moves {
+		note(int(mv.Kind) + b.historyJump(mv.Motion))
+	}
+	for _, s := range b.net.Starts {
+		note(b.startJump(s))
+	}
+	return order
+}
+
+// historyJump is 0 where the history's value jumps at a break or at t = 0, 1
+// where its slope does, else 2 when it has breaks, and SmoothJump when it has
+// none and starts at rest.
+func (b *builder) historyJump(h scenario.History) int {
+	end := b.m.Timing.End()
+	scale, slope := 0.0, 0.0
+	const n = 2000
+	prev := h.At(0, 0)
+	for i := 1; i <= n; i++ {
+		v := h.At(end*float64(i)/n, 0)
+		scale = math.Max(scale, math.Abs(v))
+		slope = math.Max(slope, math.Abs(v-prev)*n/end)
+		prev = v
+	}
+	for _, at := range h.Breaks {
+		scale = math.Max(scale, math.Max(math.Abs(h.At(at, 0)), math.Abs(h.At(at*(1-1e-9), 0))))
+	}
+	order := 2
+	if h.Value.Smooth() {
+		order = SmoothJump
+	}
+	eps := end * 1e-9
+	for _, at := range append([]float64{0}, h.Breaks...) {
+		if at > end {
+			continue
+		}
+		if math.Abs(h.At(at+eps, 0)-h.At(at-eps, 0)) > 1e-6*scale+4*eps*slope {
+			return 0
+		}
+		step := end * 1e-7
+		after, before := h.At(at+2*step, 0)-h.At(at+step, 0), h.At(at-step, 0)-h.At(at-2*step, 0)
+		if math.Abs(after-before)/step > 1e-3*slope {
+			order = min(order, 1)
+		}
+	}
+	return order
+}
+
+// startJump classes a start shape by its ends and its operations. A velocity
+// ranks one order above the displacement.
+func (b *builder) startJump(s scenario.StartOf[float64]) int {
+	order, base := SmoothJump, 0
+	if s.Velocity {
+		base = 1
+	}
+	if !s.Shape.Smooth() {
+		order = 1
+	}
+	line := &b.net.Lines[s.Along.Line]
+	parts := b.along(s.Along)
+	first, last := parts[0], parts[len(parts)-1]
+	length := last.Origin + b.m.Pieces[last.Piece].Length - first.Origin
+	at := func(x float64) float64 { return s.Shape.At(0, first.Origin+x) }
+	scale := 0.0
+	for i := 0; i <= 1000; i++ {
+		scale = math.Max(scale, math.Abs(at(length*float64(i)/1000)))
+	}
+	if scale == 0 {
+		return order
+	}
+	const still = 1e-6 // share of the largest value that counts as none; chosen
+	h := length * 1e-4
+	for side, x := range []float64{0, length} {
+		in := h
+		node := b.m.Pieces[first.Piece].From
+		if side == 1 {
+			in, node = -h, b.m.Pieces[last.Piece].To
+		}
+		v, v1, v2 := at(x), at(x+in), at(x+2*in)
+		bend := math.Abs(v-2*v1+v2) / scale * 1e4
+		fixed := b.m.Nodes[node].Fixed
+		switch {
+		case math.Abs(v) > still*scale:
+			order = min(order, base)
+		case !fixed && math.Abs(v1-v)/scale*1e4 > still:
+			order = min(order, base+1)
+		case bend > still*1e2:
+			order = min(order, base+2)
+		}
+	}
+	if s.Along.Segment < 0 || len(line.Segments) > 1 {
+		order = min(order, b.startAtNodes(parts, at, first.Origin, scale, base))
+	}
+	return order
+}
+
+// startAtNodes looks at what stands inside a start shape: a spring or dashpot
+// that is out of balance at once makes velocity jump, a mass acceleration.
+func (b *builder) startAtNodes(parts []Part, at func(float64) float64, origin, scale float64, base int) int {
+	order := SmoothJump
+	for _, part := range parts[1:] {
+		n := &b.m.Nodes[b.m.Pieces[part.Piece].From]
+		if !n.Fitting || math.Abs(at(part.Origin-origin)) < 1e-6*scale {
+			continue
+		}
+		switch {
+		case n.Fixed:
+			order = min(order, base)
+		case n.Mass > 0:
+			order = min(order, 2)
+		default:
+			order = min(order, 1)
+		}
+	}
+	return order
+}
+
+// band estimates the highest frequency of note that the excitations feed in, Hz:
+// three times the root-mean-square frequency of each history, and of each start
+// shape by its root-mean-square wave number. Jumps have no highest frequency and
+// are left out: Mesh.Jump tells of them.
+func (b *builder) band() float64 {
+	const times = 3
+	f := 0.0
+	for _, p := range b.m.Pushes {
+		f = math.Max(f, times*b.historyFrequency(p.Force, 0))
+	}
+	for _, p := range b.m.Presses {
+		f = math.Max(f, times*b.pressFrequency(&p))
+	}
+	for _, mv := range b.net.Moves {
+		f = math.Max(f, times*b.historyFrequency(mv.Motion, 0))
+	}
+	for _, s := range b.net.Starts {
+		parts := b.along(s.Along)
+		for _, part := range parts {
+			p := &b.m.Pieces[part.Piece]
+			k := waveNumber(func(x float64) float64 { return s.Shape.At(0, part.Origin+x) }, p.Length)
+			f = math.Max(f, times*k*p.WaveSpeed()/(2*math.Pi))
+		}
+	}
+	travel := 0.0
+	for i := range b.m.Lines {
+		t := 0.0
+		for _, k := range b.m.Lines[i].Pieces {
+			t += b.m.Pieces[k].TravelTime()
+		}
+		travel = math.Max(travel, t)
+	}
+	return math.Min(f, maxWaves/travel)
+}
+
+// maxWaves is the largest number of wavelengths on a line that a band may ask
+// level 0 to resolve; what is shorter is left to refinement to find out.
+const maxWaves = 1500
+
+// historyFrequency is the root-mean-square frequency of a history at place x,
+// Hz, taken piece by piece between its breaks.
+func (b *builder) historyFrequency(h scenario.History, x float64) float64 {
+	end := b.m.Timing.End()
+	edges := []float64{0}
+	for _, at := range h.Breaks {
+		if at > 0 && at < end {
+			edges = append(edges, at)
+		}
+	}
+	edges = append(edges, end)
+	if len(edges) > 60 {
+		edges = []float64{0, end} // a table: its rows are not breaks of note
+	}
+	sort.Float64s(edges)
+	value, change := 0.0, 0.0
+	for i := 1; i < len(edges); i++ {
+		a, w := edges[i-1], edges[i]-edges[i-1]
+		if w <= end*1e-12 {
+			continue
+		}
+		v, c := meanSquares(func(t float64) float64 { return h.At(a+t, x) }, w)
+		value += v
+		change += c
+	}
+	if value == 0 {
+		return 0
+	}
+	return math.Sqrt(change/value) / (2 * math.Pi)
+}
+
+func (b *builder) pressFrequency(p *Press) float64 {
+	f := 0.0
+	end := b.m.Timing.End()
+	for _, part := range p.Parts {
+		piece := &b.m.Pieces[part.Piece]
+		for _, share := range []float64{0.17, 0.5, 0.83} {
+			f = math.Max(f, b.historyFrequency(p.Force, part.Origin+share*piece.Length))
+			if p.Force.Value.UsesArg(formula.ArgX) {
+				t := share * end
+				k := waveNumber(func(x float64) float64 { return p.Force.At(t, part.Origin+x) }, piece.Length)
+				f = math.Max(f, k*piece.WaveSpeed()/(2*math.Pi))
+			}
+		}
+	}
+	return f
+}
+
+// waveNumber is the root-mean-square wave number of a shape on [0, length], rad/m.
+func waveNumber(shape func(float64) float64, length float64) float64 {
+	value, change := meanSquares(shape, length)
+	if value == 0 {
+		return 0
+	}
+	return math.Sqrt(change / value)
+}
+
+// meanSquares integrates f^2 and f'^2 over [0, width], inside the ends so that a
+// jump at an end does not count.
+func meanSquares(f func(float64) float64, width float64) (value, change float64) {
+	const n = 4000
+	h := width / (n + 2)
+	prev := f(h)
+	for i := 2; i <= n+1; i++ {
+		v := f(float64(i) * h)
+		if math.IsNaN(v) || math.IsInf(v, 0) {
+			continue
+		}
+		value += h * (v*v + prev*prev) / 2
+		change += (v - prev) * (v - prev) / h
+		prev = v
+	}
+	return value, change
+}
