@@ -1,0 +1,86 @@
+package cli
+
+import (
+	"math"
+	"strconv"
+
+	"github.com/tautspan/tautspan/dsl/unit"
+)
+
+// reader formats SI numbers for people in the chosen system of units.
+type reader struct {
+	system unit.System
+}
+
+// dimOf is the dimension of an SI unit as it stands in a document ("1" for none).
+func dimOf(si string) unit.Dim {
+	if si == "" || si == "1" {
+		return unit.Dim{}
+	}
+	u, err := unit.Parse(si)
+	if err != nil {
+		return unit.Dim{}
+	}
+	return u.Dim
+}
+
+// show writes a value with its unit, digits significant.
+func (r reader) show(v float64, si string, digits int) string {
+	if si == "rad" {
+		return unit.Digits(v*1e3, digits) + " mrad"
+	}
+	return unit.Format(v, dimOf(si), r.system, digits)
+}
+
+// split is the value and the unit as two words, for columns; scale is the value
+// by whose size the unit is chosen, so that a column keeps one unit.
+func (r reader) unitFor(scale float64, si string) (factor float64, word string) {
+	if si == "rad" {
+		return 1e3, "mrad"
+	}
+	u, v := unit.Display(scale, dimOf(si), r.system)
+	if scale == 0 || u.Text == "" {
+		return 1, u.Text
+	}
+	return v / scale, u.Text
+}
+
+// withBar writes a value and its bar in one unit, the value to the digit that
+// the bar's second figure has: 184.2 ± 0.6 mm.
+func (r reader) withBar(v, bar float64, si string) string {
+	if math.IsNaN(v) {
+		return "-"
+	}
+	factor, word := r.unitFor(v, si)
+	if word != "" {
+		word = " " + word
+	}
+	v, bar = v*factor, math.Abs(bar*factor)
+	if bar == 0 || math.IsNaN(bar) || math.IsInf(bar, 0) {
+		return trimNumber(v, 6) + word
+	}
+	places := barPlaces(v, bar)
+	return strconv.FormatFloat(v, 'f', places, 64) + " ± " + strconv.FormatFloat(roundUp(bar, places), 'f', places, 64) + word
+}
+
+// barPlaces is the number of decimals at which the bar has one or two figures.
+func barPlaces(v, bar float64) int {
+	places := -int(math.Floor(math.Log10(bar)))
+	if bar*math.Pow(10, float64(places)) < 3 {
+		places++ // a leading 1 or 2 says too little alone
+	}
+	most := 9
+	if v != 0 {
+		most = max(0, 7-int(math.Floor(math.Log10(math.Abs(v)))))
+	}
+	return max(0, min(places, most))
+}
+
+// roundUp rounds a bar away from zero, so that it never claims too much.
+func roundUp(bar float64, places int) float64 {
+	p := math.Pow(10, float64(places))
+	return math.Ceil(bar*p-1e-9) / p
+}
+
+// trimNumber writes a number with so many significant digits.
+func trimNumber(v float64, digits int) string { return unit.Digits(v, digits) }
