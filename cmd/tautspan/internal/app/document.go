@@ -178,7 +178,7 @@ type ArrivalRow struct {
 	Path      []string `json:"path"`
 	Merged    int      `json:"merged"`
 	Smeared   bool     `json:"smeared"`
-	Peak      *float64 `json:"peak"`
+	Settled   *float64 `json:"settled"`
 	PeakTime  *float64 `json:"peak_time_s"`
 }
 

@@ -48,7 +48,7 @@ var ErrForeign = errors.New("is no result of this scenario file")
 // one; anything else in the way is an error unless force is set.
 func Write(dir, file string, f *Folder, force bool) (err error) {
 	dir = filepath.Clean(dir)
-	if err := permitted(dir, file, force); err != nil {
+	if err := Permitted(dir, file, force); err != nil {
 		return err
 	}
 	parent := filepath.Dir(dir)
@@ -73,8 +73,8 @@ func Write(dir, file string, f *Folder, force bool) (err error) {
 	return swap(tmp, dir)
 }
 
-// permitted tells whether dir may be (re)placed.
-func permitted(dir, file string, force bool) error {
+// Permitted tells whether dir may be (re)placed by a result of the scenario file.
+func Permitted(dir, file string, force bool) error {
 	switch _, err := os.Lstat(dir); {
 	case errors.Is(err, fs.ErrNotExist):
 		return nil

@@ -1,0 +1,199 @@
+package app
+
+import (
+	"math"
+
+	"github.com/tautspan/tautspan/dsl/diag"
+	"github.com/tautspan/tautspan/dsl/unit"
+	"github.com/tautspan/tautspan/engine/modal"
+	"github.com/tautspan/tautspan/engine/scenario"
+	"github.com/tautspan/tautspan/engine/solver"
+	"github.com/tautspan/tautspan/engine/statics"
+)
+
+// gravity is standard gravity, m/s^2, exact by definition (CGPM 1901).
+const gravity = 9.80665
+
+// Check reads and judges a scenario without running it.
+func (a *App) Check(in Input) (*CheckDoc, Status, error) {
+	l, err := a.load("check", in)
+	if err != nil {
+		return nil, Outside, err
+	}
+	l.bind()
+	doc := &CheckDoc{Solvers: []SolverCan{}, Lines: []LineFacts{}, Lets: []LetFacts{}, Plucks: []PluckFacts{}, Cautions: []CautionNote{}}
+	if !l.failed() && l.net != nil {
+		l.facts(doc)
+	}
+	doc.Head = l.head
+	doc.Diagnostics = append(append(diag.List{}, l.head.Errors...), l.head.Warnings...)
+	if l.failed() {
+		return doc, BadInput, nil
+	}
+	return doc, Done, nil
+}
+
+func (l *loaded) facts(doc *CheckDoc) {
+	doc.Lets = l.letFacts()
+	if len(l.net.Lines) == 0 {
+		return
+	}
+	doc.Run, doc.Plucks = l.runFacts(), l.pluckFacts()
+	doc.Cautions = cautions(l.net, formatEnergy)
+	frequencies := l.firstFrequencies(6)
+	for i := range l.net.Lines {
+		doc.Lines = append(doc.Lines, lineFacts(&l.net.Lines[i], frequencies[i]))
+	}
+	for _, s := range builtin() {
+		doc.Solvers = append(doc.Solvers, solverCan(s, l))
+	}
+}
+
+func formatEnergy(j float64) string {
+	u, _ := unit.Parse("J")
+	return unit.Format(j, u.Dim, unit.SI, 2)
+}
+
+func lineFacts(line *scenario.Line, frequencies []float64) LineFacts {
+	f := LineFacts{
+		Name: line.Name, Length: statics.Length(line), TravelTime: statics.TravelTime(line),
+		StoredEnergy: finite(statics.StoredEnergy(line)), Frequencies: frequencies, Holds: []HoldFacts{},
+		StartTension: line.Segments[0].Tension, EndTension: line.Segments[len(line.Segments)-1].Tension,
+		Lambda2: sagParameter(line), Strength: shareOfStrength(line),
+	}
+	for i, s := range line.Segments {
+		seg := SegmentFacts{
+			Name: s.Name, Length: s.Length, MassPerLength: s.MassPerLength, Tension: s.Tension,
+			WaveSpeed: math.Sqrt(s.Tension / s.MassPerLength), Impedance: math.Sqrt(s.Tension * s.MassPerLength),
+		}
+		if s.Axial > 0 {
+			seg.Axial = finite(s.Axial)
+		}
+		f.Segments = append(f.Segments, seg)
+		if i > 0 && s.Tension != line.Segments[i-1].Tension {
+			f.Holds = append(f.Holds, HoldFacts{Joint: line.Nodes[i].Name, Force: s.Tension - line.Segments[i-1].Tension})
+		}
+	}
+	return f
+}
+
+// sagParameter is lambda^2 = (m g L/T)^2 L EA/(T Le) of Irvine and Caughey for a
+// level line, with the mean mass and tension of its segments, their axial
+// stiffnesses in series, and Le = L (1 + (m g L/T)^2/8). Source: Irvine, Caughey,
+// Proc. R. Soc. Lond. A 341 (1974), from memory. nil where EA is not known.
+func sagParameter(line *scenario.Line) *float64 {
+	length, mass, give := statics.Length(line), 0.0, 0.0
+	for _, s := range line.Segments {
+		if s.Axial <= 0 {
+			return nil
+		}
+		mass += s.MassPerLength * s.Length / length
+		give += s.Length / s.Axial
+	}
+	tension := statics.MeanTension(line)
+	slope := mass * gravity * length / tension
+	return finite(slope * slope * length / give * length / (tension * length * (1 + slope*slope/8)))
+}
+
+func shareOfStrength(line *scenario.Line) *float64 {
+	worst := 0.0
+	for _, s := range line.Segments {
+		if s.Strength > 0 {
+			worst = math.Max(worst, s.Tension/s.Strength)
+		}
+	}
+	if worst == 0 {
+		return nil
+	}
+	return &worst
+}
+
+// firstFrequencies are the first natural frequencies of each line, Hz; of tied
+// lines those of all together stand with each.
+func (l *loaded) firstFrequencies(count int) [][]float64 {
+	out := make([][]float64, len(l.net.Lines))
+	for i := range out {
+		out[i] = []float64{}
+	}
+	res, err := modal.Find(l.mesh, modal.Want{Count: count})
+	if err != nil {
+		return out
+	}
+	for _, m := range res.Modes {
+		for i := range out {
+			if (m.Line == i || m.Line < 0) && len(out[i]) < count {
+				out[i] = append(out[i], m.Frequency)
+			}
+		}
+	}
+	return out
+}
+
+func (l *loaded) letFacts() []LetFacts {
+	out := []LetFacts{}
+	u := l.compiled.Template.StandardU(l.values)
+	for i, let := range l.compiled.Template.Lets {
+		f := LetFacts{Name: let.Name, Value: l.values[i], Unit: let.Unit, StandardU: u[i]}
+		if let.Doubt != nil {
+			f.AsTaken = let.Doubt.AsTaken
+		}
+		out = append(out, f)
+	}
+	return out
+}
+
+func (l *loaded) runFacts() *RunFacts {
+	r := &l.net.Run
+	f := &RunFacts{For: r.For, Every: r.Every, Rows: l.mesh.Timing.Rows, Agree: r.Agree, Assumed: []string{}}
+	for _, a := range []struct {
+		word  string
+		given bool
+	}{{"for", r.ForGiven}, {"every", r.EveryGiven}, {"agree", r.AgreeGiven}} {
+		if !a.given {
+			f.Assumed = append(f.Assumed, a.word)
+		}
+	}
+	return f
+}
+
+func (l *loaded) pluckFacts() []PluckFacts {
+	out := []PluckFacts{}
+	rest, err := statics.Hold(l.net)
+	if err != nil {
+		return out
+	}
+	for _, p := range rest.Plucks {
+		out = append(out, PluckFacts(p))
+	}
+	return out
+}
+
+// solverCan asks a solver whether it can, and what three levels cost.
+func solverCan(s solver.Solver, l *loaded) SolverCan {
+	c := SolverCan{Name: s.Name(), Reasons: s.Refuses(l.mesh)}
+	if c.Reasons == nil {
+		c.Reasons = []string{}
+	}
+	c.Can = len(c.Reasons) == 0
+	if !c.Can {
+		return c
+	}
+	work := 0.0
+	for level := range 3 {
+		p, err := s.Plan(l.mesh, solver.Request{Level: level, Effort: 1})
+		if err != nil {
+			return c
+		}
+		work += float64(p.Work)
+	}
+	c.Cost = &work
+	return c
+}
+
+// finite is a pointer to v, or nil where it does not exist.
+func finite(v float64) *float64 {
+	if math.IsNaN(v) || math.IsInf(v, 0) {
+		return nil
+	}
+	return &v
+}

@@ -1,0 +1,4 @@
+package app
+
+// Version is the program's version.
+const Version = "0.1.0"

@@ -1,0 +1,291 @@
+package resolve
+
+import (
+	"fmt"
+	"math"
+
+	"github.com/tautspan/tautspan/dsl/diag"
+	"github.com/tautspan/tautspan/dsl/syntax"
+	"github.com/tautspan/tautspan/dsl/unit"
+)
+
+// resolveLater checks the statements that other commands will answer. They are
+// kept out of the template.
+func (r *resolver) resolveLater() {
+	for _, s := range r.statements {
+		switch s := s.(type) {
+		case *syntax.Vary:
+			r.vary(s)
+			r.later(s.Span, "vary", "sweep")
+		case *syntax.Sample:
+			r.sample(s)
+			r.later(s.Span, "sample", "sweep")
+		case *syntax.Best:
+			v := r.compile(s.Value, measured(&asked{}, "a value to be best"))
+			_ = v
+			r.over(s.Over, s.From, s.To)
+			r.later(s.Span, "best", "sweep")
+		case *syntax.Meet:
+			r.meet(s)
+			r.later(s.Span, "meet", "sweep")
+		case *syntax.Record:
+			r.record(s)
+			r.later(s.Span, "record", "fit")
+		case *syntax.Reading:
+			r.reading(s)
+			r.later(s.Span, "reading", "fit")
+		case *syntax.Seek:
+			r.over(s.Name, s.From, s.To)
+			r.later(s.Span, "seek", "fit")
+		case *syntax.Fit:
+			r.fit(s)
+			r.later(s.Span, "fit", "fit")
+		}
+	}
+}
+
+// letNamed resolves a name that must be a let; the value is bad where it is not.
+func (r *resolver) letNamed(n *syntax.Name) value {
+	text, ok := n.Plain()
+	if !ok {
+		r.errorAt(n.Span, "wants-let", "here stands the name of a let", "", "")
+		return badValue
+	}
+	if e, ok := r.lets[text]; ok {
+		return e.val
+	}
+	if r.broken[text] {
+		return badValue
+	}
+	if s, ok := r.top[text]; ok {
+		r.errorAt(n.Span, "wants-let", fmt.Sprintf("%s is %s, not a let", text, article(s.kind)), "", "", related(s.span, "said here"))
+		return badValue
+	}
+	r.errorAt(n.Span, "unknown-name", "no let is called "+text, "", diag.Nearest(text, known(r.lets)))
+	return badValue
+}
+
+// like compiles values that must have the dimension of a let; the unit of the
+// last holds for all.
+func (r *resolver) like(let value, what string, list ...syntax.Expr) ([]float64, bool) {
+	sc := *plain
+	sc.shared = syntax.SharedUnit(list...)
+	ok := !let.bad
+	var out []float64
+	for _, e := range list {
+		v := r.compile(e, &sc)
+		if v.bad || let.bad {
+			ok = false
+			continue
+		}
+		k := unit.Kind{Word: "let", Name: let.dim.Name(), Dim: let.dim, SI: let.dim.SI()}
+		if v = r.inRange(r.check(v, e, k, what), e, anything, what); v.bad {
+			ok = false
+			continue
+		}
+		out = append(out, r.num(v.prog))
+	}
+	return out, ok
+}
+
+// over checks NAME from A to B.
+func (r *resolver) over(name *syntax.Name, from, to syntax.Expr) {
+	ends, ok := r.like(r.letNamed(name), "the range of "+clip(name), from, to)
+	if ok && !(ends[0] < ends[1]) {
+		r.errorAt(from.Place().To(to.Place()), "empty-range", "a range runs from its lower to its higher end", "", "")
+	}
+}
+
+func (r *resolver) vary(s *syntax.Vary) {
+	let := r.letNamed(s.Name)
+	what := "the range of " + clip(s.Name)
+	switch {
+	case s.Draw != nil:
+		r.draw(s.Draw, let, what)
+	case s.Steps != nil:
+		ends, ok := r.like(let, what, s.From, s.To)
+		if ok && ends[0] == ends[1] {
+			r.errorAt(s.From.Place().To(s.To.Place()), "empty-range", "a range has two different ends", "", "")
+		} else if ok && s.Geometric && !(ends[0] > 0 && ends[1] > 0) {
+			r.errorAt(s.From.Place().To(s.To.Place()), "not-positive", "geometric steps want both ends greater than zero", "", "")
+		}
+		r.order(s.Steps, "steps")
+	default:
+		r.like(let, what, s.Through...)
+	}
+}
+
+// draw checks a distribution.
+func (r *resolver) draw(c *syntax.Call, let value, what string) {
+	name := c.Name.Text
+	two := name == "normal" || name == "uniform" || name == "lognormal"
+	switch {
+	case !two && name != "one_of":
+		r.errorAt(c.Name.Span, "unknown-word", "no distribution is called "+name, "", diag.Nearest(name, []string{"normal", "uniform", "lognormal", "one_of"}))
+		return
+	case two && len(c.Args) != 2 || len(c.Args) == 0 || !r.plainArgs(c):
+		r.errorAt(c.Span, "wrong-arguments", name+" takes two values, one_of any number", "", "")
+		return
+	}
+	var list []syntax.Expr
+	for _, a := range c.Args {
+		list = append(list, a.Value)
+	}
+	if name == "normal" || name == "lognormal" {
+		ok := true
+		if unitOf := syntax.SharedUnit(list...); unitOf != nil && !isPercent(unitOf) {
+			_, ok = r.like(let, what, list...)
+		} else {
+			_, ok = r.like(let, what, list[0])
+			if spread := r.spread(list[1]); ok && !spread.bad && spread.dim != let.dim && !spread.percent {
+				r.errorAt(list[1].Place(), "unit-mismatch", "the spread of "+describe(let)+" is "+let.dim.Name()+" or a share in %", "this is "+describe(spread), "")
+			}
+		}
+		return
+	}
+	ends, ok := r.like(let, what, list...)
+	if ok && name == "uniform" && !(ends[0] < ends[1]) {
+		r.errorAt(c.Span, "empty-range", "a range runs from its lower to its higher end", "", "")
+	}
+}
+
+func isPercent(u *syntax.Unit) bool { return u.Text == "%" }
+
+func (r *resolver) sample(s *syntax.Sample) {
+	whole := func(e syntax.Expr, what string, least, most float64) {
+		if e == nil {
+			return
+		}
+		v := r.want(e, plain, unit.Number, what)
+		if v.bad {
+			return
+		}
+		if x := r.num(v.prog); x != math.Trunc(x) || x < least || x > most {
+			r.errorAt(e.Place(), "out-of-range", fmt.Sprintf("%s is a whole number from %g to %g", what, least, most), "", "")
+		}
+	}
+	whole(s.Count, "the number of samples", 1, 1e7)
+	whole(s.Seed, "a seed", 0, 1<<53)
+}
+
+func (r *resolver) meet(s *syntax.Meet) {
+	v := r.compile(s.Value, measured(&asked{expand: true}, "a value to meet"))
+	for _, e := range s.With {
+		w := r.compile(e, measured(&asked{expand: true}, "a value to meet"))
+		if !v.bad && !w.bad {
+			r.alike(e, s.Value, e, v, w, "equal")
+		}
+	}
+	r.over(s.Over, s.From, s.To)
+}
+
+func (r *resolver) record(s *syntax.Record) {
+	for _, t := range s.Times {
+		if t.Unit == nil {
+			continue
+		}
+		if u, ok := r.unit(t.Unit, ""); ok && u.Dim != unit.Time.Dim {
+			r.errorAt(t.Unit.Span, "wants-time", "the time column wants a unit of time", "this is "+u.Dim.Name(), "unit s")
+		}
+	}
+	for _, c := range s.Channels {
+		m := blank(0, s)
+		n := c.For
+		ok := n != nil && r.watchQuantity(n, &m)
+		if c.Unit == nil {
+			continue
+		}
+		u, uok := r.unit(c.Unit, "")
+		if !ok || !uok {
+			continue
+		}
+		if q, err := unit.Parse(m.Quantity.Unit()); err == nil && q.Dim != u.Dim {
+			r.errorAt(c.Unit.Span, "unit-mismatch", fmt.Sprintf("%s is recorded in %s", m.Quantity, m.Quantity.Unit()), "this is "+u.Dim.Name(), "")
+		}
+	}
+}
+
+// readingKinds are the kinds of what a reading says.
+var readingKinds = map[string]unit.Kind{
+	"frequency": unit.Frequency, "peaks": unit.Frequency, "returns": unit.Time, "swings": unit.Time, "decay": unit.Share,
+}
+
+func (r *resolver) reading(s *syntax.Reading) {
+	if el, ok := r.find(s.Of, "a reading"); ok && el.kind != lineKind {
+		r.errorAt(s.Of.Span, "wrong-place", "a reading is of a line", clip(s.Of)+" is "+article(el.kind), "")
+	}
+	for i := range s.Items {
+		it := &s.Items[i]
+		k, ok := readingKinds[it.Word.Text]
+		if !ok {
+			continue
+		}
+		if it.Order != nil {
+			r.order(it.Order, "a "+map[bool]string{true: "mode", false: "return or swing"}[k != unit.Time])
+		}
+		sc := *plain
+		sc.shared = syntax.SharedUnit(it.Values...)
+		var last value
+		for _, e := range it.Values {
+			last = r.inRange(r.check(r.compile(e, &sc), e, k, it.Word.Text), e, positive, it.Word.Text)
+		}
+		if last.bad || len(it.Values) == 0 {
+			continue
+		}
+		for _, d := range []*syntax.Doubt{it.Doubt, it.Shared} {
+			if d != nil {
+				r.doubt(d, last, it.Values[len(it.Values)-1])
+			}
+		}
+		r.readingWhere(it.Where)
+	}
+}
+
+// readingWhere tells temperatures from places.
+func (r *resolver) readingWhere(list []syntax.AtPart) {
+	for _, w := range list {
+		switch {
+		case w.Value != nil:
+			r.want(w.Value, plain, unit.Temperature, "a temperature")
+		case w.Spot != nil:
+			if name, ok := w.Spot.Name.Plain(); ok && w.Spot.Offset == nil {
+				if e, ok := r.lets[name]; ok && len(r.elements[name]) == 0 {
+					r.check(e.val, w.Spot.Name, unit.Temperature, "a temperature")
+					continue
+				}
+			}
+			r.place(w.Spot, "a reading")
+		}
+	}
+}
+
+func (r *resolver) fit(s *syntax.Fit) {
+	for _, n := range s.To {
+		text, ok := n.Plain()
+		sym, isTop := r.top[text]
+		switch {
+		case !ok:
+			r.errorAt(n.Span, "unknown-name", "here stands the name of a reading or a record", "", "")
+		case r.broken[text] || isTop && (sym.kind == "reading" || sym.kind == "record"):
+		case isTop:
+			r.errorAt(n.Span, "unknown-name", fmt.Sprintf("%s is %s, not a reading or a record", text, article(sym.kind)), "", "", related(sym.span, "said here"))
+		default:
+			r.errorAt(n.Span, "unknown-name", "no reading or record is called "+text, "", diag.Nearest(text, known(r.top)))
+		}
+	}
+	words := []string{"frequencies", "peaks", "returns", "swings", "decays", "history"}
+	for _, u := range s.Using {
+		if !contains(words, u.What.Text) {
+			r.errorAt(u.What.Span, "unknown-word", "a fit cannot use "+u.What.Text, "", diag.Nearest(u.What.Text, words))
+		}
+		if u.Which == nil {
+			continue
+		}
+		if rg, ok := syntax.Ungroup(u.Which).(*syntax.Range); ok {
+			r.order(rg.Low, "a mode")
+			r.order(rg.High, "a mode")
+		} else {
+			r.order(u.Which, "a mode")
+		}
+	}
+}

@@ -1,0 +1,253 @@
+package compare
+
+import (
+	"math"
+	"sort"
+)
+
+// Ratios of a difference to the sum of two bars: up to the first the solvers
+// agree, beyond the second they differ, between the two nothing is said.
+const (
+	ratioAgree  = 1
+	ratioDiffer = 2
+)
+
+// ruling is what the pairs of one observable say.
+type ruling struct {
+	verdict   Verdict
+	odd       int     // voice that stands against the rest, or -1
+	resolving float64 // share
+}
+
+// rule judges the pairs of n voices. alone is the bar of the single voice as a
+// share of the scale, where n is 1. With an odd one out, the verdict is Differ
+// all the same: a difference is a finding.
+func rule(n int, pairs []Pair, agree, alone float64) ruling {
+	if n == 1 {
+		out := ruling{verdict: Alone, odd: -1, resolving: alone}
+		if alone > agree {
+			out.verdict = Unsettled
+		}
+		return out
+	}
+	out := ruling{verdict: Unsettled, odd: -1, resolving: math.Inf(1)}
+	differing, open := 0, false
+	for _, p := range pairs {
+		switch {
+		case p.Ratio > ratioDiffer:
+			differing++
+		case p.Ratio > ratioAgree:
+			open = true
+		default:
+			out.resolving = math.Min(out.resolving, p.Resolving)
+		}
+	}
+	if math.IsInf(out.resolving, 1) {
+		for _, p := range pairs { // none agrees: what the sharpest pair could have told
+			out.resolving = math.Min(out.resolving, p.Resolving)
+		}
+	}
+	switch {
+	case differing > 0:
+		out.verdict = Differ
+		out.odd = oddOneOut(n, pairs, differing)
+	case !open && out.resolving <= agree:
+		out.verdict = Agree
+	}
+	return out
+}
+
+// oddOneOut is the voice that is in every differing pair while all pairs
+// without it agree; -1 where no single voice is, or where only two speak.
+func oddOneOut(n int, pairs []Pair, differing int) int {
+	if n < 3 {
+		return -1
+	}
+	in := map[int]int{}
+	for _, p := range pairs {
+		if p.Ratio > ratioDiffer {
+			in[p.A]++
+			in[p.B]++
+		}
+	}
+	candidates := make([]int, 0, len(in))
+	for v := range in {
+		candidates = append(candidates, v)
+	}
+	sort.Ints(candidates)
+	found := -1
+	for _, v := range candidates {
+		if in[v] != differing {
+			continue
+		}
+		rest := true
+		for _, p := range pairs {
+			rest = rest && (p.A == v || p.B == v || p.Ratio <= ratioAgree)
+		}
+		if !rest {
+			continue
+		}
+		if found >= 0 {
+			return -1
+		}
+		found = v
+	}
+	return found
+}
+
+// judge compares all observables of all channels.
+func (r *runner) judge() [][]Observable {
+	s := newScales(r.mesh, r.voices)
+	out := make([][]Observable, len(r.mesh.Channels))
+	for c := range out {
+		out[c] = make([]Observable, kindCount)
+		for k := Kind(0); k < kindCount; k++ {
+			out[c][k] = r.observable(c, k, s)
+		}
+	}
+	return out
+}
+
+func (r *runner) observable(c int, k Kind, s scales) Observable {
+	o := Observable{Kind: k, Scale: s.of(c, k, r.voices), Governed: k.governed() || r.asked[askedKind{c, k}]}
+	for _, v := range r.voices {
+		value, bar := math.NaN(), Bar{Order: math.NaN(), Bound: math.NaN()}
+		if v.usable() {
+			value, bar = v.top().figures[c].of[k], v.bar(c, k, s, r.voices)
+		}
+		o.Values, o.Bars, o.Orders = append(o.Values, value), append(o.Bars, bar.Bound), append(o.Orders, bar.Order)
+	}
+	r.compare(&o, func(a, b int) float64 {
+		if k == Record {
+			return distance(r.voices[a].series(c), r.voices[b].series(c))
+		}
+		return math.Abs(o.Values[a] - o.Values[b])
+	})
+	return o
+}
+
+// compare fills in the pairs, the verdict and the reported value.
+func (r *runner) compare(o *Observable, difference func(a, b int) float64) {
+	n, single := 0, 0.0
+	for a := range r.voices {
+		if !r.voices[a].usable() {
+			continue
+		}
+		n++
+		single = share(o.Bars[a], o.Scale)
+		for b := a + 1; b < len(r.voices); b++ {
+			if !r.voices[b].usable() {
+				continue
+			}
+			p := Pair{A: a, B: b, Difference: difference(a, b), Resolving: share(o.Bars[a]+o.Bars[b], o.Scale)}
+			if p.Difference > 0 {
+				p.Ratio = p.Difference / (o.Bars[a] + o.Bars[b])
+			}
+			o.Pairs = append(o.Pairs, p)
+		}
+	}
+	ruled := rule(n, o.Pairs, r.options.Agree, single)
+	o.Verdict, o.OddOneOut, o.ResolvingPower = ruled.verdict, ruled.odd, ruled.resolving
+	o.Best, o.Value, o.Numerical = r.report(o)
+}
+
+// report is the value to report and its bound: the voice with the smallest bar,
+// not the odd one; its bar, widened to reach every other voice's value to within
+// that voice's own bar, and to reach it in full where the solvers differ and no
+// odd one can be told.
+func (r *runner) report(o *Observable) (best int, value, bound float64) {
+	best = -1
+	for i, v := range r.voices {
+		if v.usable() && i != o.OddOneOut && (best < 0 || o.Bars[i] < o.Bars[best]) {
+			best = i
+		}
+	}
+	if best < 0 {
+		return -1, math.NaN(), math.NaN()
+	}
+	value, bound = o.Values[best], o.Bars[best]
+	for _, p := range o.Pairs {
+		other := p.A
+		if p.A == best {
+			other = p.B
+		} else if p.B != best {
+			continue
+		}
+		if other == o.OddOneOut {
+			continue
+		}
+		reach := p.Difference - o.Bars[other]
+		if o.Verdict == Differ && o.OddOneOut < 0 {
+			reach = p.Difference
+		}
+		bound = math.Max(bound, reach)
+	}
+	return best, value, bound
+}
+
+// band is the pointwise error band of the reported record: the best voice's own
+// band, the spread to the voice with the next smallest bar in full, and the
+// spread to every other beyond its own band (in full where the solvers differ
+// and no odd one can be told).
+func (r *runner) band(c int, o *Observable) [][]float64 {
+	best := r.voices[o.Best]
+	next := -1
+	for i, v := range r.voices {
+		if v.usable() && i != o.Best && i != o.OddOneOut && (next < 0 || o.Bars[i] < o.Bars[next]) {
+			next = i
+		}
+	}
+	out := make([][]float64, len(best.series(c)))
+	for k := range out {
+		out[k] = best.band(c, k)
+		for j := range out[k] {
+			out[k][j] = math.Max(out[k][j], roundOff*o.Scale)
+		}
+		for i, v := range r.voices {
+			if !v.usable() || i == o.Best || i == o.OddOneOut {
+				continue
+			}
+			var own []float64
+			if i != next && !(o.Verdict == Differ && o.OddOneOut < 0) {
+				own = v.band(c, k)
+			}
+			mine, theirs := best.series(c)[k], v.series(c)[k]
+			for j := range out[k] {
+				spread := math.Abs(mine[j] - theirs[j])
+				if own != nil {
+					spread -= own[j]
+				}
+				out[k][j] = math.Max(out[k][j], spread)
+			}
+		}
+	}
+	return out
+}
+
+// energyLeft compares the energy at the end as a share of the most held.
+func (r *runner) energyLeft() Observable {
+	o := Observable{Kind: Final, Scale: 1, Governed: r.options.EnergyLeft}
+	left := func(run *levelRun) float64 {
+		if run.energy.Most <= 0 {
+			return 0
+		}
+		return run.energy.End / run.energy.Most
+	}
+	for _, v := range r.voices {
+		value, bar := math.NaN(), Bar{Order: math.NaN(), Bound: math.NaN()}
+		if v.usable() {
+			n := len(v.runs)
+			a, b, c := left(&v.runs[n-3]), left(&v.runs[n-2]), left(&v.runs[n-1])
+			order, ratio := v.theory()
+			value, bar = c, NewBar(math.Abs(b-a), math.Abs(c-b), ratio, order)
+			bar.Bound = math.Max(bar.Bound, roundOff)
+			if e := v.top().energy; e.Most > 0 {
+				// What the account cannot explain is not known to be there or gone.
+				bar.Bound = math.Max(bar.Bound, floorShare*math.Abs(e.Unaccounted())/e.Most)
+			}
+		}
+		o.Values, o.Bars, o.Orders = append(o.Values, value), append(o.Bars, bar.Bound), append(o.Orders, bar.Order)
+	}
+	r.compare(&o, func(a, b int) float64 { return math.Abs(o.Values[a] - o.Values[b]) })
+	return o
+}

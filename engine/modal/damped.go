@@ -1,0 +1,154 @@
+package modal
+
+import (
+	"fmt"
+	"math"
+)
+
+// dampedModes finds the roots of a damped group, one more than asked where there
+// is one, and proves the list complete up to the frequency it returns.
+func (w *network) dampedModes(want Want) (found, error) {
+	f := found{notes: w.notes}
+	most := want.Count + 1
+	if len(w.elements) == 0 {
+		most = min(most, len(w.nodes))
+	}
+	top, gamma, err := w.top(most, 2*math.Pi*want.Below)
+	if err != nil {
+		return f, err
+	}
+	l := &list{e: newEvaluator(w)}
+	limit := 2 * math.Pi * want.Below
+	for try := 0; ; try++ {
+		for _, s := range w.starts(1.15 * math.Hypot(top, gamma)) {
+			if imag(s) > 1.25*top || s == 0 {
+				continue
+			}
+			if z, ok := l.e.newton(s, nil); ok {
+				l.offer(z)
+			}
+		}
+		edge, left, proved := l.prove(top, gamma)
+		osc, re := l.within(edge, left)
+		enough := len(osc) >= most || (limit > 0 && edge >= limit)
+		if !enough && try < 4 && len(w.elements) > 0 {
+			top *= 1.6
+			continue
+		}
+		f.osc, f.real, f.complete = osc, re, edge
+		if !proved {
+			f.complete = 0
+			f.notes = append(f.notes, fmt.Sprintf("the list of modes of %s could not be proved complete.", w.name()))
+		} else if !enough && want.Below == 0 {
+			f.notes = append(f.notes, fmt.Sprintf("%s has only %d modes below %.6g Hz that die away at less than %.6g 1/s; dashpots take the rest.",
+				w.name(), len(osc), edge/(2*math.Pi), left))
+		}
+		return f, nil
+	}
+}
+
+// top estimates the damped frequency, rad/s, below which `most` modes lie, from
+// the undamped network; a limit, rad/s, caps it. gamma is the largest c/(2m).
+func (w *network) top(most int, limit float64) (top, gamma float64, err error) {
+	for _, el := range w.elements {
+		gamma = math.Max(gamma, el.c/(2*el.m))
+	}
+	c := newCounter(w)
+	spare := len(w.brackets) + 1
+	for _, d := range w.dashpot {
+		if d > 0 {
+			spare++
+		}
+	}
+	if len(w.elements) == 0 {
+		spare = 0
+		most = min(most, w.massive()-w.rigid)
+		if most <= 0 {
+			return math.Max(limit, 1), gamma, nil
+		}
+	}
+	slow := 0
+	if gamma > 0 {
+		if gamma*w.travel > math.Pi*mostModes {
+			return 0, 0, fmt.Errorf("modal: the viscous loss of %s is so heavy that more than %d modes do not oscillate", w.name(), mostModes)
+		}
+		slow = c.below(gamma)
+	}
+	reach := 0.0
+	if limit > 0 {
+		reach = math.Hypot(limit, gamma)
+	}
+	_, hi, _, err := c.reach(most+spare+slow, reach)
+	if err != nil {
+		return 0, 0, err
+	}
+	top = math.Sqrt(math.Max(hi*hi-gamma*gamma, 0))
+	if w.travel > 0 {
+		top = math.Max(top, math.Pi/w.travel)
+	}
+	if limit > 0 {
+		top = math.Min(top, limit)
+	}
+	return top, gamma, nil
+}
+
+// prove completes the list in the region up to a damped frequency of about top,
+// an edge that keeps away from the roots. The region reaches so far left that
+// the shortest piece has died out over one way (12 travel times' worth of
+// decay), or a thousand times its height.
+func (l *list) prove(top, gamma float64) (edge, left float64, proved bool) {
+	w := l.e.w
+	right := 0.1 * top
+	left = math.Max(10*top, 4*gamma)
+	if w.travel > 0 {
+		right = 0.5 / w.travel
+		left = math.Max(left, math.Min(12/w.briefst, 1000*top))
+	}
+	for try := 0; try < 6; try++ {
+		edge = l.edge(top)
+		r := region{x0: -left, x1: right, y0: 0, y1: edge}
+		if l.complete(r, 60) {
+			return edge, left, true
+		}
+		left *= 1.13
+		top *= 1.01
+	}
+	return edge, left, false
+}
+
+// edge is the middle of the widest gap between the damped frequencies known just
+// above top.
+func (l *list) edge(top float64) float64 {
+	osc, _ := sortRoots(l.roots)
+	hi := 1.15 * top
+	if w := l.e.w; w.travel > 0 {
+		hi = math.Max(hi, top+2*math.Pi/w.travel)
+	}
+	best, width := 0.5*(top+hi), 0.0
+	last := top
+	for _, s := range osc {
+		y := math.Min(imag(s), hi)
+		if y <= top {
+			continue
+		}
+		if y-last > width {
+			best, width = 0.5*(last+y), y-last
+		}
+		last = y
+	}
+	if hi-last > width {
+		best = 0.5 * (last + hi)
+	}
+	return best
+}
+
+// within picks the roots of the region that was proved.
+func (l *list) within(edge, left float64) ([]complex128, []float64) {
+	var in []complex128
+	for _, s := range l.roots {
+		if imag(s) < edge && real(s) > -left {
+			in = append(in, s)
+		}
+	}
+	return sortRoots(in)
+}

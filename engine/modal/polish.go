@@ -1,0 +1,305 @@
+package modal
+
+import (
+	"math"
+	"math/cmplx"
+
+	"github.com/tautspan/tautspan/engine/numeric"
+)
+
+// evaluator evaluates Delta(s) of a group and its logarithmic derivative; it
+// owns the buffers.
+type evaluator struct {
+	w      *network
+	n      int
+	blocks []block
+	hidden []int // row of the hidden unknown of each element, -1 where none
+	a, da  []complex128
+	lu     numeric.ComplexLU
+}
+
+func newEvaluator(w *network) *evaluator {
+	n := len(w.nodes) + len(w.brackets) + len(w.elements)
+	return &evaluator{w: w,
+		blocks: make([]block, len(w.elements)), hidden: make([]int, len(w.elements)),
+		a: make([]complex128, n*n), da: make([]complex128, n*n)}
+}
+
+// assemble builds the matrix at s and, where asked, its derivative. A bracket's
+// far end q is an unknown with the row -K u + (K + sC) q = 0, so that it adds no
+// pole.
+func (e *evaluator) assemble(s complex128, slopes bool) {
+	w := e.w
+	n := len(w.nodes) + len(w.brackets)
+	for i := range w.elements {
+		e.blocks[i] = w.elements[i].at(s)
+		e.hidden[i] = -1
+		if e.blocks[i].keep != keepNone {
+			e.hidden[i] = n
+			n++
+		}
+	}
+	e.n = n
+	a, da := e.a[:n*n], e.da[:n*n]
+	clear(a)
+	if slopes {
+		clear(da)
+	}
+	add := func(i, j int, v, v1 complex128) {
+		if i < 0 || j < 0 {
+			return
+		}
+		a[i*n+j] += v
+		da[i*n+j] += v1
+		if i != j {
+			a[j*n+i] += v
+			da[j*n+i] += v1
+		}
+	}
+	for i := range w.nodes {
+		m, c := complex(w.mass[i], 0), complex(w.dashpot[i], 0)
+		add(i, i, (m*s+c)*s+complex(w.spring[i], 0), 2*m*s+c)
+	}
+	for i, b := range w.brackets {
+		q, k, c := len(w.nodes)+i, complex(b.k, 0), complex(b.c, 0)
+		add(b.at, b.at, k, 0)
+		add(b.at, q, -k, 0)
+		add(q, q, k+s*c, c)
+	}
+	for _, l := range w.links {
+		c := complex(l.c, 0)
+		v := complex(l.k, 0) + s*c
+		add(l.a, l.a, v, c)
+		add(l.b, l.b, v, c)
+		add(l.a, l.b, -v, -c)
+	}
+	for i := range w.elements {
+		el, b := &w.elements[i], &e.blocks[i]
+		add(el.i, el.i, b.diag, b.diag1)
+		add(el.j, el.j, b.diag, b.diag1)
+		if el.i == el.j { // a loop of one piece
+			add(el.i, el.i, 2*b.off, 2*b.off1)
+		} else {
+			add(el.i, el.j, b.off, b.off1)
+		}
+		if h := e.hidden[i]; h >= 0 {
+			f, f1 := b.b, b.b1
+			if b.keep == keepOdd {
+				f, f1 = -f, -f1
+			}
+			add(h, el.i, f, f1)
+			add(h, el.j, b.b, b.b1)
+			add(h, h, b.d, b.d1)
+		}
+	}
+}
+
+// delta is log Delta(s), its imaginary part up to multiples of 2 pi, and
+//
+//	slope = Delta'/Delta = tr(A^{-1} A') + slopes of the factors.
+//
+// It reports false where the matrix is singular in the arithmetic.
+func (e *evaluator) delta(s complex128) (log, slope complex128, ok bool) {
+	e.assemble(s, true)
+	for i := range e.blocks {
+		log += e.blocks[i].log
+		slope += e.blocks[i].logSlope
+	}
+	if e.n == 0 {
+		return log, slope, true
+	}
+	if !e.lu.Factor(e.a, e.n) {
+		return 0, 0, false
+	}
+	log += e.lu.LogDet()
+	slope += e.lu.Trace(e.da[:e.n*e.n])
+	ok = !cmplx.IsNaN(log) && !cmplx.IsInf(log) && !cmplx.IsNaN(slope) && !cmplx.IsInf(slope)
+	return log, slope, ok
+}
+
+// newton polishes a start value with Newton's method on log Delta, dividing out
+// the zeros in known (with their conjugates) and the one at s = 0. It reports
+// false where it does not settle.
+//
+// Order 2 at simple zeros; the last step is below 1e-13 |s|, or the smallest
+// that rounding allows if that is below 1e-9 |s|.
+func (e *evaluator) newton(s complex128, known []complex128) (complex128, bool) {
+	best := math.Inf(1)
+	unit := 1 / (e.w.travel + math.SmallestNonzeroFloat64)
+	for step := 0; step < 60; step++ {
+		_, slope, ok := e.delta(s)
+		if !ok {
+			return s, best < 1e-9*cmplx.Abs(s)
+		}
+		slope -= deflation(s, known)
+		if e.w.zeros > 0 {
+			slope -= complex(float64(e.w.zeros), 0) / s
+		}
+		d := -1 / slope
+		size := cmplx.Abs(d)
+		if math.IsNaN(size) {
+			return s, false
+		}
+		abs := cmplx.Abs(s)
+		if size >= best && best < 1e-9*abs {
+			return s, true // rounding rules
+		}
+		if limit := 0.5 * math.Max(abs, math.Min(unit, 1e300)); size > limit {
+			d *= complex(limit/size, 0)
+		}
+		best = size
+		s += d
+		if size < 1e-13*abs {
+			return s, true
+		}
+	}
+	return s, false
+}
+
+// deflation is the sum of 1/(s-z) over the known zeros and their conjugates.
+func deflation(s complex128, known []complex128) complex128 {
+	var sum complex128
+	for _, z := range known {
+		if z != s {
+			sum += 1 / (s - z)
+		}
+		if imag(z) > 0 {
+			sum += 1 / (s - cmplx.Conj(z))
+		}
+	}
+	return sum
+}
+
+// upper gives a root the form in which it is listed: imaginary part positive, or
+// exactly zero where it is zero to rounding.
+func upper(s complex128) complex128 {
+	if math.Abs(imag(s)) < 1e-10*cmplx.Abs(s) {
+		return complex(real(s), 0)
+	}
+	if imag(s) < 0 {
+		return cmplx.Conj(s)
+	}
+	return s
+}
+
+// list of roots with multiplicity, as it grows.
+type list struct {
+	e     *evaluator
+	roots []complex128
+	tried []complex128 // where merge has looked already
+}
+
+// same says when two roots are taken for one. Coinciding roots are known to
+// 1e-8; roots of real lines this near are looked into by merge.
+const same = 1e-6
+
+// offer adds a polished root; where it is near one that is known it finds out
+// how many there are. It reports whether the list grew.
+func (l *list) offer(s complex128) bool {
+	s = upper(s)
+	abs := cmplx.Abs(s)
+	// Passive networks have no zeros to the right of the imaginary axis.
+	if !(abs > 0) || real(s) > 1e-9*abs {
+		return false
+	}
+	if real(s) > 0 {
+		s = complex(0, imag(s))
+	}
+	for _, z := range l.roots {
+		if cmplx.Abs(s-z) < same*abs {
+			return l.merge(z)
+		}
+	}
+	l.roots = append(l.roots, s)
+	return true
+}
+
+// merge counts the zeros within a small circle around a root and takes the
+// known ones there for what the circle's moments say. Reports growth.
+//
+// With c the centre and r the radius, sums over the zeros inside,
+// sum (z-c)^k = (1/2 pi i) * integral of (s-c)^k Delta'/Delta ds, by the
+// trapezoidal rule, which converges geometrically on a circle. Two zeros follow
+// from the sums for k = 1, 2.
+// Source: Delves, Lyness, A numerical method for locating the zeros of an
+// analytic function, Math. Comp. 21 (1967).
+func (l *list) merge(c complex128) bool {
+	if math.Abs(imag(c)) < same*cmplx.Abs(c) {
+		c = complex(real(c), 0)
+	}
+	for _, z := range l.tried {
+		if cmplx.Abs(z-c) < same*cmplx.Abs(c) {
+			return false
+		}
+	}
+	l.tried = append(l.tried, c)
+	abs := cmplx.Abs(c)
+	r := 1e-2 * abs
+	near := 0
+	for _, z := range l.roots {
+		for _, y := range []complex128{z, cmplx.Conj(z)} {
+			switch d := cmplx.Abs(y - c); {
+			case d < 10*same*abs:
+				near++
+			default:
+				r = math.Min(r, 0.4*d)
+			}
+			if imag(z) == 0 {
+				break
+			}
+		}
+	}
+	var m [3]complex128
+	const points = 48 // 0.4^48 is below rounding
+	for k := 0; k < points; k++ {
+		sin, cos := math.Sincos(2 * math.Pi * (float64(k) + 0.5) / points)
+		d := complex(r*cos, r*sin)
+		_, slope, ok := l.e.delta(c + d)
+		if !ok {
+			return false
+		}
+		f := slope * d / points
+		m[0] += f
+		m[1] += f * d
+		m[2] += f * d * d
+	}
+	n := int(math.Round(real(m[0])))
+	if cmplx.Abs(m[0]-complex(float64(n), 0)) > 0.02 || n <= near {
+		return false
+	}
+	return l.replace(c, r, n, m)
+}
+
+// replace puts the n zeros that the moments around c tell in the place of the
+// known ones within r.
+func (l *list) replace(c complex128, r float64, n int, m [3]complex128) bool {
+	rest := l.roots[:0:0]
+	for _, z := range l.roots {
+		if cmplx.Abs(z-c) >= r && cmplx.Abs(cmplx.Conj(z)-c) >= r {
+			rest = append(rest, z)
+		}
+	}
+	mean := m[1] / complex(float64(n), 0)
+	centre := c + mean
+	if imag(c) == 0 {
+		centre = complex(real(centre), 0)
+	}
+	half := complex128(0)
+	if n == 2 {
+		half = cmplx.Sqrt(m[2]/2 - mean*mean)
+		if cmplx.Abs(half) < 1e-9*cmplx.Abs(c) {
+			half = 0 // below what the moments can tell
+		}
+	}
+	for k := 0; k < n; k++ {
+		z := upper(centre + half)
+		half = -half
+		if imag(c) == 0 && imag(centre+half) < -1e-10*cmplx.Abs(c) && imag(z) > 0 {
+			rest = append(rest, z) // a pair across the real axis is one entry
+			break
+		}
+		rest = append(rest, z)
+	}
+	l.roots = rest
+	return true
+}

@@ -1,0 +1,274 @@
+package characteristic
+
+import (
+	"math"
+
+	"github.com/tautspan/tautspan/engine/mesh"
+)
+
+// line is a piece at work: its constants, the histories of what leaves its two
+// ends, what is fed in between, and its lattice, if any.
+type line struct {
+	length, c, z, tau float64
+	tension           float64
+	mass              float64 // kg/m
+	gamma             float64 // 1/s, viscous/(2 mass)
+	from, to          int
+	sent              [2]*history // b at the start (travels as f) and at the end (as g)
+	sources           []*source
+	rolls             []rolling
+	wind              *wind
+	lattice           *lattice
+	stub              bool
+}
+
+// decay is what the loss leaves of a wave after time s.
+func (p *line) decay(s float64) float64 {
+	if p.gamma == 0 {
+		return 1
+	}
+	return math.Exp(-p.gamma * s)
+}
+
+// carried is the d-th time derivative at place x and time t of the two waves
+// without the lattice's share.
+func (p *line) carried(x, t float64, side, d int) (f, g float64) {
+	s := x / p.c
+	f = p.decay(s) * p.sent[0].at(t-s, side, d)
+	s = (p.length - x) / p.c
+	g = p.decay(s) * p.sent[1].at(t-s, side, d)
+	for _, src := range p.sources {
+		if lag := (x - src.x) / p.c; lag > 0 {
+			f += p.decay(lag) * src.h.at(t-lag, side, d)
+		} else {
+			g += p.decay(-lag) * src.h.at(t+lag, side, d)
+		}
+	}
+	for i := range p.rolls {
+		df, dg := p.rolls[i].waves(x, t, d)
+		f += df
+		g += dg
+	}
+	return f, g
+}
+
+// source is a point force inside a piece. It sends phi both ways,
+//
+//	phi' = F/(2Z) - gamma phi,
+//
+// and scatters nothing. It runs ahead of the nodes, since it waits for none.
+type source struct {
+	x      float64 // m from the piece's start
+	half   float64 // 1/(2Z)
+	gamma  float64
+	load   *load
+	h      *history
+	breaks int // next of load.breaks
+	per    int // samples in one step of the network
+}
+
+// ahead is the number of steps that sources lead: a stencil's reach and one.
+const ahead = 5
+
+// advance appends the next sample, integrating between breaks of the load with
+// three Gauss points (order 6).
+func (s *source) advance() {
+	h := s.h
+	t0, phi := float64(h.newest)*h.delta, h.get(h.newest)
+	end := float64(h.newest+1) * h.delta
+	for t0 < end {
+		t1 := end
+		mark := false
+		if s.breaks < len(s.load.breaks) && s.load.breaks[s.breaks] < end+h.tol {
+			mark = true
+			t1 = math.Max(t0, math.Min(end, s.load.breaks[s.breaks]))
+			s.breaks++
+		}
+		if t1 > t0 {
+			dt := t1 - t0
+			sum := 0.0
+			places, weights := gauss()
+			for i, x := range places {
+				sum += weights[i] * math.Exp(-s.gamma*dt*(1-x)) * s.load.at(t0+x*dt)
+			}
+			phi = phi*math.Exp(-s.gamma*dt) + s.half*dt*sum
+		}
+		if mark {
+			h.mark(breakpoint{t: t1, left: phi, right: phi, weight: 1, order: s.load.order(t1, h.delta)})
+		}
+		t0 = t1
+	}
+	h.push(phi)
+}
+
+// gauss is Gauss's rule of three points on [0, 1]: places and weights.
+func gauss() (x, w [3]float64) {
+	const half = 0.3872983346207417 // sqrt(0.15)
+	return [3]float64{0.5 - half, 0.5, 0.5 + half}, [3]float64{5.0 / 18, 8.0 / 18, 5.0 / 18}
+}
+
+// load is a force with its breaks in order; it is 0 before t = 0.
+type load struct {
+	value  func(t float64) float64
+	breaks []float64
+}
+
+func (l *load) at(t float64) float64 {
+	if t < 0 {
+		return 0
+	}
+	return l.value(t)
+}
+
+// order is 1 where the force itself jumps at t, so that the displacement of a
+// massless place gets a corner there, and 2 where only a derivative may. The
+// probe is a thousandth of a step to either side.
+func (l *load) order(t, delta float64) int {
+	e := 1e-3 * delta
+	a, b := l.at(t-e), l.at(t+e)
+	if math.Abs(b-a) > 0.1*math.Max(math.Abs(a), math.Abs(b)) {
+		return 1
+	}
+	return 2
+}
+
+// rolling is a constant force on its way over one piece: at time tin it is at
+// s0 and it leaves the piece at tout. A place x hears, of all moments t' of its
+// passage, those with t' + |x - s0 - V(t'-tin)|/c <= t and the load on the right
+// side of x, each with F/(2Z) exp(-gamma (t-t')) dt'.
+type rolling struct {
+	k, v, c, gamma float64 // k = F/(2Z), m/s
+	s0, tin, tout  float64
+}
+
+func (r *rolling) waves(x, t float64, d int) (f, g float64) {
+	pass := math.Inf(1) // when the load is at x
+	if r.v > 0 {
+		pass = r.tin + (x-r.s0)/r.v
+	} else if x < r.s0 {
+		pass = math.Inf(-1)
+	}
+	off := (x - r.s0) / r.c
+	slip := r.v / r.c
+	f = r.heard(t, r.tin, math.Min(r.tout, pass), (t-off-slip*r.tin)/(1-slip), 1/(1-slip), d)
+	g = r.heard(t, math.Max(r.tin, pass), r.tout, (t+off+slip*r.tin)/(1+slip), 1/(1+slip), d)
+	return f, g
+}
+
+// heard is the d-th derivative of k integral of exp(-gamma (t-t')) over t' from
+// from to min(until, last), where last moves at the given rate with t.
+func (r *rolling) heard(t, from, until, last, rate float64, d int) float64 {
+	if last > until {
+		last, rate = until, 0
+	}
+	if last <= from {
+		return 0
+	}
+	if r.gamma == 0 {
+		switch d {
+		case 0:
+			return r.k * (last - from)
+		case 1:
+			return r.k * rate
+		}
+		return 0
+	}
+	e := math.Exp(-r.gamma * (t - last))
+	v := r.k / r.gamma * e * -math.Expm1(-r.gamma*(last-from))
+	if d == 0 {
+		return v
+	}
+	dv := -r.gamma*v + r.k*e*rate
+	if d == 1 {
+		return dv
+	}
+	return -r.gamma*dv + r.k*e*rate*r.gamma*(rate-1)
+}
+
+// rollsOn is the passage of a roll over a piece, or none.
+func rollsOn(m *mesh.Mesh, roll *mesh.Roll, p *mesh.Piece, w *line) (rolling, bool) {
+	if p.Line != roll.Line || roll.Force == 0 {
+		return rolling{}, false
+	}
+	r := rolling{k: roll.Force / (2 * w.z), v: roll.Speed, c: w.c, gamma: w.gamma, tin: roll.Starting}
+	from := roll.From
+	if r.tin < 0 {
+		from, r.tin = from-roll.Speed*r.tin, 0
+	}
+	r.s0 = from - p.X0
+	if r.s0 >= p.Length {
+		return r, false
+	}
+	r.tout = math.Inf(1)
+	if r.v > 0 {
+		if r.s0 < 0 {
+			r.tin -= r.s0 / r.v
+			r.s0 = 0
+		}
+		r.tout = r.tin + (p.Length-r.s0)/r.v
+	}
+	return r, r.s0 >= 0
+}
+
+// arrivals are the times at which the corners of a roll's wave reach an end.
+func (r *rolling) arrivals(p *line, end bool) [2]float64 {
+	if end {
+		return [2]float64{r.tin + (p.length-r.s0)/p.c, r.tout}
+	}
+	return [2]float64{r.tin + r.s0/p.c, r.tout + p.length/p.c}
+}
+
+// port is where a piece meets a node: what comes in, and whom to tell what
+// leaves.
+type port struct {
+	p       *line
+	end     bool
+	z       float64
+	far     reader
+	sources []reader
+	out     *history
+	a       float64 // m, incoming now
+	bring   float64 // strength of the break that comes in now
+	level   int     // its order
+	before  float64 // m, a where the part step began
+	rate    float64 // m/s, mean of a' over the last part step
+}
+
+// incoming is the wave at time t, which ends the node's step k if regular.
+func (q *port) incoming(k int, t float64, regular bool, which, side int) float64 {
+	var a float64
+	if regular {
+		a = q.far.step(k, t, which)
+		for i := range q.sources {
+			a += q.sources[i].step(k, t, which)
+		}
+	} else {
+		a = q.far.at(t, side, 0)
+		for i := range q.sources {
+			a += q.sources[i].at(t, side, 0)
+		}
+	}
+	for i := range q.p.rolls {
+		x := 0.0
+		if q.end {
+			x = q.p.length
+		}
+		f, g := q.p.rolls[i].waves(x, t, 0)
+		if q.end {
+			a += f
+		} else {
+			a += g
+		}
+	}
+	e := 0
+	if q.end {
+		e = 1
+	}
+	if q.p.wind != nil {
+		a += q.p.wind.ends[e].at(t, -1, 0)
+	}
+	if q.p.lattice != nil && q.p.gamma > 0 {
+		a += q.p.lattice.ends[e].at(t, -1, 0)
+	}
+	return a
+}

@@ -1,0 +1,231 @@
+package characteristic
+
+import (
+	"context"
+	"fmt"
+	"math"
+
+	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/solver"
+)
+
+const (
+	name    = "characteristic"
+	version = "1"
+	// fastest is the highest speed of a rolling load in wave speeds: ahead of
+	// it the slope grows with 1/(1 - V/c).
+	fastest = 0.95
+	// heaviest is the largest loss gamma tau of one piece; beyond it what
+	// crosses the piece is no number any more when it is sent backwards in time
+	// to start from.
+	heaviest = 200
+)
+
+// tracker is the solver.
+type tracker struct{}
+
+// New is the characteristic-tracking solver.
+func New() solver.Solver { return tracker{} }
+
+// Name is the solver's word.
+func (tracker) Name() string { return name }
+
+// Version changes whenever answers may change.
+func (tracker) Version() string { return version }
+
+// Refuses lists what characteristics cannot represent of the mesh.
+func (tracker) Refuses(m *mesh.Mesh) []string {
+	var out []string
+	if err := sound(m); err != nil {
+		return []string{err.Error()}
+	}
+	for i := range m.Rolls {
+		r := &m.Rolls[i]
+		if r.Speed < 0 {
+			out = append(out, fmt.Sprintf("roll %s runs against the walking order of its line", r.Name))
+			continue
+		}
+		for _, k := range m.Lines[r.Line].Pieces {
+			p := &m.Pieces[k]
+			if c := p.WaveSpeed(); r.Speed >= fastest*c && r.From < p.X0+p.Length {
+				out = append(out, fmt.Sprintf("roll %s at %.4g m/s is not slower than %g of the wave speed %.4g m/s", r.Name, r.Speed, fastest, c))
+				break
+			}
+		}
+	}
+	for i := range m.Pieces {
+		p := &m.Pieces[i]
+		if loss := p.Viscous / (2 * p.MassPerLength) * p.TravelTime(); loss > heaviest {
+			out = append(out, fmt.Sprintf("the viscous loss leaves exp(-%.3g) of a wave that crosses the piece at x = %.4g m", loss, p.X0))
+		}
+	}
+	touched := make([]bool, len(m.Nodes))
+	for i := range m.Pieces {
+		touched[m.Pieces[i].From], touched[m.Pieces[i].To] = true, true
+	}
+	for i := range m.Links {
+		l := &m.Links[i]
+		if l.Dashpot > 0 {
+			touched[l.A], touched[l.B] = true, true
+		}
+	}
+	for i := range m.Nodes {
+		n := &m.Nodes[i]
+		if !touched[i] && !n.Fixed && n.Motion == nil && !(n.Mass > 0) && !(n.Dashpot > 0) {
+			out = append(out, fmt.Sprintf("node %s has neither mass nor line nor dashpot, so nothing tells how it moves", n.Name))
+		}
+	}
+	return out
+}
+
+// Plan says what a level costs.
+func (tracker) Plan(m *mesh.Mesh, req solver.Request) (solver.Plan, error) {
+	if err := sound(m); err != nil {
+		return solver.Plan{}, err
+	}
+	lay, _ := plan(m, req)
+	p := size(m, &lay)
+	return p, within(p)
+}
+
+// Solve computes the records.
+func (t tracker) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, progress func(share float64)) (*solver.Result, error) {
+	if err := ctx.Err(); err != nil {
+		return nil, err
+	}
+	if err := sound(m); err != nil {
+		return nil, err
+	}
+	if no := t.Refuses(m); len(no) > 0 {
+		return nil, &solver.FaultError{Solver: name, What: no[0]}
+	}
+	lay, frozen := plan(m, req)
+	cost := size(m, &lay)
+	if err := within(cost); err != nil {
+		return nil, err
+	}
+	r, err := assemble(m, &lay)
+	if err != nil {
+		return nil, err
+	}
+	if err := r.march(ctx, progress); err != nil {
+		return nil, err
+	}
+	out := &solver.Result{Plan: cost, Order: r.order(), Ratio: 2, Layout: lay, Frozen: frozen, Series: r.series, Energy: r.books(), Notes: r.notes}
+	if req.Freeze != nil && !frozen {
+		out.Notes = append(out.Notes, "The earlier discretisation does not fit this line: a travel time has become too short, or a loss or load has come to a piece that had none.")
+	}
+	return out, finite(out)
+}
+
+// order is what successive levels should show.
+func (r *run) order() float64 {
+	jumps, loss := r.refused() > 0, 0.0
+	for _, p := range r.lines {
+		loss = math.Max(loss, p.gamma*p.tau)
+	}
+	switch {
+	case jumps && r.m.Jump <= 1:
+		return 1.5
+	case loss > lossy || len(r.m.Presses) > 0 && r.m.Jump <= 3:
+		return 2
+	}
+	return 4
+}
+
+// lossy: above this gamma tau the second order of the loss shows before the
+// fourth of the rest; below it its share is at most lossy^2/12 of a squared
+// step in travel times. Chosen.
+const lossy = 0.1
+
+// march runs to the end of the time grid and as far beyond it as means reach.
+func (r *run) march(ctx context.Context, progress func(float64)) error {
+	end := r.m.Timing.End() + window(r.m)
+	check := 0
+	for k := 0; !r.recorded(); k++ {
+		if float64(k)*r.step > end+20*r.step+4*r.coarsest {
+			return &solver.FaultError{Solver: name, What: "the run did not reach its last row"}
+		}
+		if check++; check >= r.checkEvery {
+			check = 0
+			if err := ctx.Err(); err != nil {
+				return err
+			}
+			if progress != nil {
+				progress(math.Min(1, float64(k)*r.step/end))
+			}
+			if !r.sane() {
+				return &solver.FaultError{Solver: name, What: fmt.Sprintf("the solution is not finite at t = %.6g s", float64(k)*r.step)}
+			}
+		}
+		r.advance()
+		r.output(float64(k+1) * r.step)
+	}
+	if progress != nil {
+		progress(1)
+	}
+	return ctx.Err()
+}
+
+// advance does one step of the whole network.
+func (r *run) advance() {
+	r.k++
+	now := float64(r.k) * r.step
+	for _, s := range r.sources {
+		for i := 0; i < s.per; i++ {
+			s.advance()
+		}
+	}
+	for _, w := range r.winds {
+		for float64(w.step) < now/w.ds+windAhead-1 {
+			w.advance()
+		}
+	}
+	for _, g := range r.groups {
+		for i := 0; i < g.substeps; i++ {
+			for _, c := range g.clusters {
+				c.advance()
+			}
+		}
+	}
+	for _, l := range r.lattices {
+		for l.due(now) {
+			l.advance()
+		}
+	}
+	if s := r.stored(); s > r.most {
+		r.most = s
+	}
+}
+
+// sane tells whether every displacement is a number.
+func (r *run) sane() bool {
+	for _, g := range r.groups {
+		for _, c := range g.clusters {
+			for i := range c.joints {
+				if u := c.joints[i].u; math.IsNaN(u) || math.IsInf(u, 0) {
+					return false
+				}
+			}
+		}
+	}
+	return true
+}
+
+func finite(res *solver.Result) error {
+	bad := func(v float64) bool { return math.IsNaN(v) || math.IsInf(v, 0) }
+	for _, ch := range res.Series {
+		for _, s := range ch {
+			for _, v := range s {
+				if bad(v) {
+					return &solver.FaultError{Solver: name, What: "a record is not finite"}
+				}
+			}
+		}
+	}
+	e := res.Energy
+	if bad(e.Start + e.End + e.Work + e.Lost + e.Most) {
+		return &solver.FaultError{Solver: name, What: "the energy account is not finite"}
+	}
+	return nil
+}

@@ -1,0 +1,234 @@
+package spectral
+
+import "github.com/tautspan/tautspan/engine/solver"
+
+// rates holds a power and its first three time derivatives, W, W/s, W/s^2, W/s^3.
+type rates [4]float64
+
+// product adds the power of two quantities given with three derivatives each.
+func (r *rates) product(a, b rates) {
+	r[0] += a[0] * b[0]
+	r[1] += a[1]*b[0] + a[0]*b[1]
+	r[2] += a[2]*b[0] + 2*a[1]*b[1] + a[0]*b[2]
+	r[3] += a[3]*b[0] + 3*a[2]*b[1] + 3*a[1]*b[2] + a[0]*b[3]
+}
+
+// hermite is the integral over h of a quantity known with three derivatives at
+// both ends,
+//
+//	h/2 (g0+g1) + 3h^2/28 (g0'-g1') + h^3/84 (g0''+g1'') + h^4/1680 (g0'''-g1'''),
+//
+// of order 8, error h^9 g^(8)/25401600. Source: two-point Hermite interpolation,
+// derived (the coefficients are those of the (4, 4) Padé approximant).
+func hermite(a, b rates, h float64) float64 {
+	return h/2*(a[0]+b[0]) + 3*h*h/28*(a[1]-b[1]) + h*h*h/84*(a[2]+b[2]) + h*h*h*h/1680*(a[3]-b[3])
+}
+
+// meter keeps the energy account. Work and losses are integrated from powers, and
+// independently of the stored energy, so that the account's gap means something.
+type meter struct {
+	sys     *system
+	op      operator
+	ex      *excitation
+	lossy   bool
+	acct    solver.Energy
+	k, kc   []*source    // per prescribed node: minus its stiffness and loss columns
+	a, j    []float64    // acceleration and its derivative
+	i       []float64    // second derivative of the acceleration
+	c       [3][]float64 // loss force of velocity, acceleration and its derivative
+	f       [4][]float64
+	rd, rdd []float64
+	held    bool // end rates of the last substep serve as the next one's start
+	lastL   rates
+}
+
+func newMeter(s *system, op operator, ex *excitation) *meter {
+	n := op.size()
+	m := &meter{sys: s, op: op, ex: ex, a: make([]float64, n), j: make([]float64, n),
+		i: make([]float64, n), rd: make([]float64, len(s.brackets)), rdd: make([]float64, len(s.brackets)),
+		k: make([]*source, len(s.moved)), kc: make([]*source, len(s.moved))}
+	for q := range m.f {
+		m.f[q] = make([]float64, n)
+	}
+	for q := range m.c {
+		m.c[q] = make([]float64, n)
+	}
+	m.lossy = len(s.brackets) > 0
+	for i := range s.elements {
+		m.lossy = m.lossy || s.elements[i].rate != 0
+	}
+	for _, rows := range [][][]entry{s.rows, s.movedPF, s.movedPP} {
+		for _, row := range rows {
+			for _, t := range row {
+				m.lossy = m.lossy || t.c != 0
+			}
+		}
+	}
+	for i := range ex.sources {
+		if src := &ex.sources[i]; src.moved {
+			if src.velocity {
+				m.kc[src.node] = src
+			} else {
+				m.k[src.node] = src
+			}
+		}
+	}
+	return m
+}
+
+func dot(a, b []float64) float64 {
+	s := 0.0
+	for i, v := range a {
+		s += v * b[i]
+	}
+	return s
+}
+
+// acceleration fills m.a for the present substep at tau.
+func (m *meter) acceleration(st *state, tau, h float64) {
+	if !m.ex.total.active {
+		m.op.accel(m.a, st.x, st.v, st.r, nil)
+		return
+	}
+	m.ex.total.value(m.f[0], tau, h, 0)
+	m.op.accel(m.a, st.x, st.v, st.r, m.f[0])
+}
+
+// powers is the work and loss power at tau of the present substep.
+func (m *meter) powers(st *state, tau, h float64) (work, loss rates) {
+	m.acceleration(st, tau, h)
+	active := m.ex.total.active
+	var f1, f2 []float64
+	if active {
+		f1, f2 = m.f[1], m.f[2]
+		m.ex.total.value(f1, tau, h, 1)
+		m.ex.total.value(f2, tau, h, 2)
+	}
+	in := m.sys.inner
+	for b := range m.sys.brackets {
+		k := &m.sys.brackets[b]
+		m.rd[b] = k.k / k.c * (st.x[in+k.end] - st.r[b])
+		m.rdd[b] = k.k / k.c * (st.v[in+k.end] - m.rd[b])
+	}
+	m.op.accel(m.j, st.v, m.a, m.rd, f1)
+	m.op.accel(m.i, m.a, m.j, m.rdd, f2)
+	if m.lossy {
+		for q, v := range [3][]float64{st.v, m.a, m.j} {
+			m.op.lossForce(m.c[q], v)
+		}
+		loss = rates{dot(st.v, m.c[0]), 2 * dot(m.a, m.c[0]), 2 * (dot(m.j, m.c[0]) + dot(m.a, m.c[1])),
+			2*dot(m.i, m.c[0]) + 6*dot(m.j, m.c[1])}
+		for b := range m.sys.brackets {
+			k := &m.sys.brackets[b]
+			i := in + k.end
+			var f rates
+			f[0] = k.k * (st.x[i] - st.r[b])
+			f[1] = k.k * (st.v[i] - m.rd[b])
+			f[2] = k.k * (m.a[i] - m.rdd[b])
+			f[3] = k.k * (m.j[i] - f[2]/k.c)
+			loss.product(f, rates{f[0] / k.c, f[1] / k.c, f[2] / k.c, f[3] / k.c})
+		}
+	}
+	if m.ex.forces.active {
+		for q := range m.f {
+			m.ex.forces.value(m.f[q], tau, h, q)
+		}
+		f, v, a, j, i := &m.f, st.v, m.a, m.j, m.i
+		work[0] = dot(f[0], v)
+		work[1] = dot(f[1], v) + dot(f[0], a)
+		work[2] = dot(f[2], v) + 2*dot(f[1], a) + dot(f[0], j)
+		work[3] = dot(f[3], v) + 3*dot(f[2], a) + 3*dot(f[1], j) + dot(f[0], i)
+	}
+	if len(m.ex.motions) > 0 {
+		m.moving(st, tau, h, &work, &loss)
+	}
+	return work, loss
+}
+
+// moving adds what the prescribed nodes do: the force that the network opposes to
+// them, without their own inertia, times their velocity; and the loss in links to
+// them.
+func (m *meter) moving(st *state, tau, h float64, work, loss *rates) {
+	n := len(m.ex.motions)
+	u, v := make([]rates, n), make([]rates, n)
+	for i := range u {
+		for q := range u[i] {
+			u[i][q] = polyAt(&m.ex.up[i], tau, h, q)
+			v[i][q] = polyAt(&m.ex.vp[i], tau, h, q)
+		}
+	}
+	for i := range u {
+		var r, s rates
+		if src := m.k[i]; src != nil {
+			p := src.pattern[:m.op.size()]
+			r = rates{-dot(p, st.x), -dot(p, st.v), -dot(p, m.a), -dot(p, m.j)}
+		}
+		if src := m.kc[i]; src != nil {
+			p := src.pattern[:m.op.size()]
+			d := rates{-dot(p, st.v), -dot(p, m.a), -dot(p, m.j), -dot(p, m.i)}
+			for q := range r {
+				r[q] += d[q]
+				s[q] += 2 * d[q]
+			}
+		}
+		for _, t := range m.sys.movedPP[i] {
+			for q := range r {
+				r[q] += t.k*u[t.col][q] + t.c*v[t.col][q]
+				s[q] += t.c * v[t.col][q]
+			}
+		}
+		work.product(v[i], r)
+		loss.product(v[i], s)
+	}
+}
+
+// polyAt is the q-th time derivative at tau of a polynomial given by its
+// tau-derivatives at 0, over a substep h.
+func polyAt(p *[loadDegree + 1]float64, tau, h float64, q int) float64 {
+	sum, c := 0.0, 1.0
+	for j := q; j <= loadDegree; j++ {
+		sum += c * p[j]
+		c *= tau / float64(j-q+1)
+	}
+	for ; q > 0; q-- {
+		sum /= h
+	}
+	return sum
+}
+
+// step advances a state over one substep and books its work and losses. The loads
+// are set. quiet says that nothing acts now, as in the substep before.
+func (m *meter) step(st *state, h float64) {
+	quiet := !m.ex.total.active && len(m.ex.motions) == 0
+	if quiet && !m.lossy {
+		m.held = false
+		m.op.step(st, h, &m.ex.total)
+		return
+	}
+	var w0, l0 rates
+	if quiet && m.held {
+		l0 = m.lastL
+	} else {
+		w0, l0 = m.powers(st, 0, h)
+	}
+	m.op.step(st, h, &m.ex.total)
+	w1, l1 := m.powers(st, 1, h)
+	m.acct.Work += hermite(w0, w1, h)
+	m.acct.Lost += hermite(l0, l1, h)
+	m.held, m.lastL = quiet, l1
+}
+
+// stored is the energy held, prescribed nodes included.
+func (m *meter) stored(st *state, s *snapshot) float64 {
+	e := m.op.stored(st.x, st.v, st.r)
+	for i, src := range m.k {
+		e += m.sys.movedM[i] * s.vp[i] * s.vp[i] / 2
+		if src != nil {
+			e -= dot(src.pattern[:m.op.size()], st.x) * s.up[i]
+		}
+		for _, t := range m.sys.movedPP[i] {
+			e += t.k * s.up[i] * s.up[t.col] / 2
+		}
+	}
+	return e
+}

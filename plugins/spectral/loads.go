@@ -1,0 +1,423 @@
+package spectral
+
+import (
+	"math"
+	"sort"
+
+	"github.com/tautspan/tautspan/engine/formula"
+	"github.com/tautspan/tautspan/engine/mesh"
+)
+
+// source is a load that is a fixed pattern times a function of time.
+type source struct {
+	at      func(t float64) float64
+	pattern []float64 // operator's coordinates, then the watched nodes' shares
+	lo      int       // coordinates below carry nothing
+	moved   bool      // stems from a prescribed motion: its work is counted there
+	// Of a moved source: which prescribed node, and whether it follows its velocity.
+	node     int
+	velocity bool
+}
+
+// field is a load whose pattern changes with time: it adds its element loads.
+type field func(t float64, add func(e *element, nodal []float64))
+
+// excitation is all that acts, with the times at which any of it may jump or bend.
+type excitation struct {
+	sys     *system
+	op      operator
+	sources []source
+	fields  []field
+	breaks  []float64
+	motions []mesh.Motion
+	band    float64 // rad/s, fastest of the moving loads as the elements see them
+
+	times  [loadDegree + 1]float64                 // Gauss points on 0 .. 1
+	toTau  [loadDegree + 1][loadDegree + 1]float64 // values there to tau-derivatives at 0
+	total  load                                    // everything
+	forces load                                    // without prescribed motions
+	values [loadDegree + 1][]float64               // scratch, arrow coordinates
+	up, vp [][loadDegree + 1]float64               // prescribed displacement and velocity, tau-derivatives
+}
+
+// newExcitation prepares every load of the mesh for an operator.
+func newExcitation(s *system, op operator) *excitation {
+	x := &excitation{sys: s, op: op}
+	x.nodesInTime()
+	n := s.size() + len(s.watched)
+	for j := range x.values {
+		x.values[j] = make([]float64, n)
+		x.total.at[j] = make([]float64, n)
+	}
+	x.forces = x.total
+	for i := range s.m.Pushes {
+		x.addPush(&s.m.Pushes[i])
+	}
+	for i := range s.m.Presses {
+		x.addPress(&s.m.Presses[i])
+	}
+	for i := range s.m.Rolls {
+		x.addRoll(&s.m.Rolls[i])
+	}
+	for i, node := range s.moved {
+		x.addMotion(i, s.m.Nodes[node].Motion)
+	}
+	if len(s.moved) > 0 {
+		for j := range x.forces.at {
+			x.forces.at[j] = make([]float64, n)
+		}
+		x.up = make([][loadDegree + 1]float64, len(s.moved))
+		x.vp = make([][loadDegree + 1]float64, len(s.moved))
+	}
+	sort.Float64s(x.breaks)
+	return x
+}
+
+// nodesInTime sets the Gauss points and the matrix from values there to the
+// derivatives at tau = 0 of the polynomial through them.
+func (x *excitation) nodesInTime() {
+	g, _ := gauss(loadDegree + 1)
+	for i := range x.times {
+		x.times[i] = (1 + g[i]) / 2
+	}
+	for i, ti := range x.times {
+		// The Lagrange polynomial of point i, coefficient by coefficient.
+		poly := []float64{1}
+		for j, tj := range x.times {
+			if j == i {
+				continue
+			}
+			next := make([]float64, len(poly)+1)
+			for k, c := range poly {
+				next[k+1] += c / (ti - tj)
+				next[k] -= c * tj / (ti - tj)
+			}
+			poly = next
+		}
+		fact := 1.0
+		for j, c := range poly {
+			if j > 0 {
+				fact *= float64(j)
+			}
+			x.toTau[j][i] = c * fact
+		}
+	}
+}
+
+// history is a load's function of time, 0 before t = 0.
+func history(p formula.Program, place float64) func(float64) float64 {
+	return func(t float64) float64 {
+		if t < 0 {
+			return 0
+		}
+		return p.At(t, place)
+	}
+}
+
+// addSource takes a pattern in arrow coordinates.
+func (x *excitation) addSource(at func(float64) float64, arrow []float64) {
+	p := x.op.row(arrow)
+	lo := 0
+	for lo < len(p) && p[lo] == 0 {
+		lo++
+	}
+	x.sources = append(x.sources, source{at: at, pattern: p, lo: lo})
+}
+
+// spread adds an element's nodal loads (N) to a vector of arrow coordinates.
+func (s *system) spread(dst []float64, e *element, nodal []float64) {
+	p := e.ref.p
+	root := 1 / math.Sqrt(e.mass)
+	out := dst[e.first : e.first+p-1]
+	for i := 1; i < p; i++ {
+		if f := nodal[i] * root; f != 0 {
+			for k, v := range e.ref.v[(i-1)*(p-1) : i*(p-1)] {
+				out[k] += v * f
+			}
+		}
+	}
+	for a, i := range [2]int{0, p} {
+		if e.end[a] >= 0 {
+			dst[s.inner+e.end[a]] += nodal[i]
+		}
+	}
+	if len(s.watched) == 0 {
+		return
+	}
+	// The share of a node's own elements, also where the node is fixed.
+	pc := &s.m.Pieces[e.piece]
+	list := s.byPiece[e.piece]
+	if e == &s.elements[list[0]] {
+		if w, ok := s.watched[pc.From]; ok {
+			dst[s.size()+w] += nodal[0]
+		}
+	}
+	if e == &s.elements[list[len(list)-1]] {
+		if w, ok := s.watched[pc.To]; ok {
+			dst[s.size()+w] += nodal[p]
+		}
+	}
+}
+
+func (x *excitation) zeros() []float64 { return make([]float64, x.sys.size()+len(x.sys.watched)) }
+
+// addPush adds a point force, at a node or by the element's basis at its place.
+func (x *excitation) addPush(p *mesh.Push) {
+	v := x.zeros()
+	x.breaks = append(x.breaks, p.Force.Breaks...)
+	if p.At.Node >= 0 {
+		end := x.sys.nodeEnd[p.At.Node]
+		if end < 0 {
+			return // on a held node: the support takes it
+		}
+		v[x.sys.inner+end] = 1
+	} else {
+		e, at := x.sys.find(p.At.Piece, p.At.At)
+		x.sys.spread(v, e, e.ref.shape(make([]float64, e.ref.p+1), at))
+	}
+	x.addSource(history(p.Force.Value, 0), v)
+}
+
+// addPress adds a force per length: one pattern if it does not depend on both
+// time and place, else a field.
+func (x *excitation) addPress(p *mesh.Press) {
+	x.breaks = append(x.breaks, p.Force.Breaks...)
+	if p.Force.Value.UsesArg(formula.ArgX) && p.Force.Value.UsesArg(formula.ArgT) {
+		x.fields = append(x.fields, func(t float64, add func(*element, []float64)) {
+			if t >= 0 {
+				x.sys.press(p, func(place float64) float64 { return p.Force.Value.At(t, place) }, add)
+			}
+		})
+		return
+	}
+	v := x.zeros()
+	add := func(e *element, nodal []float64) { x.sys.spread(v, e, nodal) }
+	if p.Force.Value.UsesArg(formula.ArgX) {
+		x.sys.press(p, func(place float64) float64 { return p.Force.Value.At(0, place) }, add)
+		x.addSource(func(t float64) float64 {
+			if t < 0 {
+				return 0
+			}
+			return 1
+		}, v)
+		return
+	}
+	x.sys.press(p, func(float64) float64 { return 1 }, add)
+	x.addSource(history(p.Force.Value, 0), v)
+}
+
+// press integrates a force per length against the basis, element by element,
+// with p+2 Gauss points on the loaded part: exact for loads of degree p+3.
+func (s *system) press(p *mesh.Press, q func(float64) float64, add func(*element, []float64)) {
+	for _, part := range p.Parts {
+		for _, i := range s.byPiece[part.Piece] {
+			e := &s.elements[i]
+			lo, hi := math.Max(part.From, e.s0), math.Min(part.To, e.s0+e.h)
+			if !(hi > lo) {
+				continue
+			}
+			nodal, l := make([]float64, e.ref.p+1), make([]float64, e.ref.p+1)
+			for g, gx := range e.ref.gx {
+				at := (lo+hi)/2 + (hi-lo)/2*gx
+				f := q(part.Origin+at) * e.ref.gw[g] * (hi - lo) / 2
+				e.ref.shape(l, 2*(at-e.s0)/e.h-1)
+				for k := range l {
+					nodal[k] += f * l[k]
+				}
+			}
+			add(e, nodal)
+		}
+	}
+}
+
+// addRoll adds a constant force that travels: the basis at the moving point. It
+// bends in time whenever it passes from element to element.
+func (x *excitation) addRoll(r *mesh.Roll) {
+	if r.Force == 0 {
+		return
+	}
+	s := x.sys
+	line := &s.m.Lines[r.Line]
+	end := 0.0
+	for _, pi := range line.Pieces {
+		p := &s.m.Pieces[pi]
+		end = p.X0 + p.Length
+		for _, ei := range s.byPiece[pi] {
+			e := &s.elements[ei]
+			if r.Speed != 0 {
+				x.breaks = append(x.breaks, r.Starting+(p.X0+e.s0-r.From)/r.Speed)
+			}
+			x.band = math.Max(x.band, math.Abs(r.Speed)*float64(e.ref.p)/e.h)
+		}
+	}
+	if r.Speed != 0 {
+		x.breaks = append(x.breaks, r.Starting+(end-r.From)/r.Speed)
+	}
+	x.breaks = append(x.breaks, r.Starting)
+	x.fields = append(x.fields, func(t float64, add func(*element, []float64)) {
+		at := r.From + r.Speed*(t-r.Starting)
+		if t < r.Starting || t < 0 || at < 0 || at > end {
+			return
+		}
+		for i, pi := range line.Pieces {
+			p := &s.m.Pieces[pi]
+			if at <= p.X0+p.Length || i == len(line.Pieces)-1 {
+				e, ref := s.find(pi, at-p.X0)
+				nodal := e.ref.shape(make([]float64, e.ref.p+1), ref)
+				for k := range nodal {
+					nodal[k] *= r.Force
+				}
+				add(e, nodal)
+				return
+			}
+		}
+	})
+}
+
+// addMotion moves the known columns of a prescribed node to the right-hand side:
+// stiffness times its displacement, link dashpots times its velocity.
+func (x *excitation) addMotion(i int, m *mesh.Motion) {
+	s := x.sys
+	x.motions = append(x.motions, *m)
+	x.breaks = append(x.breaks, m.Breaks...)
+	k, c := x.zeros(), x.zeros()
+	for e := range s.elements {
+		el := &s.elements[e]
+		for a := 0; a < 2; a++ {
+			if el.end[a] == -2-i {
+				for _, half := range el.halves() {
+					sign := [2]float64{1, half.sign}[a]
+					for q := half.lo; q < half.hi; q++ {
+						k[q] -= sign * s.kappa[q]
+					}
+				}
+			}
+		}
+	}
+	lossy := false
+	for _, t := range s.movedPF[i] {
+		k[s.inner+t.col] -= t.k
+		c[s.inner+t.col] -= t.c
+		lossy = lossy || t.c != 0
+	}
+	x.addSource(m.Displacement, k)
+	x.sources[len(x.sources)-1].moved, x.sources[len(x.sources)-1].node = true, i
+	if lossy {
+		x.addSource(m.Velocity, c)
+		last := &x.sources[len(x.sources)-1]
+		last.moved, last.node, last.velocity = true, i, true
+	}
+}
+
+// over sets the loads of the substep from t to t+h.
+func (x *excitation) over(t, h float64) {
+	n := x.sys.size() + len(x.sys.watched)
+	reset := func(l *load) {
+		if l.active {
+			for j := range l.at {
+				clear(l.at[j])
+			}
+		}
+		l.active, l.lo = false, n
+	}
+	reset(&x.total)
+	if len(x.motions) > 0 {
+		reset(&x.forces)
+	}
+	for i := range x.sources {
+		src := &x.sources[i]
+		tau, active := x.sample(src.at, t, h)
+		if !active {
+			continue
+		}
+		src.add(&x.total, &tau)
+		if !src.moved && len(x.motions) > 0 {
+			src.add(&x.forces, &tau)
+		}
+	}
+	for _, f := range x.fields {
+		x.addField(f, t, h)
+	}
+	if len(x.motions) == 0 {
+		x.forces = x.total
+		return
+	}
+	for i := range x.motions {
+		x.up[i], _ = x.sample(x.motions[i].Displacement, t, h)
+		x.vp[i], _ = x.sample(x.motions[i].Velocity, t, h)
+	}
+}
+
+// sample is the polynomial through the values at the Gauss points, as
+// derivatives with respect to tau at the substep's start.
+func (x *excitation) sample(f func(float64) float64, t, h float64) (tau [loadDegree + 1]float64, active bool) {
+	for i, u := range x.times {
+		v := f(t + u*h)
+		if v == 0 {
+			continue
+		}
+		active = true
+		for j := range tau {
+			tau[j] += x.toTau[j][i] * v
+		}
+	}
+	return tau, active
+}
+
+func (src *source) add(l *load, tau *[loadDegree + 1]float64) {
+	l.active = true
+	l.lo = min(l.lo, src.lo)
+	for j, c := range tau {
+		dst := l.at[j]
+		for k := src.lo; k < len(src.pattern); k++ {
+			dst[k] += c * src.pattern[k]
+		}
+	}
+}
+
+// addField samples a changing pattern at the Gauss points.
+func (x *excitation) addField(f field, t, h float64) {
+	any := false
+	for i, u := range x.times {
+		clear(x.values[i])
+		f(t+u*h, func(e *element, nodal []float64) {
+			any = true
+			x.sys.spread(x.values[i], e, nodal)
+		})
+	}
+	if !any {
+		return
+	}
+	loads := []*load{&x.total}
+	if len(x.motions) > 0 {
+		loads = append(loads, &x.forces)
+	}
+	for i := range x.values {
+		v := x.op.row(x.values[i])
+		for _, l := range loads {
+			l.active, l.lo = true, 0
+			for j := range l.at {
+				c, dst := x.toTau[j][i], l.at[j]
+				for k, f := range v {
+					dst[k] += c * f
+				}
+			}
+		}
+	}
+}
+
+// value writes the load's q-th derivative in time at tau into dst.
+func (l *load) value(dst []float64, tau, h float64, q int) {
+	clear(dst)
+	c := math.Pow(h, -float64(q))
+	for j := q; j <= loadDegree; j++ {
+		src := l.at[j]
+		for k := range dst {
+			dst[k] += c * src[k]
+		}
+		c *= tau / float64(j-q+1)
+		if c == 0 {
+			return
+		}
+	}
+}

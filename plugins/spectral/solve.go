@@ -1,0 +1,297 @@
+package spectral
+
+import (
+	"context"
+	"fmt"
+	"math"
+
+	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/solver"
+)
+
+const (
+	name    = "spectral"
+	version = "1"
+	// maxBytes is the memory that one solution may hold.
+	maxBytes = int64(2e9)
+	// modalMost is the largest network that is diagonalised as a whole: the cost
+	// grows with the cube and cannot be interrupted.
+	modalMost = 500
+)
+
+// Solver is the spectral solver. The zero value is ready.
+type Solver struct{}
+
+// New returns the spectral solver.
+func New() solver.Solver { return Solver{} }
+
+// Name is the solver's word.
+func (Solver) Name() string { return name }
+
+// Version changes whenever answers may change.
+func (Solver) Version() string { return version }
+
+// Refuses lists what the solver cannot represent: nothing of a taut string but a
+// free mass of no mass.
+func (Solver) Refuses(m *mesh.Mesh) []string {
+	for i := range m.Pieces {
+		if !within(m.Pieces[i].From, m.Nodes) || !within(m.Pieces[i].To, m.Nodes) {
+			return []string{fmt.Sprintf("piece %d has no nodes", i)}
+		}
+	}
+	return refuses(m)
+}
+
+// Plan says what a level costs.
+func (Solver) Plan(m *mesh.Mesh, req solver.Request) (solver.Plan, error) {
+	j, err := newJob(m, req)
+	if err != nil {
+		return solver.Plan{}, err
+	}
+	return j.plan, nil
+}
+
+// job is one solution being prepared or computed.
+type job struct {
+	m      *mesh.Mesh
+	lay    *layout
+	frozen bool
+	capped bool
+	sys    *system
+	rate   float64 // of proportional damping, 1/s
+	sub    int     // base steps of one output interval
+	steps  int     // base steps in all
+	plan   solver.Plan
+}
+
+// newJob chooses the discretisation and assembles the network, after its size has
+// been found to fit.
+func newJob(m *mesh.Mesh, req solver.Request) (*job, error) {
+	if err := validate(m); err != nil {
+		return nil, err
+	}
+	if no := refuses(m); len(no) > 0 {
+		return nil, fault("%s", no[0])
+	}
+	if req.Level < 0 || req.Level > 12 {
+		return nil, fmt.Errorf("level %d: %w", req.Level, solver.ErrBudget)
+	}
+	j := &job{m: m}
+	if lay, ok := req.Freeze.(*layout); ok && lay != nil && lay.fits(m) {
+		copied := *lay
+		j.lay, j.frozen = &copied, true
+	} else {
+		j.lay, j.capped = newLayout(m, req)
+	}
+	j.baseSteps()
+	if err := j.size(); err != nil {
+		return nil, err
+	}
+	var ok bool
+	if j.sys, ok = newSystem(m, j.lay); !ok {
+		return nil, fault("an element's eigenvalues did not converge")
+	}
+	if !finite(j.sys.top) || !finite(j.sys.mass...) || !finite(j.sys.omega2...) {
+		return nil, fault("the network's numbers are out of range")
+	}
+	j.choose()
+	return j, nil
+}
+
+// baseSteps counts the steps at whose ends records are read.
+func (j *job) baseSteps() {
+	half, twice := false, false
+	for c := range j.m.Channels {
+		half = half || j.m.Channels[c].Means == 1
+		twice = twice || j.m.Channels[c].Means >= 2
+	}
+	j.sub = 1
+	if half {
+		j.sub = 2
+	}
+	j.steps = (j.m.Timing.Rows - 1) * j.sub
+	switch {
+	case j.m.Timing.Every <= 0:
+		j.steps = 0
+	case twice:
+		j.steps += j.sub
+	case half:
+		j.steps++
+	}
+}
+
+// size works out the memory before any of it is taken.
+func (j *job) size() error {
+	_, inner, ends := j.lay.count(j.m)
+	n, rec, spots := float64(inner+ends), 0.0, 0.0
+	fieldRows, _ := j.m.FieldRows()
+	for c := range j.m.Channels {
+		ch := &j.m.Channels[c]
+		rows := j.m.Timing.Rows
+		if ch.Along {
+			rows = fieldRows
+		}
+		rec += float64(rows) * float64(len(ch.Spots))
+		spots += float64(len(ch.Spots))
+	}
+	seen, refs := map[int]bool{}, 0.0
+	for _, ss := range j.lay.pieces {
+		for _, s := range ss {
+			if !seen[s.degree] {
+				seen[s.degree] = true
+				refs += 6 * float64(s.degree+1) * float64(s.degree+1)
+			}
+		}
+	}
+	loads := float64(len(j.m.Pushes) + len(j.m.Presses) + 2*len(j.m.Nodes) + 30)
+	poles := float64((padeMax + 1) / 2 * keptPlans)
+	words := rec + refs + n*(loads+40) + poles*(2*float64(inner)+2*float64(ends)*float64(ends))
+	if n <= modalMost {
+		words += 4*n*n + spots*n // sparse rows else
+	} else {
+		words += spots * (maxDegree + 20)
+	}
+	if bytes := 8 * words; bytes > float64(maxBytes) {
+		return fmt.Errorf("%s: %.3g bytes for %.3g degrees of freedom and %.3g recorded numbers: %w",
+			name, bytes, n, rec, solver.ErrBudget)
+	}
+	j.plan.Cells = int(inner + ends)
+	j.plan.Bytes = int64(8 * words)
+	return nil
+}
+
+// choose settles method and substeps, unless they are frozen, and what they cost.
+func (j *job) choose() {
+	s, lay := j.sys, j.lay
+	rate, proportional := s.proportional()
+	j.rate = rate
+	if lay.hot == 0 {
+		lay.hot = s.top
+		lay.modal = proportional && s.size() <= modalMost && !j.hasFields()
+		scale := math.Pow(ratio, float64(lay.level))
+		reach := padeReach(padeMax, padeTol) / lay.hot
+		energy := energyPhase / math.Max(lay.omega, 2*math.Pi*j.m.Band)
+		if lay.modal {
+			reach = math.Inf(1)
+			if rate > 0 {
+				reach = 1.9 / rate
+			}
+		}
+		lay.quiet = reach
+		if j.lossy() {
+			lay.quiet = math.Min(reach, energy)
+		}
+		lay.loaded = math.Min(reach, energy)
+		if j.m.Band > 0 {
+			lay.loaded = math.Min(lay.loaded, loadPhase/(2*math.Pi*j.m.Band*scale))
+		}
+		for _, r := range j.m.Rolls {
+			for _, p := range j.m.Lines[r.Line].Pieces {
+				for _, e := range s.byPiece[p] {
+					el := &s.elements[e]
+					if v := math.Abs(r.Speed) * float64(el.ref.p) / el.h; v > 0 {
+						lay.loaded = math.Min(lay.loaded, 1/v)
+					}
+				}
+			}
+		}
+	} else if lay.modal && !(proportional && s.size() <= modalMost && !j.hasFields()) {
+		lay.modal = false // the damping is no longer proportional
+		lay.quiet = math.Min(lay.quiet, padeReach(padeMax, padeTol)/lay.hot)
+		lay.loaded = math.Min(lay.loaded, lay.quiet)
+	}
+	base := j.base()
+	parts := math.Ceil(base/lay.loaded - 1e-9)
+	if len(j.m.Pushes)+len(j.m.Presses)+len(j.m.Rolls)+len(s.moved) == 0 {
+		parts = math.Ceil(base/lay.quiet - 1e-9)
+	}
+	parts = math.Max(1, parts)
+	steps := parts * float64(j.steps)
+	j.plan.Steps = int(math.Min(steps, math.MaxInt32))
+	n := float64(s.size())
+	work := steps * n * 10
+	if lay.modal {
+		work += 12 * n * n * n
+	} else {
+		m := padeDegree(lay.hot * base / parts)
+		work = steps * (n*10*float64(m+1)/2 + 4*float64(s.ends*s.ends)*float64(m+1)/2)
+	}
+	j.plan.Work = int64(math.Min(work, 9e18))
+}
+
+// base is the length of a base step, s.
+func (j *job) base() float64 { return j.m.Timing.Every / float64(j.sub) }
+
+// hasFields tells whether a load changes its pattern with time: its projection
+// on modes would cost more than the modes save.
+func (j *job) hasFields() bool {
+	for i := range j.m.Presses {
+		if v := &j.m.Presses[i].Force.Value; v.UsesArg(0) && v.UsesArg(1) {
+			return true
+		}
+	}
+	return len(j.m.Rolls) > 0
+}
+
+func (j *job) lossy() bool {
+	if len(j.sys.brackets) > 0 {
+		return true
+	}
+	for i := range j.sys.elements {
+		if j.sys.elements[i].rate > 0 {
+			return true
+		}
+	}
+	for _, row := range j.sys.rows {
+		for _, t := range row {
+			if t.c != 0 {
+				return true
+			}
+		}
+	}
+	return false
+}
+
+// Solve computes the records of a mesh.
+func (Solver) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, progress func(share float64)) (*solver.Result, error) {
+	if err := ctx.Err(); err != nil {
+		return nil, err
+	}
+	j, err := newJob(m, req)
+	if err != nil {
+		return nil, err
+	}
+	var op operator
+	if j.lay.modal {
+		mo, ok := newModal(j.sys, j.rate)
+		if !ok {
+			return nil, fault("the network's eigenvalues did not converge")
+		}
+		op = mo
+	} else {
+		op = newArrow(j.sys, j.lay.hot)
+	}
+	if err := ctx.Err(); err != nil {
+		return nil, err
+	}
+	res := &solver.Result{Plan: j.plan, Order: 0, Ratio: ratio, Layout: j.lay, Frozen: j.frozen, Series: solver.NewSeries(m)}
+	if j.capped {
+		res.Notes = append(res.Notes, "The excitations reach above the frequencies that the coarsest level resolves; further levels close the gap.")
+	}
+	w := newWalk(j, op, res.Series)
+	if err := w.march(ctx, progress); err != nil {
+		return nil, err
+	}
+	res.Energy = w.meter.acct
+	for c := range res.Series {
+		for k := range res.Series[c] {
+			if !finite(res.Series[c][k]...) {
+				return nil, fault("channel %s is not finite", m.Channels[c].Name())
+			}
+		}
+	}
+	if !finite(res.Energy.Start, res.Energy.End, res.Energy.Work, res.Energy.Lost) {
+		return nil, fault("the energy account is not finite")
+	}
+	return res, nil
+}
