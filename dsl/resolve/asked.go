@@ -100,7 +100,7 @@ func (r *resolver) limitOf(e syntax.Expr, sc *scope, v value) (value, bool) {
 	if l.bad || v.bad {
 		return l, false
 	}
-	k := unit.Kind{Word: "limit", Name: v.dim.Name(), Dim: v.dim, SI: v.dim.SI()}
+	k := same(v.dim)
 	for _, named := range []unit.Kind{unit.Force, unit.Length, unit.Time, unit.Frequency, unit.Speed, unit.Acceleration, unit.Mass, unit.Energy, unit.MassPerLength} {
 		if named.Dim == v.dim {
 			k = named

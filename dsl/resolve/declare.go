@@ -32,10 +32,14 @@ func (r *resolver) declare() {
 				r.stockOrder = append(r.stockOrder, e)
 			}
 		case *syntax.Line:
+			r.partsUnsure = r.partsUnsure || s.Incomplete
 			if r.enter(s.Name, "line") {
 				e := &lineEntry{stmt: s, name: s.Name.Text}
 				r.lines[e.name] = e
 				r.lineOrder = append(r.lineOrder, e)
+				r.declareParts(s)
+			} else {
+				r.partsUnsure = true
 			}
 		case *syntax.Watch:
 			if r.enter(s.Name, "watch") {
@@ -53,7 +57,7 @@ func (r *resolver) declare() {
 			r.enter(s.Name, "reading")
 		case *syntax.Each:
 			// Its statements give names that are not known here.
-			r.incomplete = true
+			r.incomplete, r.partsUnsure = true, true
 		}
 	}
 	r.headings()
@@ -76,10 +80,25 @@ func (r *resolver) enter(name syntax.Label, kind string) bool {
 			}
 		}
 		r.errorAt(name.Span, "duplicate-name", fmt.Sprintf("%s is the name of %s already", name.Text, article(before.kind)), "", hint, related(before.span, "first said here"))
+		r.broken[name.Text] = r.broken[name.Text] || before.kind != kind // uses of it may mean either
 		return false
 	}
 	r.top[name.Text] = symbol{kind, name.Span}
 	return true
+}
+
+// declareParts remembers what the parts of a line are called, for messages.
+func (r *resolver) declareParts(l *syntax.Line) {
+	for _, item := range l.Items {
+		switch s := item.(type) {
+		case *syntax.Support:
+			r.parts[s.Name.Text] = "support"
+		case *syntax.Segment:
+			r.parts[s.Name.Text] = "segment"
+		case *syntax.Joint:
+			r.parts[s.Name.Text] = "joint"
+		}
+	}
 }
 
 // headings takes over title, notes and about.

@@ -108,10 +108,30 @@ func (r *resolver) start(a *syntax.Start, name, path string) {
 	sc := &scope{what: "a shape along x", x: true}
 	v := r.check(r.compile(a.Shape, sc), a.Shape, k, "start "+a.Quantity.Text)
 	r.path(path+".with", a.Shape.Place())
-	if v.bad || !ok {
+	if v.bad || !ok || !r.finiteAlong(a.Shape, v.prog, along) {
 		return
 	}
 	r.tmpl.Model.Starts = append(r.tmpl.Model.Starts, scenario.StartOf[formula.Program]{Name: name, Along: along, Velocity: velocity, Shape: v.prog})
+}
+
+// finiteAlong checks a shape at some places of its stretch.
+func (r *resolver) finiteAlong(e syntax.Expr, shape formula.Program, along scenario.SpanOf) bool {
+	length := 0.0
+	for i, s := range r.tmpl.Model.Lines[along.Line].Segments {
+		if along.Segment < 0 || along.Segment == i {
+			length += r.num(s.Length)
+		}
+	}
+	const places = 16
+	for i := range places + 1 {
+		x := length * float64(i) / places
+		if v := shape.Eval(r.values, []float64{0, x}); v-v != 0 {
+			r.errorAt(e.Place(), "not-finite", "this shape has no finite value everywhere along "+r.tmpl.Model.Lines[along.Line].Name,
+				"at x = "+unit.Format(x, unit.Length.Dim, unit.SI, 4)+" it comes to "+unit.Digits(v, 4), "")
+			return false
+		}
+	}
+	return true
 }
 
 func (r *resolver) move(a *syntax.Move, name, path string) {

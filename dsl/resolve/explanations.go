@@ -167,7 +167,7 @@ A brace closes nothing, or opens a block where none may stand.`,
 	"open-bracket": `
 A round bracket is opened and not closed.`,
 	"stray-bracket": `
-A round bracket closes nothing.`,
+A round or square bracket closes nothing: its partner is missing before it, or it stands once too often.`,
 	"open-text": `
 A text in double quotes ends on the line on which it begins.`,
 	"same-line": `
@@ -201,7 +201,33 @@ This character has no meaning in the language. Letters that only look like signs
 	"unit-shape": `
 A unit is one word: factors joined by *, at most one /, with one unit or a bracket behind it, and whole powers.`,
 	"too-deep": `
-Brackets are nested too deeply.`,
+Brackets are nested too deeply to be read. Give the inner parts names with let.`,
 	"unreadable": `
 The reader of the language met a text that it cannot take apart. Please report it together with the file.`,
+	"syntax": `
+The statement does not have the form that its first word asks for. The hint shows the form, with capitals for what you put in.`,
+	"wants-value": `
+A value is missing or out of place here: a number with its unit, a let, or an expression.`,
+	"wants-name": `
+A name stands here: a letter, then letters, digits and underscores.`,
+	"wants-place": `
+A place stands here: the name of a support, joint, segment or line, or SEGMENT LENGTH or SEGMENT PERCENT.`,
+	"wants-call": `
+A name with values in brackets stands here, such as table("file.csv", ...) or slider(hold = 200 N).`,
+	"wants-property": `
+A property stands here; the hint shows which are usual.`,
+	"wants-quantity": `
+The name of a quantity stands here: displacement, velocity, acceleration, slope, force, moment or tension.`,
+	"wants-unit": `
+A unit stands behind the word "unit", such as unit kN.`,
+	"wants-column": `
+A column of a table stands here: its name in quotes, or its number from 1.`,
+	"wants-text": `
+A text in double quotes stands here.`,
+	"wants-block": `
+A block in braces stands here: { at the end of this line, the statements, and } on a line of its own.`,
+	"wants-loss": `
+A kind of loss stands here: viscous, ratio, internal, hysteretic or law.`,
+	"wants-word": `
+One of certain words stands here; the message lists them.`,
 }

@@ -5,7 +5,6 @@ import (
 	"math"
 	"strings"
 
-	"github.com/tautspan/tautspan/dsl/diag"
 	"github.com/tautspan/tautspan/dsl/syntax"
 	"github.com/tautspan/tautspan/dsl/unit"
 	"github.com/tautspan/tautspan/engine/formula"
@@ -31,6 +30,7 @@ const (
 	maxDepth  = 600
 	maxArgs   = 100
 	maxInstrs = 20_000
+	maxStack  = formula.MaxDepth - 16 // leaves room for what a property makes of an expression
 )
 
 // compile checks an expression for dimension and compiles it. A faulty one has
@@ -48,7 +48,7 @@ func (r *resolver) compile(e syntax.Expr, sc *scope) value {
 	r.depth++
 	v := r.compileAny(e, sc)
 	r.depth--
-	if !v.bad && (v.prog.Depth() > formula.MaxDepth || len(v.prog.Code) > maxInstrs) {
+	if !v.bad && (v.prog.Depth() > maxStack || len(v.prog.Code) > maxInstrs) {
 		r.errorAt(e.Place(), "too-long", "this expression is too long to compute with", "", "give parts of it names with let")
 		return badValue
 	}
@@ -183,13 +183,15 @@ func (r *resolver) product(e *syntax.Binary, a, b value) value {
 			r.errorAt(e.Y.Place(), "not-finite", "division by zero", "", "")
 			return badValue
 		}
-		return value{prog: formula.Div(a.prog, b.prog), dim: d, angle: a.angle - b.angle}
+		return value{prog: formula.Div(a.prog, b.prog), dim: d, angle: a.angle - b.angle, percent: a.percent && b.dim.IsNumber() && b.angle == 0 && !b.percent}
 	}
 	d, ok := a.dim.Mul(b.dim)
 	if !ok {
 		return r.powerFault(e)
 	}
-	return value{prog: formula.Mul(a.prog, b.prog), dim: d, angle: a.angle + b.angle}
+	// Twice 5 % is a share still.
+	percent := d.IsNumber() && a.angle == 0 && b.angle == 0 && a.percent != b.percent
+	return value{prog: formula.Mul(a.prog, b.prog), dim: d, angle: a.angle + b.angle, percent: percent}
 }
 
 func (r *resolver) powerFault(e syntax.Node) value {
@@ -274,17 +276,15 @@ func (r *resolver) unknownName(e *syntax.Name, text string, sc *scope) {
 		r.errorAt(e.Span, "not-a-value", fmt.Sprintf("%s is %s, not a value", text, article(s.kind)), "", "", related(s.span, "said here"))
 		return
 	}
-	if els := r.elements[text]; len(els) > 0 {
-		r.errorAt(e.Span, "not-a-value", fmt.Sprintf("%s is %s of a line, not a value", text, article(els[0].kind)), "", "")
+	if kind, ok := r.parts[text]; ok {
+		r.errorAt(e.Span, "not-a-value", fmt.Sprintf("%s is %s of a line, not a value", text, article(kind)), "", "")
 		return
 	}
 	if isMeasure(text) || isFunction(text) || isHistory(text) {
 		r.errorAt(e.Span, "not-a-value", text+" wants brackets", "", text+"(...)")
 		return
 	}
-	names := append(known(r.lets), "pi", "g0")
-	hint := diag.Nearest(text, names)
-	r.errorAt(e.Span, "unknown-name", "nothing is called "+text, "", hint)
+	r.errorAt(e.Span, "unknown-name", "nothing is called "+text, "", nearest(r, text, r.lets))
 }
 
 // dotted refuses a dotted name where a value should stand.

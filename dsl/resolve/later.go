@@ -61,7 +61,7 @@ func (r *resolver) letNamed(n *syntax.Name) value {
 		r.errorAt(n.Span, "wants-let", fmt.Sprintf("%s is %s, not a let", text, article(s.kind)), "", "", related(s.span, "said here"))
 		return badValue
 	}
-	r.errorAt(n.Span, "unknown-name", "no let is called "+text, "", diag.Nearest(text, known(r.lets)))
+	r.errorAt(n.Span, "unknown-name", "no let is called "+text, "", nearest(r, text, r.lets))
 	return badValue
 }
 
@@ -78,8 +78,7 @@ func (r *resolver) like(let value, what string, list ...syntax.Expr) ([]float64,
 			ok = false
 			continue
 		}
-		k := unit.Kind{Word: "let", Name: let.dim.Name(), Dim: let.dim, SI: let.dim.SI()}
-		if v = r.inRange(r.check(v, e, k, what), e, anything, what); v.bad {
+		if v = r.inRange(r.check(v, e, same(let.dim), what), e, anything, what); v.bad {
 			ok = false
 			continue
 		}
@@ -132,11 +131,10 @@ func (r *resolver) draw(c *syntax.Call, let value, what string) {
 		list = append(list, a.Value)
 	}
 	if name == "normal" || name == "lognormal" {
-		ok := true
 		if unitOf := syntax.SharedUnit(list...); unitOf != nil && !isPercent(unitOf) {
-			_, ok = r.like(let, what, list...)
+			r.like(let, what, list...)
 		} else {
-			_, ok = r.like(let, what, list[0])
+			_, ok := r.like(let, what, list[0])
 			if spread := r.spread(list[1]); ok && !spread.bad && spread.dim != let.dim && !spread.percent {
 				r.errorAt(list[1].Place(), "unit-mismatch", "the spread of "+describe(let)+" is "+let.dim.Name()+" or a share in %", "this is "+describe(spread), "")
 			}
@@ -161,7 +159,7 @@ func (r *resolver) sample(s *syntax.Sample) {
 			return
 		}
 		if x := r.num(v.prog); x != math.Trunc(x) || x < least || x > most {
-			r.errorAt(e.Place(), "out-of-range", fmt.Sprintf("%s is a whole number from %g to %g", what, least, most), "", "")
+			r.errorAt(e.Place(), "out-of-range", fmt.Sprintf("%s is a whole number from %.0f to %.0f", what, least, most), "", "")
 		}
 	}
 	whole(s.Count, "the number of samples", 1, 1e7)
@@ -234,7 +232,7 @@ func (r *resolver) reading(s *syntax.Reading) {
 		}
 		for _, d := range []*syntax.Doubt{it.Doubt, it.Shared} {
 			if d != nil {
-				r.doubt(d, last, it.Values[len(it.Values)-1])
+				r.doubt(d, last)
 			}
 		}
 		r.readingWhere(it.Where)
@@ -270,7 +268,7 @@ func (r *resolver) fit(s *syntax.Fit) {
 		case isTop:
 			r.errorAt(n.Span, "unknown-name", fmt.Sprintf("%s is %s, not a reading or a record", text, article(sym.kind)), "", "", related(sym.span, "said here"))
 		default:
-			r.errorAt(n.Span, "unknown-name", "no reading or record is called "+text, "", diag.Nearest(text, known(r.top)))
+			r.errorAt(n.Span, "unknown-name", "no reading or record is called "+text, "", nearest(r, text, r.top))
 		}
 	}
 	words := []string{"frequencies", "peaks", "returns", "swings", "decays", "history"}

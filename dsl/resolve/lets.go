@@ -14,13 +14,14 @@ import (
 
 // letEntry is one let on its way into the template.
 type letEntry struct {
-	stmt  *syntax.Let
-	expr  syntax.Expr   // nil where only `between` was said
-	doubt *syntax.Doubt // nil: exact
-	given bool          // overridden from outside
-	state letState
-	index int // in the template
-	val   value
+	stmt    *syntax.Let
+	expr    syntax.Expr   // nil where only `between` was said
+	doubt   *syntax.Doubt // nil: exact
+	given   bool          // overridden from outside
+	state   letState
+	index   int  // in the template
+	circled bool // its circle has been reported
+	val     value
 }
 
 type letState int
@@ -70,7 +71,7 @@ func (r *resolver) override() map[string]syntax.Expr {
 		e, ok := r.lets[name]
 		if !ok {
 			if !r.incomplete {
-				r.errorAt(value, "unknown-name", "no let is called "+name, "", diag.Nearest(name, known(r.lets)))
+				r.errorAt(value, "unknown-name", "no let is called "+name, "", nearest(r, name, r.lets))
 			}
 			continue
 		}
@@ -121,6 +122,12 @@ func (r *resolver) readLet(e *letEntry) value {
 		r.circle(e)
 		return badValue
 	}
+	if len(r.letStack) >= maxLetChain {
+		r.errorAt(e.stmt.Name.Span, "too-long", "this chain of lets is too long to follow", "each is computed from one that stands further down", "")
+		e.state = done
+		e.val = badValue
+		return badValue
+	}
 	e.state = busy
 	r.stack(e)
 	depth := r.depth
@@ -135,8 +142,15 @@ func (r *resolver) readLet(e *letEntry) value {
 // stack remembers the lets that are being read, for circles.
 func (r *resolver) stack(e *letEntry) { r.letStack = append(r.letStack, e) }
 
+// maxLetChain bounds how many lets may hang on one another against the order of
+// the text.
+const maxLetChain = 50_000
+
 // circle reports the lets that read one another, once, at the first of them in the text.
 func (r *resolver) circle(e *letEntry) {
+	if e.circled {
+		return
+	}
 	from := len(r.letStack) - 1
 	for from > 0 && r.letStack[from] != e {
 		from--
@@ -144,6 +158,7 @@ func (r *resolver) circle(e *letEntry) {
 	ring := append([]*letEntry{}, r.letStack[from:]...)
 	first := 0
 	for i, l := range ring {
+		l.circled = true
 		if l.stmt.Span.Start < ring[first].stmt.Span.Start {
 			first = i
 		}
@@ -235,7 +250,7 @@ func (r *resolver) letDoubt(e *letEntry) {
 	if e.doubt == nil || e.val.bad || e.state != done {
 		return
 	}
-	d, ok := r.doubt(e.doubt, e.val, e.expr)
+	d, ok := r.doubt(e.doubt, e.val)
 	if !ok {
 		return
 	}
@@ -243,8 +258,8 @@ func (r *resolver) letDoubt(e *letEntry) {
 	r.path("let."+e.stmt.Name.Text+".doubt", e.doubt.Span)
 }
 
-// doubt is a standard uncertainty in SI of a value v, which was written as expr.
-func (r *resolver) doubt(d *syntax.Doubt, v value, expr syntax.Expr) (*scenario.Doubt, bool) {
+// doubt is a standard uncertainty in SI of a value.
+func (r *resolver) doubt(d *syntax.Doubt, v value) (*scenario.Doubt, bool) {
 	if d.Between {
 		return r.rectangle(d, v)
 	}
@@ -255,7 +270,7 @@ func (r *resolver) doubt(d *syntax.Doubt, v value, expr syntax.Expr) (*scenario.
 	if spread.bad {
 		return nil, false
 	}
-	u, ok := r.spreadProgram(d, spread, v, expr)
+	u, ok := r.spreadProgram(d, spread, v)
 	if !ok {
 		return nil, false
 	}
@@ -292,39 +307,40 @@ func (r *resolver) spread(e syntax.Expr) value {
 	return v
 }
 
-// spreadProgram turns the number behind +- into a program in SI.
-func (r *resolver) spreadProgram(d *syntax.Doubt, spread, v value, expr syntax.Expr) (formula.Program, bool) {
+// spreadProgram turns the number behind +- into a program in SI. Behind a value
+// with a unit, angles included, a share is relative; behind a pure number it is
+// what the number is, and a doubt in another form is refused as ambiguous.
+func (r *resolver) spreadProgram(d *syntax.Doubt, spread, v value) (formula.Program, bool) {
 	relative := formula.Mul(formula.Apply(formula.OpAbs, v.prog), spread.prog)
 	at := d.Spread
+	hasUnit := !v.dim.IsNumber() || v.angle != 0
+	share := spread.dim.IsNumber() && spread.angle == 0
 	switch {
-	case d.OfIt && spread.dim.IsNumber():
+	case d.OfIt && share:
 		return relative, true
 	case d.OfIt:
 		r.errorAt(at.Place(), "doubt-form", "`of it` stands behind a share", "this is "+describe(spread), "+- 7 % of it")
-	case !v.dim.IsNumber() && spread.percent:
-		if v.point {
-			r.errorAt(at.Place(), "doubt-form", "the doubt of a temperature is a difference in K", "", "+- 2 K")
-			return relative, false
-		}
+	case hasUnit && spread.percent && v.point:
+		r.errorAt(at.Place(), "doubt-form", "the doubt of a temperature is a difference in K", "", "+- 2 K")
+	case hasUnit && spread.percent:
 		return relative, true
-	case !v.dim.IsNumber() && spread.bare:
-		r.errorAt(at.Place(), "missing-unit", "the doubt of "+describe(v)+" wants its unit or %", "this number has no unit", "+- "+clip(at)+" "+v.dim.SI())
-	case v.dim != spread.dim:
-		r.errorAt(at.Place(), "unit-mismatch", "the doubt of "+describe(v)+" is "+v.dim.Name()+" or a share in %", "this is "+describe(spread), "")
-	case v.dim.IsNumber() && v.percent != spread.percent && v.angle == 0 && spread.angle == 0 && isWritten(expr) && isNumber(at):
-		found := "the value is written in %, its doubt is not"
-		if spread.percent {
-			found = "absolute or of the value?"
+	case hasUnit && share && isNumber(at):
+		si := v.dim.SI()
+		if v.angle != 0 && v.dim.IsNumber() {
+			si = "deg"
 		}
-		r.errorAt(at.Place(), "doubt-form", "the doubt of a pure number is written as the number is", found, "+- "+clip(at)+" of it")
+		r.errorAt(at.Place(), "missing-unit", "the doubt of "+describe(v)+" wants its unit or %", "this number has no unit", "+- "+clip(at)+" "+si)
+	case v.dim != spread.dim || v.dim.IsNumber() && (v.angle != 0) != (spread.angle != 0):
+		r.errorAt(at.Place(), "unit-mismatch", "the doubt of "+describe(v)+" is "+v.dim.Name()+" or a share in %", "this is "+describe(spread), "")
+	case !hasUnit && spread.percent && !v.percent:
+		r.errorAt(at.Place(), "doubt-form", "the doubt of a pure number is written as the number is", "absolute or of the value?", "+- "+clip(at)+" of it")
+	case !hasUnit && v.percent && !spread.percent && isNumber(at):
+		r.errorAt(at.Place(), "doubt-form", "the doubt of a pure number is written as the number is", "the value is written in %, its doubt is not", "+- "+clip(at)+" %")
 	default:
 		return spread.prog, true
 	}
 	return relative, false
 }
-
-// isWritten tells whether a value is a number written out.
-func isWritten(e syntax.Expr) bool { return e != nil && isNumber(e) }
 
 // level is the factor by which a doubt at a level is divided.
 func (r *resolver) level(e syntax.Expr) (factor float64, words string, ok bool) {

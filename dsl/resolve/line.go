@@ -25,6 +25,7 @@ type lineEntry struct {
 	index    int
 	bad      bool
 	sideways bool
+	sagSaid  bool             // sag or an incline was asked for, and refused
 	tension  *formula.Program // of the whole line
 	at       *syntax.Spot     // of `tension T at PLACE`
 	tensAt   diag.Span
@@ -64,6 +65,7 @@ func (r *resolver) resolveLines() {
 		if segments > maxSegments {
 			r.errorAt(e.stmt.Name.Span, "too-many", fmt.Sprintf("a scenario has at most %d segments", maxSegments), fmt.Sprintf("up to here there are %d", segments), "")
 			e.bad = true
+			r.partsUnsure = true
 			return
 		}
 	}
@@ -98,9 +100,11 @@ func (r *resolver) lineProperties(e *lineEntry) {
 		case "incline":
 			v := r.want(p.Value, plain, unit.Angle, "incline")
 			if x, isConst := v.prog.IsConst(); !v.bad && !(isConst && x == 0) {
+				e.sagSaid = true
 				r.notYet(p.Span, "an inclined line, whose tension varies along it,", "")
 			}
 		case "sag":
+			e.sagSaid = true
 			r.notYet(p.Span, "sag", "leave it out: every mode but the first in the vertical plane stays right")
 		case "stretch":
 			r.notYet(p.Span, "tension that grows with amplitude", "")
@@ -282,7 +286,7 @@ func (r *resolver) segmentStock(s *syntax.Segment) *stockEntry {
 		r.errorAt(s.Stock.Span, "unknown-name", fmt.Sprintf("%s is %s, not a stock", name, article(other.kind)), "", "", related(other.span, "said here"))
 		return nil
 	}
-	r.errorAt(s.Stock.Span, "unknown-name", "no stock is called "+name, "", diag.Nearest(name, known(r.stocks)))
+	r.errorAt(s.Stock.Span, "unknown-name", "no stock is called "+name, "", nearest(r, name, r.stocks))
 	return nil
 }
 
@@ -313,8 +317,10 @@ func (r *resolver) lineTensionPlace(e *lineEntry) {
 	if e.at == nil {
 		return
 	}
-	if name, ok := e.at.Name.Plain(); ok && name == "mean" && e.at.Offset == nil {
-		return
+	if name, ok := e.at.Name.Plain(); ok && e.at.Offset == nil {
+		if _, own := e.own[name]; own || name == "mean" {
+			return
+		}
 	}
 	if p, ok := r.place(e.at, "tension"); ok && p.Line != e.index {
 		r.errorAt(e.at.Span, "wrong-place", "the tension of a line is said at a place of that line", "", "")

@@ -153,7 +153,7 @@ func (r *resolver) quantityMeasure(c *syntax.Call, sc *scope, kind scenario.Meas
 			if !ok {
 				return badValue
 			}
-			k = unit.Kind{Word: "level", Name: qd.Name(), Dim: qd, SI: qd.SI()}
+			k = same(qd)
 		}
 		v := r.inRange(r.want(level, plain, k, "the level of "+c.Name.Text), level, positive, "the level of "+c.Name.Text)
 		if v.bad {
@@ -227,7 +227,7 @@ func (r *resolver) watch(n *syntax.Name) (int, bool) {
 		r.errorAt(n.Parts[0].Span, "unknown-name", fmt.Sprintf("%s is %s, not a watch", name, article(s.kind)), "", "", related(s.span, "said here"))
 		return 0, false
 	}
-	r.errorAt(n.Parts[0].Span, "unknown-name", "no watch is called "+name, "", diag.Nearest(name, known(r.watches)))
+	r.errorAt(n.Parts[0].Span, "unknown-name", "no watch is called "+name, "", nearest(r, name, r.watches))
 	return 0, false
 }
 

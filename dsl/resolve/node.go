@@ -50,6 +50,9 @@ func (n *nodeReader) property(p *syntax.Property) {
 		n.node.Fixed = true
 	case "clamped":
 		n.node.Fixed = true
+		if r.bent {
+			break // the line is refused for its bending, which gives clamped its meaning
+		}
 		r.warnAt(p.Word.Span, "no-effect", "clamped is the same as fixed here", "this line has no bending stiffness, so nothing is held from turning", "fixed")
 	case "free":
 	case "absorbing":
@@ -145,7 +148,7 @@ func (n *nodeReader) conflicts() {
 		if at, ok := n.said[word]; ok && len(n.said) > 1 {
 			for other := range n.said {
 				if other != word && other != "axial" && other != "weighted" && other != "holds" {
-					r.errorAt(at, "contradiction", word+" stands alone", "", "")
+					r.errorAt(at, "contradiction", word+" stands alone at a support", "other properties stand beside it", "")
 					return
 				}
 			}

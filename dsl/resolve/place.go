@@ -5,7 +5,6 @@ import (
 	"math"
 	"strings"
 
-	"github.com/tautspan/tautspan/dsl/diag"
 	"github.com/tautspan/tautspan/dsl/syntax"
 	"github.com/tautspan/tautspan/dsl/unit"
 	"github.com/tautspan/tautspan/engine/formula"
@@ -46,7 +45,7 @@ func (r *resolver) find(n *syntax.Name, subject string) (element, bool) {
 				return el, true
 			}
 			if !l.stmt.Incomplete {
-				hint := diag.Nearest(n.Parts[1].Text, known(l.own))
+				hint := nearest(r, n.Parts[1].Text, l.own)
 				if hint != "" {
 					hint = text + "." + hint
 				}
@@ -61,30 +60,29 @@ func (r *resolver) find(n *syntax.Name, subject string) (element, bool) {
 
 func (r *resolver) ambiguous(n *syntax.Name, els []element) {
 	var names []string
-	for _, el := range els {
+	for i, el := range els {
+		if i == 4 {
+			names = append(names, "…")
+			break
+		}
 		names = append(names, r.tmpl.Model.Lines[el.line].Name+"."+n.Parts[0].Text)
-	}
-	if len(names) > 4 {
-		names = append(names[:4], "…")
 	}
 	r.errorAt(n.Span, "ambiguous-name", "several lines have a part called "+n.Parts[0].Text, "say which line", strings.Join(names, " or "))
 }
 
 func (r *resolver) unknownPlace(n *syntax.Name, text, subject string) {
-	if r.broken[text] {
+	if r.broken[text] || r.partsUnsure {
 		return
-	}
-	for _, l := range r.lineOrder {
-		if l.stmt.Incomplete {
-			return // the part may be in what could not be read
-		}
 	}
 	if s, ok := r.top[text]; ok && len(n.Parts) == 1 {
 		r.errorAt(n.Span, "unknown-name", fmt.Sprintf("%s wants a part of a line, and %s is %s", subject, text, article(s.kind)), "", "", related(s.span, "said here"))
 		return
 	}
-	names := append(known(r.elements), known(r.lines)...)
-	r.errorAt(n.Span, "unknown-name", "no part of a line is called "+clip(n), "", diag.Nearest(text, names))
+	hint := nearest(r, text, r.elements)
+	if hint == "" {
+		hint = nearest(r, text, r.lines)
+	}
+	r.errorAt(n.Span, "unknown-name", "no part of a line is called "+clip(n), "", hint)
 }
 
 // place resolves a point of a line.
@@ -140,8 +138,8 @@ func (r *resolver) offset(s *syntax.Spot, el element, out placeOf) (placeOf, boo
 	// The same slack as the binder's: rounding must not refuse the end of a segment.
 	slack := 1e-9 * length
 	if !(x >= -slack && x <= length+slack) || math.IsInf(x, 0) {
-		r.errorAt(s.Offset.Place(), "place-outside", fmt.Sprintf("%s is %s long", clip(s.Name), unit.Format(length, unit.Length.Dim, unit.SI, 6)),
-			unit.Format(x, unit.Length.Dim, unit.SI, 6)+" lies outside it", "")
+		r.errorAt(s.Offset.Place(), "place-outside", unit.Format(x, unit.Length.Dim, unit.SI, 6)+" lies outside the segment "+clip(s.Name),
+			fmt.Sprintf("%s is %s long", clip(s.Name), unit.Format(length, unit.Length.Dim, unit.SI, 6)), "")
 		return out, false
 	}
 	return out, true

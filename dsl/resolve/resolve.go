@@ -80,7 +80,7 @@ func Resolve(fsys fs.FS, name string, opts Options) Result {
 	r := &resolver{
 		fsys: fsys, opts: opts, tmpl: &scenario.Template{}, paths: Paths{},
 		top: map[string]symbol{}, lets: map[string]*letEntry{}, stocks: map[string]*stockEntry{}, lines: map[string]*lineEntry{},
-		elements: map[string][]element{}, watches: map[string]int{}, units: map[string]unitRead{}, tables: map[string]*csvFile{}, broken: map[string]bool{},
+		elements: map[string][]element{}, watches: map[string]int{}, units: map[string]unitRead{}, tables: map[string]*csvFile{}, broken: map[string]bool{}, parts: map[string]string{},
 	}
 	r.load(name)
 	r.declare()
@@ -108,7 +108,8 @@ type resolver struct {
 
 	statements []syntax.Statement // of the scenario, then those taken from used files
 	top        map[string]symbol
-	broken     map[string]bool // names of statements that could not be read
+	broken     map[string]bool   // names of statements that could not be read
+	parts      map[string]string // kinds of the parts of lines, by bare name
 
 	lets     map[string]*letEntry
 	letOrder []*letEntry // in the order of the text
@@ -122,10 +123,14 @@ type resolver struct {
 	elements   map[string][]element // by bare name, over all lines
 	watches    map[string]int       // index into the template's watches, -1 where it is faulty
 
-	units      map[string]unitRead
-	tables     map[string]*csvFile
-	depth      int  // of the expression being compiled
-	incomplete bool // some statement could not be read: absences prove nothing
+	units  map[string]unitRead
+	tables map[string]*csvFile
+	depth  int  // of the expression being compiled
+	bent   bool // some stock has a bending stiffness
+	// partsUnsure: a line could not be read whole, so that a part may exist unseen.
+	partsUnsure bool
+	searched    int  // words looked through for hints
+	incomplete  bool // some statement could not be read: absences prove nothing
 }
 
 // symbol is one name at the top of a file.
@@ -151,13 +156,25 @@ func (r *resolver) notYet(span diag.Span, what, hint string) {
 
 // path records where a path of the template is said.
 func (r *resolver) path(path string, span diag.Span) {
-	if _, ok := r.paths[path]; !ok {
+	if _, ok := r.paths[path]; !ok && !span.IsZero() {
 		r.paths[path] = span
 	}
 }
 
 // num is the nominal value of a program that is known to be sound.
 func (r *resolver) num(p formula.Program) float64 { return p.Eval(r.values, nil) }
+
+// maxSearched bounds the words that are looked through for hints, so that a text
+// full of mistakes is not slow to refuse.
+const maxSearched = 1_000_000
+
+// nearest is the name in m that was probably meant, or "".
+func nearest[V any](r *resolver, word string, m map[string]V) string {
+	if r.searched += len(m); r.searched > maxSearched {
+		return ""
+	}
+	return diag.Nearest(word, known(m))
+}
 
 // known lists names in a fixed order.
 func known[V any](m map[string]V) []string {

@@ -181,6 +181,7 @@ func (r *resolver) stockStiffness(e *stockEntry, said properties, got map[string
 	const hint = "write `bending 0 N*m^2` to treat it knowingly as an ideal string"
 	if b, ok := got["bending"]; ok {
 		if r.num(b) > 0 {
+			r.bent = true
 			r.notYet(said["bending"].Span, "a line with bending stiffness", hint)
 			e.bad = true
 		}
@@ -191,6 +192,7 @@ func (r *resolver) stockStiffness(e *stockEntry, said properties, got map[string
 	}
 	for _, word := range []string{"diameter", "wires"} {
 		if p := said[word]; p != nil {
+			r.bent = true
 			r.notYet(p.Span, "the bending stiffness that follows from young and "+word, hint)
 			e.bad = true
 			return

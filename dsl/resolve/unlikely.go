@@ -96,7 +96,7 @@ func (r *resolver) unlikelyLine(e *lineEntry, line *scenario.LineOf[formula.Prog
 			r.outside(p.tensAt, "unlikely-wave-speed", fmt.Sprintf("a wave speed in %s", s.Stock), math.Sqrt(t/m), speedLow, speedHigh, unit.Speed.Dim)
 		}
 	}
-	if !e.sideways && give > 0 {
+	if !e.sideways && !e.sagSaid && give > 0 {
 		r.sagMatters(e, r.num(line.Segments[0].Tension), mass, length, give)
 	}
 }

@@ -92,12 +92,23 @@ func (r *resolver) want(e syntax.Expr, sc *scope, k unit.Kind, subject string) v
 	return r.check(v, e, k, subject)
 }
 
+// sameAsOther is the word of a kind that is whatever another value is.
+const sameAsOther = "same"
+
+// same is the kind of another value.
+func same(d unit.Dim) unit.Kind {
+	return unit.Kind{Word: sameAsOther, Name: d.Name(), Dim: d, SI: d.SI()}
+}
+
 // check holds a compiled value against a kind.
 func (r *resolver) check(v value, e syntax.Expr, k unit.Kind, subject string) value {
 	if v.bad {
 		return v
 	}
 	code := "wants-" + k.Word
+	if k.Word == sameAsOther {
+		code = "unit-mismatch"
+	}
 	needsUnit := !k.Dim.IsNumber() || k == unit.Angle
 	switch {
 	case v.bare && needsUnit:

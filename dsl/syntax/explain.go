@@ -52,6 +52,9 @@ func (p *parser) known(k chunk, c Context) bool {
 
 // unknownWord speaks of a word that begins no statement here.
 func (p *parser) unknownWord(t Token, c Context, words []string) {
+	if p.broken > maxExplained {
+		words = nil
+	}
 	where := "a scenario"
 	if c != Top && c != InEach {
 		where = "`" + string(c) + "`"
@@ -232,17 +235,38 @@ func (p *parser) slip(k chunk, c Context, tokens []Token, i int, message string)
 	case i < len(tokens) && i > 0 && tokens[i].Kind == Ident && !continues(tokens[i-1]) && c != InAbout && c != Top && c != InEach &&
 		contains(StatementWords(c), tokens[i].Text) && wanted(message) == "":
 		p.report(tokens[i], "same-line", "a statement begins on a line of its own", "`"+tokens[i].Text+"` begins another", "")
-	case i < len(tokens) && tokens[0].Text == "let" && i == 2 && tokens[1].Kind == Ident && tokens[i].Kind != UnitTok && !tokens[i].is("["):
-		rest := diag.Span{File: p.file, Start: tokens[i].Start, End: last.End}
-		p.report(tokens[i], "missing-equals", "`let` wants `=` between name and value", "the value begins here", "let "+tokens[1].Text+" = "+firstLine(rest).Text())
-	case i < len(tokens) && i > 0 && tokens[i].Kind == Open:
-		p.report(tokens[i], "touching-bracket", "a bracket that touches the word before it begins a call", "`"+tokens[i-1].Text+"` takes none here",
-			tokens[i-1].Text+" (")
-	case i < len(tokens) && i > 0 && tokens[i].Kind == Mark && tokens[i].is("=") && tokens[i-1].is("="):
-		p.report(tokens[i], "double-equals", "one `=` is enough", "", "=")
-	case k.hi > k.lo && i < len(tokens) && i > 1 && tokens[i].Kind == Ident && p.nameBesideName(tokens, i):
-		p.report(tokens[i], "needs-brackets", "a value beside another stands in brackets unless it is a quantity", "this is a name",
-			"("+tokens[i].Text+")")
+	case i == len(tokens)-1 && i > 1 && last.Kind == Ident && contains(strings.Fields(valueWords), last.Text):
+		p.reportAt(At{diag.Span{File: p.file, Start: last.End, End: last.End}}, "wants-value", "`"+last.Text+"` wants a value here", "the statement ends here", "")
+	case i == len(tokens) || i == 0:
+		return false
+	default:
+		return p.slipAt(tokens, i)
+	}
+	return true
+}
+
+// valueWords are words of properties that a value must follow.
+const valueWords = "mass rotary inertia axial spring dashpot friction tuned stop through loss every tension"
+
+// slipAt recognises a likely slip by token i, which is neither the first nor
+// behind the last.
+func (p *parser) slipAt(tokens []Token, i int) bool {
+	t, before, last := tokens[i], tokens[i-1], tokens[len(tokens)-1]
+	const beside = "a value beside another stands in brackets unless it is a quantity"
+	switch {
+	case t.Kind == Open:
+		p.report(t, "touching-bracket", "a bracket that touches the word before it begins a call", "`"+before.Text+"` takes none here", before.Text+" (")
+	case tokens[0].Text == "let" && i == 2 && before.Kind == Ident && t.Kind != UnitTok && !t.is("["):
+		rest := diag.Span{File: p.file, Start: t.Start, End: last.End}
+		p.report(t, "missing-equals", "`let` wants `=` between name and value", "the value begins here", "let "+before.Text+" = "+firstLine(rest).Text())
+	case t.is("=") && before.is("="):
+		p.report(t, "double-equals", "one `=` is enough", "", "=")
+	case t.is("."):
+		p.report(t, "wants-name", "a name goes on behind a dot", "nothing follows this one", "")
+	case (t.Kind == Sign || t.Kind == Times) && (before.Kind == UnitTok || before.Kind == Numeral || before.is(")")):
+		p.report(t, "needs-brackets", beside, "the value before this sign goes on", "")
+	case i > 1 && t.Kind == Ident && p.nameBesideName(tokens, i):
+		p.report(t, "needs-brackets", beside, "this is a name", "("+t.Text+")")
 	default:
 		return false
 	}
@@ -252,7 +276,7 @@ func (p *parser) slip(k chunk, c Context, tokens []Token, i int, message string)
 // nameBesideName says whether token i is a name that stands where `tuned` or
 // `stop` want their values, or behind the name of a place.
 func (p *parser) nameBesideName(tokens []Token, i int) bool {
-	if IsKeyword(tokens[i].Text) {
+	if IsKeyword(tokens[i].Text) || i+1 < len(tokens) && tokens[i+1].Kind == Open {
 		return false
 	}
 	for j := i - 1; j > 0 && j >= i-4; j-- {

@@ -93,8 +93,8 @@ var (
 	MassPerLength  = Kind{"mass-per-length", "a mass per length", dim(-1, 1, 0), "kg/m"}
 	Density        = Kind{"density", "a density", dim(-3, 1, 0), "kg/m^3"}
 	ForcePerLength = Kind{"force-per-length", "a force per length", dim(0, 1, -2), "N/m"}
-	Spring         = Kind{"spring", "a spring constant", dim(0, 1, -2), "N/m"}
-	Dashpot        = Kind{"dashpot", "a dashpot constant", dim(0, 1, -1), "N*s/m"}
+	Spring         = Kind{"spring", "a spring constant (force per length)", dim(0, 1, -2), "N/m"}
+	Dashpot        = Kind{"dashpot", "a dashpot constant (force per velocity)", dim(0, 1, -1), "N*s/m"}
 	Viscous        = Kind{"viscous", "a viscous coefficient (force per length and velocity)", dim(-1, 1, -1), "N*s/m^2"}
 	Bending        = Kind{"bending", "a bending stiffness", dim(3, 1, -2), "N*m^2"}
 	Rotary         = Kind{"rotary", "a rotary spring constant", dim(2, 1, -2), "N*m/rad"}

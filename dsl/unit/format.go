@@ -160,7 +160,8 @@ func Digits(v float64, digits int) string {
 	rounded, _ := strconv.ParseFloat(text, 64)
 	if a := math.Abs(rounded); a >= 1e9 || a < 1e-4 {
 		mantissa, exponent, _ := strings.Cut(text, "e")
-		return trim(mantissa) + "e" + strings.Replace(strings.TrimPrefix(exponent, "+"), "-0", "-", 1)
+		power, _ := strconv.Atoi(exponent)
+		return trim(mantissa) + "e" + strconv.Itoa(power)
 	}
 	decimals := digits - 1 - int(math.Floor(math.Log10(math.Abs(rounded))+1e-12))
 	return trim(strconv.FormatFloat(rounded, 'f', max(decimals, 0), 64))

@@ -56,7 +56,7 @@ func None() Unit { return Unit{num: 1, den: 1} }
 // maxLength bounds a unit's text, maxExponent the power after ^.
 const (
 	maxLength   = 200
-	maxExponent = 12
+	maxExponent = maxPower
 )
 
 // Parse reads a unit word such as kN*m^2, N·s/m², W/(m^2*K), 1/K, % or degC.

@@ -33,9 +33,9 @@ func (k Kind) governed() bool { return k == Peak || k == RMS || k == Final }
 
 // figures are the observables of one record, and what goes with them.
 type figures struct {
-	of       [kindCount]float64 // Record: its root mean square
-	peakAt   int                // row of the peak
-	peakSpot int
+	of   [kindCount]float64 // Record: its root mean square
+	at   [kindCount]int     // row of the peak, of the final, highest and lowest value
+	spot [kindCount]int     // and their spot
 }
 
 // newFigures reads a channel's records, one a spot. All rows count alike.
@@ -48,10 +48,14 @@ func newFigures(spots [][]float64) figures {
 		for i, v := range record {
 			squares += v * v
 			if a := math.Abs(v); a > f.of[Peak] {
-				f.of[Peak], f.peakAt, f.peakSpot = a, i, k
+				f.of[Peak], f.at[Peak], f.spot[Peak] = a, i, k
 			}
-			f.of[Highest] = math.Max(f.of[Highest], v)
-			f.of[Lowest] = math.Min(f.of[Lowest], v)
+			if v > f.of[Highest] {
+				f.of[Highest], f.at[Highest], f.spot[Highest] = v, i, k
+			}
+			if v < f.of[Lowest] {
+				f.of[Lowest], f.at[Lowest], f.spot[Lowest] = v, i, k
+			}
 		}
 		sum += squares
 		n += len(record)
@@ -67,27 +71,20 @@ func newFigures(spots [][]float64) figures {
 
 // Figures are the single figures of a channel's records.
 type Figures struct {
-	Peak, RMS, Final, Highest, Lowest        float64
-	PeakRow, PeakSpot, HighestRow, LowestRow int
+	Peak, RMS, Final, Highest, Lowest float64
+	PeakRow, HighestRow, LowestRow    int
+	PeakSpot, HighestSpot, LowestSpot int
 }
 
 // FiguresOf reads the figures of a channel's records, one a spot, as the
-// comparison does; the rows of the highest and lowest are those of the first spot.
+// comparison does.
 func FiguresOf(spots [][]float64) Figures {
 	f := newFigures(spots)
-	out := Figures{
+	return Figures{
 		Peak: f.of[Peak], RMS: f.of[RMS], Final: f.of[Final], Highest: f.of[Highest], Lowest: f.of[Lowest],
-		PeakRow: f.peakAt, PeakSpot: f.peakSpot,
+		PeakRow: f.at[Peak], HighestRow: f.at[Highest], LowestRow: f.at[Lowest],
+		PeakSpot: f.spot[Peak], HighestSpot: f.spot[Highest], LowestSpot: f.spot[Lowest],
 	}
-	for i, v := range spots[0] {
-		if v > spots[0][out.HighestRow] {
-			out.HighestRow = i
-		}
-		if v < spots[0][out.LowestRow] {
-			out.LowestRow = i
-		}
-	}
-	return out
 }
 
 func final(spots [][]float64) float64 {

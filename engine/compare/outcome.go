@@ -226,7 +226,7 @@ func (r *runner) channel(c int, obs []Observable) Channel {
 		f := SolverFigures{Peak: math.NaN(), TimeOfPeak: math.NaN(), ErrorBar: math.NaN(), Order: math.NaN(), RecordBar: math.NaN()}
 		if v.usable() {
 			top := &v.top().figures[c]
-			f.Peak, f.TimeOfPeak = top.of[Peak], float64(top.peakAt*stride)*r.mesh.Timing.Every
+			f.Peak, f.TimeOfPeak = top.of[Peak], float64(top.at[Peak]*stride)*r.mesh.Timing.Every
 			f.ErrorBar, f.Order = obs[Peak].Bars[i], obs[Record].Orders[i]
 			f.RecordBar = share(obs[Record].Bars[i], obs[Record].Scale)
 			e1, e2 := v.changes(c, Record)

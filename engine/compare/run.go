@@ -283,6 +283,11 @@ func (r *runner) wants() map[int]int {
 // the difference stands: once for every difference, and once more.
 const confirmMost = 2
 
+// plainDifference is the ratio of a difference to its bars beyond which no bar
+// was so wrong in any trial that refinement could mend it; such a difference
+// stands at once. Chosen: five times what counts as a difference.
+const plainDifference = 5 * ratioDiffer
+
 // confirm marks both voices of a pair that does not agree: they are refined once
 // more before anything is said about them.
 func (r *runner) confirm(o *Observable, doubtful map[int]bool) {
@@ -290,7 +295,7 @@ func (r *runner) confirm(o *Observable, doubtful map[int]bool) {
 		return
 	}
 	for _, p := range o.Pairs {
-		if p.Ratio <= ratioAgree {
+		if p.Ratio <= ratioAgree || p.Ratio > plainDifference {
 			continue
 		}
 		for _, i := range []int{p.A, p.B} {

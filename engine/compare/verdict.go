@@ -6,7 +6,8 @@ import (
 )
 
 // Ratios of a difference to the sum of two bars: up to the first the solvers
-// agree, beyond the second they differ, between the two nothing is said.
+// agree, beyond the second they differ, between the two nothing is said unless
+// difference and bars together stay within the share asked for.
 const (
 	ratioAgree  = 1
 	ratioDiffer = 2
@@ -36,8 +37,12 @@ func rule(n int, pairs []Pair, agree, alone float64) ruling {
 		switch {
 		case p.Ratio > ratioDiffer:
 			differing++
-		case p.Ratio > ratioAgree:
+		case p.Ratio > ratioAgree && (1+p.Ratio)*p.Resolving > agree:
 			open = true
+		case p.Ratio > ratioAgree:
+			// The bars are a little small, but difference and bars together stay
+			// within the share asked for, which is then what the pair resolves.
+			out.resolving = math.Min(out.resolving, (1+p.Ratio)*p.Resolving)
 		default:
 			out.resolving = math.Min(out.resolving, p.Resolving)
 		}

@@ -22,6 +22,7 @@ func TestRule(t *testing.T) {
 		{"two agree", 2, []Pair{{0, 1, 1, 0.5, 0.008}}, 0.01, inf, Agree, -1, 0.008},
 		{"two agree but prove little", 2, []Pair{{0, 1, 1, 0.5, 0.08}}, 0.01, inf, Unsettled, -1, 0.08},
 		{"two between", 2, []Pair{{0, 1, 1, 1.5, 0.008}}, 0.01, inf, Unsettled, -1, 0.008},
+		{"two between, far within what is asked", 2, []Pair{{0, 1, 1, 1.5, 0.002}}, 0.01, inf, Agree, -1, 0.005},
 		{"two differ", 2, []Pair{{0, 1, 1, 2.1, 0.008}}, 0.01, inf, Differ, -1, 0.008},
 		{"at the limits", 2, []Pair{{0, 1, 1, 1, 0.01}}, 0.01, inf, Agree, -1, 0.01},
 		{"third odd", 3, []Pair{{0, 1, 1, 0.5, 0.008}, {0, 2, 1, 4, 0.009}, {1, 2, 1, 3, 0.009}}, 0.01, inf, Differ, 2, 0.008},

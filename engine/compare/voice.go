@@ -115,8 +115,11 @@ func (v *voice) bar(c int, k Kind, s scales, all []*voice) Bar {
 		if own := s.of(c, Record, all); own > 0 {
 			floor = floorShare * record.Bound / own * scale
 		}
-		if k == Final {
+		switch k {
+		case Final:
 			floor = math.Max(floor, v.lastBand(c, record))
+		case Peak, Highest, Lowest:
+			floor = math.Max(floor, v.localBand(c, k, record))
 		}
 		b.Bound = math.Max(b.Bound, floor)
 	}
@@ -161,6 +164,28 @@ func (v *voice) lastBand(c int, record Bar) float64 {
 		sum += most * most
 	}
 	return record.Bound / e2 * math.Sqrt(sum/float64(len(coarse)))
+}
+
+// localRows is how many rows on either side of a peak its own change is looked
+// for: a peak at a kink is as wrong as the record is there, which is more than
+// the record is on the whole.
+const localRows = 2
+
+// localBand is the change at and beside the row of a peak, highest or lowest
+// value, scaled as the bar of the record.
+func (v *voice) localBand(c int, k Kind, record Bar) float64 {
+	_, e2 := v.changes(c, Record)
+	if e2 == 0 {
+		return 0
+	}
+	f := &v.top().figures[c]
+	spot, row := f.spot[k], f.at[k]
+	fine, coarse := v.series(c)[spot], v.runs[len(v.runs)-2].result.Series[c][spot]
+	most := 0.0
+	for i := max(0, row-localRows); i <= min(len(fine)-1, row+localRows); i++ {
+		most = math.Max(most, math.Abs(fine[i]-coarse[i]))
+	}
+	return record.Bound / e2 * most
 }
 
 // halfSwing is half the mean distance, in rows, between changes of sign of a-b,

@@ -22,38 +22,46 @@ const rounding = 0x1p-53
 
 // side is the one-sided limit of f at x from the direction dir (+1 or -1), and
 // its one-sided slope and second derivative, from points at most reach away.
-// The steps shrink by 4 until neighbours agree best, rounding counted in (Ridders'
-// idea), since the scale of f is not known. Four-point formulas from x+h .. x+4h: value of order
-// h^4, slope of order h^3, second derivative of order h^2 (Taylor).
+// Four-point formulas from x+h .. x+4h: value of order h^4, slope of order h^3,
+// second derivative of order h^2 (Taylor). The scale of f is not known: each
+// starts from the smallest step, where it is true but for rounding, and takes the
+// larger ones as long as they agree with what stands to within its rounding.
 func side(f func(float64) float64, x, dir, reach float64) (value, slope, curve float64) {
 	return sideAbove(f, x, dir, reach, 0)
 }
 
+// sideSteps is the number of steps that side tries: from reach/8 down by factors
+// of 4 to 2e-9 of reach.
+const sideSteps = 14
+
 // sideAbove is side with steps no smaller than floor, for functions that are
 // difference quotients themselves.
 func sideAbove(f func(float64) float64, x, dir, reach, floor float64) (value, slope, curve float64) {
-	var last [3]float64
-	gap := [3]float64{math.Inf(1), math.Inf(1), math.Inf(1)}
-	var best [3]float64
-	h := reach / 8
-	for k := 0; k < 14 && (k < 2 || h >= floor); k++ {
+	var all [sideSteps][3]float64
+	var steps [sideSteps]float64
+	size, n := 0.0, 0
+	for h := reach / 8; n < sideSteps && (n < 2 || h >= floor); h /= 4 {
 		f1, f2, f3, f4 := f(x+dir*h), f(x+2*dir*h), f(x+3*dir*h), f(x+4*dir*h)
-		now := [3]float64{
+		all[n] = [3]float64{
 			4*f1 - 6*f2 + 4*f3 - f4,
 			dir * (-26*f1 + 57*f2 - 42*f3 + 11*f4) / (6 * h),
 			(3*f1 - 8*f2 + 7*f3 - 2*f4) / (h * h),
 		}
-		size := math.Max(math.Max(math.Abs(f1), math.Abs(f2)), math.Max(math.Abs(f3), math.Abs(f4)))
-		noise := [3]float64{16 * rounding * size, 23 * rounding * size / h, 20 * rounding * size / (h * h)}
-		for i, v := range now {
-			if k > 0 {
-				if d := math.Abs(v-last[i]) + noise[i]; d < gap[i] {
-					gap[i], best[i] = d, v
-				}
+		steps[n] = h
+		size = math.Max(size, math.Max(math.Max(math.Abs(f1), math.Abs(f2)), math.Max(math.Abs(f3), math.Abs(f4))))
+		n++
+	}
+	// Sums of the formulas' weights, times rounding, times 4 for f's own.
+	weights := [3]float64{60, 92, 80}
+	best := all[n-1]
+	for i := range best {
+		for k := n - 2; k >= 0; k-- {
+			noise := weights[i] * rounding * size / math.Pow(steps[k+1], float64(i))
+			if !(math.Abs(all[k][i]-best[i]) <= noise) {
+				break
 			}
+			best[i] = all[k][i]
 		}
-		last = now
-		h /= 4
 	}
 	return best[0], best[1], best[2]
 }

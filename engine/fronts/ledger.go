@@ -97,14 +97,14 @@ func (a Account) Gap() float64 { return a.Input - a.Absorbed - a.Damped - a.Lost
 // At is the k-th arrival at a watch, counted from 1, among those at least as
 // strong as share times the first of the same excitation and quantity there.
 func (l *Ledger) At(watch string, k int, share float64) (Arrival, bool) {
-	type kind struct{ excite, quantity string }
-	first := map[kind]float64{}
+	type series struct{ excite, quantity string }
+	first := map[series]float64{}
 	n := 0
 	for _, a := range l.Arrivals {
 		if a.Watch != watch {
 			continue
 		}
-		key := kind{a.Excite, a.Quantity}
+		key := series{a.Excite, a.Quantity}
 		f, seen := first[key]
 		if !seen {
 			f = math.Abs(a.Amplitude)

@@ -81,7 +81,6 @@ type meeting struct {
 	path    *step
 	loudest float64
 	merged  int
-	index   int // in the heap
 }
 
 type key struct {
@@ -136,11 +135,8 @@ func (h meetings) Less(i, j int) bool {
 	}
 	return a.account < b.account
 }
-func (h meetings) Swap(i, j int) {
-	h[i], h[j] = h[j], h[i]
-	h[i].index, h[j].index = i, j
-}
-func (h *meetings) Push(x any) { e := x.(*meeting); e.index = len(*h); *h = append(*h, e) }
+func (h meetings) Swap(i, j int) { h[i], h[j] = h[j], h[i] }
+func (h *meetings) Push(x any)   { *h = append(*h, x.(*meeting)) }
 func (h *meetings) Pop() any {
 	old := *h
 	e := old[len(old)-1]

@@ -79,6 +79,12 @@ func (s *sources) add(l launch) {
 	if !(l.time <= s.end) {
 		return
 	}
+	for _, o := range l.out {
+		if top := largest(o.wave); math.IsNaN(top) || math.IsInf(top, 0) {
+			s.net.note("%s has no finite value at %.6g s: no front of it is listed there", l.word, l.time)
+			return
+		}
+	}
 	if s.outs += len(l.out); s.outs > s.most {
 		s.cut = math.Min(s.cut, l.time)
 		return

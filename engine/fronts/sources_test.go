@@ -113,6 +113,28 @@ func TestSmoothStartHasNoFront(t *testing.T) {
 	}
 }
 
+// A narrow bell far from everything, and one across a step of impedance, where
+// c^2 u" jumps and an acceleration front is due each way.
+func TestNarrowBell(t *testing.T) {
+	m := lineOf(2, []mesh.Node{{Fixed: true}, {}, {}}, seg{100, 1, 10000, 0}, seg{50, 4, 10000, 0})
+	bell := func(s float64) float64 { return 0.01 * math.Exp(-(s-30)*(s-30)/(2*0.3*0.3)) }
+	m.Pieces[0].Start = bell
+	m.Pieces[1].Start = func(s float64) float64 { return bell(100 + s) }
+	watchAt(m, "w", in(1, 20))
+	if l := trace1(t, m, Options{}); len(l.Arrivals) != 0 || len(l.Notes) != 1 {
+		t.Errorf("%+v %q", l.Arrivals, l.Notes)
+	}
+	wide := func(s float64) float64 { return 0.01 * math.Exp(-(s-100)*(s-100)/(2*9)) }
+	m.Pieces[0].Start = wide
+	m.Pieces[1].Start = func(s float64) float64 { return wide(100 + s) }
+	m.Nodes[1].Start = 0.01
+	l := trace1(t, m, Options{})
+	// c^2 u" = -c^2 0.01/9: P1 = -11.1, P2 = -2.78 m/s^2; A = (Z1 P1 + Z2 P2)/(Z1 + Z2).
+	p1, p2 := -1e4*0.01/9, -2500*0.01/9
+	near(t, "jump of acceleration", l.Arrivals[0].Amplitude, (100*p1+200*p2)/300-p2, 1e-4)
+	near(t, "time", l.Arrivals[0].Time, 20/50.0, 1e-12)
+}
+
 // A line that starts as a straight slope s to a free end: the end is out of
 // balance by T s at once and sets off with -c s (momentum balance at the end).
 // A mass there takes M/Z to do so; a spring that carries the slope is in balance.
@@ -338,6 +360,7 @@ func TestHistories(t *testing.T) {
 	ramp := scenario.History{Value: formula.Apply(formula.OpRamp, arg, num(40), num(0.5), num(1.5)), Breaks: []float64{0.5, 1.5}}
 	sine := scenario.History{Value: formula.Apply(formula.OpSine, arg, num(10), num(3), num(0)), Breaks: []float64{0}}
 	decay := scenario.History{Value: formula.Mul(num(20), formula.Apply(formula.OpExp, formula.Mul(num(-3), arg)))}
+	soon := scenario.History{Value: formula.Mul(num(20), formula.Apply(formula.OpExp, formula.Mul(num(-5000), arg)))}
 	for name, c := range map[string]struct {
 		h    scenario.History
 		want []front
@@ -348,6 +371,7 @@ func TestHistories(t *testing.T) {
 		"ramp":                 {ramp, []front{{0.8, 40 / (2 * z), "acceleration"}, {1.8, -40 / (2 * z), "acceleration"}, {1.8, -40 / (2 * z), "acceleration"}, {2.8, 40 / (2 * z), "acceleration"}}[:2]},
 		"sine":                 {sine, []front{{0.3, 10 * 6 * math.Pi / (2 * z), "acceleration"}, {1.3, -10 * 6 * math.Pi / (2 * z), "acceleration"}}},
 		"sudden and dying out": {decay, []front{{0.3, 20 / (2 * z), "velocity"}, {1.3, -20 / (2 * z), "velocity"}}},
+		"sudden and soon over": {soon, []front{{0.3, 20 / (2 * z), "velocity"}, {1.3, -20 / (2 * z), "velocity"}}},
 	} {
 		l := run(c.h, in(0, 50))
 		if name == "ramp" { // at 1.8 s the end of the ramp meets the echo of its start
@@ -423,6 +447,22 @@ func TestRefusals(t *testing.T) {
 	}
 	if _, err := Trace(&mesh.Mesh{}, Options{}); err == nil {
 		t.Error("an empty mesh was taken")
+	}
+}
+
+// Values that do not exist are no fronts.
+func TestNotFinite(t *testing.T) {
+	m := knockLine()
+	m.Pieces[0].Start = func(s float64) float64 { return math.Sqrt(50 - s) }
+	m.Pushes[0].Force = scenario.History{Value: formula.Apply(formula.OpSqrt, formula.Sub(num(0.5), formula.Arg(formula.ArgT))), Breaks: []float64{0, 0.5, math.NaN()}}
+	l := trace1(t, m, Options{})
+	for _, a := range l.Arrivals {
+		if math.IsNaN(a.Amplitude) || math.IsInf(a.Amplitude, 0) {
+			t.Fatalf("%+v", a)
+		}
+	}
+	if !strings.Contains(strings.Join(l.Notes, "\n"), "no finite value") {
+		t.Errorf("notes %q", l.Notes)
 	}
 }
 

@@ -7,6 +7,7 @@ import (
 	"math"
 
 	"github.com/tautspan/tautspan/engine/compare"
+	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/scenario"
 	"github.com/tautspan/tautspan/engine/solver"
 )
@@ -81,11 +82,12 @@ func (s *Session) solve(ctx context.Context, p *Point) (*runFigures, error) {
 	if p != s.centre {
 		req.Freeze = f.layout
 	}
-	r, err := f.voice.Solver.Solve(ctx, p.Mesh, req, nil)
+	m, position := s.narrowed(p)
+	r, err := f.voice.Solver.Solve(ctx, m, req, nil)
 	if err != nil {
 		return nil, err
 	}
-	if len(r.Series) != len(p.Mesh.Channels) {
+	if len(r.Series) != len(m.Channels) {
 		return nil, fmt.Errorf("measure: solver %s gave a wrong number of records", f.voice.Name)
 	}
 	if p == s.centre {
@@ -98,7 +100,7 @@ func (s *Session) solve(ctx context.Context, p *Point) (*runFigures, error) {
 	out := &runFigures{figures: make([]figure, len(s.leaves))}
 	for i, l := range s.leaves {
 		if l.moves() {
-			if out.figures[i], err = s.read(p, l, r); err != nil {
+			if out.figures[i], err = s.read(p, l, r, position); err != nil {
 				return nil, err
 			}
 		}
@@ -106,15 +108,34 @@ func (s *Session) solve(ctx context.Context, p *Point) (*runFigures, error) {
 	return out, nil
 }
 
-// read takes a leaf's figure from a solution.
-func (s *Session) read(p *Point, l *leaf, r *solver.Result) (figure, error) {
+// narrowed is a point's mesh with only the channels that leaves are read from,
+// and where each channel went: pictures over x and t take longer to record than
+// the rest takes to solve.
+func (s *Session) narrowed(p *Point) (*mesh.Mesh, map[int]int) {
+	m := *p.Mesh
+	m.Channels = nil
+	position := map[int]int{}
+	for _, l := range s.leaves {
+		if _, seen := position[l.channel]; l.moves() && l.channel >= 0 && !seen {
+			position[l.channel] = len(m.Channels)
+			m.Channels = append(m.Channels, p.Mesh.Channels[l.channel])
+		}
+	}
+	return &m, position
+}
+
+// read takes a leaf's figure from a solution. The event of a peak, highest or
+// lowest value is the swing in which it lies. A time to settle or to reach a
+// level goes from swing to swing by its nature, and whether that matters shows
+// in how straight it is in the inputs.
+func (s *Session) read(p *Point, l *leaf, r *solver.Result, position map[int]int) (figure, error) {
 	if l.of.Kind == scenario.EnergyLeft {
 		if r.Energy.Most <= 0 {
 			return figure{}, nil
 		}
 		return figure{value: r.Energy.End / r.Energy.Most}, nil
 	}
-	spots := r.Series[l.channel]
+	spots := r.Series[position[l.channel]]
 	f := compare.FiguresOf(spots)
 	every := p.Mesh.Timing.Every
 	peak := func(v float64) figure {
@@ -128,16 +149,19 @@ func (s *Session) read(p *Point, l *leaf, r *solver.Result) (figure, error) {
 	case scenario.Final:
 		return figure{value: f.Final}, nil
 	case scenario.Highest:
-		return figure{f.Highest, swings(spots[0], 1, float64(f.HighestRow))}, nil
+		return figure{f.Highest, swings(spots[f.HighestSpot], 1, float64(f.HighestRow)) + f.HighestSpot<<32}, nil
 	case scenario.Lowest:
-		return figure{f.Lowest, swings(spots[0], 1, float64(f.LowestRow))}, nil
+		return figure{f.Lowest, swings(spots[f.LowestSpot], 1, float64(f.LowestRow)) + f.LowestSpot<<32}, nil
 	}
 	reader, err := s.reader(p, l)
 	if err != nil {
 		return figure{}, err
 	}
 	v := reader(compare.Reading{Every: every, Values: spots[0], Band: make([]float64, len(spots[0]))}).Value
-	return figure{v, swings(spots[0], every, v)}, nil
+	if l.of.Kind == scenario.TimeOfPeak {
+		return figure{v, swings(spots[0], every, v)}, nil
+	}
+	return figure{value: v}, nil
 }
 
 // settleLevel makes the frozen solver fine enough: at its coarsest level its

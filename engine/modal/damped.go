@@ -36,6 +36,9 @@ func (w *network) dampedModes(want Want) (found, error) {
 			continue
 		}
 		f.osc, f.real, f.complete = osc, re, edge
+		if proved && left < 10*edge {
+			f.notes = append(f.notes, fmt.Sprintf("the list of modes of %s is proved complete for decays below %.4g 1/s only.", w.name(), left))
+		}
 		if !proved {
 			f.complete = 0
 			f.notes = append(f.notes, fmt.Sprintf("the list of modes of %s could not be proved complete.", w.name()))
@@ -93,24 +96,33 @@ func (w *network) top(most int, limit float64) (top, gamma float64, err error) {
 }
 
 // prove completes the list in the region up to a damped frequency of about top,
-// an edge that keeps away from the roots. The region reaches so far left that
-// the shortest piece has died out over one way (12 travel times' worth of
-// decay), or a thousand times its height.
+// an edge that keeps away from the roots, and says how far left it reaches. That
+// is so far that the shortest piece has died out over one way (12 travel times'
+// worth of decay), or a thousand times its height. Where a dashpot matches its
+// line Delta vanishes to rounding that far left; then the region ends where the
+// longest piece still tells.
 func (l *list) prove(top, gamma float64) (edge, left float64, proved bool) {
 	w := l.e.w
 	right := 0.1 * top
 	left = math.Max(10*top, 4*gamma)
+	lefts := []float64{left, 1.13 * left}
 	if w.travel > 0 {
 		right = 0.5 / w.travel
 		left = math.Max(left, math.Min(12/w.briefst, 1000*top))
+		lefts = []float64{left, 1.13 * left}
+		for _, f := range [...]float64{12, 8, 5, 3} {
+			if x := 2*gamma + f/w.longest; x < 0.9*left {
+				lefts = append(lefts, x)
+			}
+		}
 	}
-	for try := 0; try < 6; try++ {
+	for _, left = range lefts {
 		edge = l.edge(top)
 		r := region{x0: -left, x1: right, y0: 0, y1: edge}
-		if l.complete(r, 60) {
+		l.work = 400 + 4*int(edge*w.travel) // cuts; a network needs some tens, or a few a root
+		if l.complete(r) {
 			return edge, left, true
 		}
-		left *= 1.13
 		top *= 1.01
 	}
 	return edge, left, false

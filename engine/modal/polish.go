@@ -122,14 +122,14 @@ func (e *evaluator) delta(s complex128) (log, slope complex128, ok bool) {
 // false where it does not settle.
 //
 // Order 2 at simple zeros; the last step is below 1e-13 |s|, or the smallest
-// that rounding allows if that is below 1e-9 |s|.
+// that rounding allows if that is below 1e-7 |s|.
 func (e *evaluator) newton(s complex128, known []complex128) (complex128, bool) {
 	best := math.Inf(1)
 	unit := 1 / (e.w.travel + math.SmallestNonzeroFloat64)
 	for step := 0; step < 60; step++ {
 		_, slope, ok := e.delta(s)
 		if !ok {
-			return s, best < 1e-9*cmplx.Abs(s)
+			return s, best < 1e-7*cmplx.Abs(s)
 		}
 		slope -= deflation(s, known)
 		if e.w.zeros > 0 {
@@ -141,8 +141,8 @@ func (e *evaluator) newton(s complex128, known []complex128) (complex128, bool) 
 			return s, false
 		}
 		abs := cmplx.Abs(s)
-		if size >= best && best < 1e-9*abs {
-			return s, true // rounding rules
+		if size >= best && best < 1e-7*abs {
+			return s, true // rounding rules: at a multiple zero from 1e-8 on
 		}
 		if limit := 0.5 * math.Max(abs, math.Min(unit, 1e300)); size > limit {
 			d *= complex(limit/size, 0)
@@ -187,6 +187,7 @@ type list struct {
 	e     *evaluator
 	roots []complex128
 	tried []complex128 // where merge has looked already
+	work  int          // regions that complete may still count
 }
 
 // same says when two roots are taken for one. Coinciding roots are known to
@@ -207,15 +208,19 @@ func (l *list) offer(s complex128) bool {
 	}
 	for _, z := range l.roots {
 		if cmplx.Abs(s-z) < same*abs {
-			return l.merge(z)
+			return l.merge(z, false)
 		}
 	}
 	l.roots = append(l.roots, s)
+	if imag(s) > 0 && imag(s) < same*abs {
+		l.merge(s, true) // a pair across the real axis, or two real roots
+	}
 	return true
 }
 
 // merge counts the zeros within a small circle around a root and takes the
-// known ones there for what the circle's moments say. Reports growth.
+// known ones there for what the circle's moments say, where there are more, or as
+// many and afresh is set. Reports growth.
 //
 // With c the centre and r the radius, sums over the zeros inside,
 // sum (z-c)^k = (1/2 pi i) * integral of (s-c)^k Delta'/Delta ds, by the
@@ -223,7 +228,7 @@ func (l *list) offer(s complex128) bool {
 // from the sums for k = 1, 2.
 // Source: Delves, Lyness, A numerical method for locating the zeros of an
 // analytic function, Math. Comp. 21 (1967).
-func (l *list) merge(c complex128) bool {
+func (l *list) merge(c complex128, afresh bool) bool {
 	if math.Abs(imag(c)) < same*cmplx.Abs(c) {
 		c = complex(real(c), 0)
 	}
@@ -264,7 +269,7 @@ func (l *list) merge(c complex128) bool {
 		m[2] += f * d * d
 	}
 	n := int(math.Round(real(m[0])))
-	if cmplx.Abs(m[0]-complex(float64(n), 0)) > 0.02 || n <= near {
+	if cmplx.Abs(m[0]-complex(float64(n), 0)) > 0.02 || n < near || n == near && !afresh {
 		return false
 	}
 	return l.replace(c, r, n, m)
@@ -279,16 +284,21 @@ func (l *list) replace(c complex128, r float64, n int, m [3]complex128) bool {
 			rest = append(rest, z)
 		}
 	}
+	if imag(c) == 0 { // by symmetry
+		m[1], m[2] = complex(real(m[1]), 0), complex(real(m[2]), 0)
+	}
 	mean := m[1] / complex(float64(n), 0)
 	centre := c + mean
-	if imag(c) == 0 {
-		centre = complex(real(centre), 0)
-	}
 	half := complex128(0)
 	if n == 2 {
 		half = cmplx.Sqrt(m[2]/2 - mean*mean)
-		if cmplx.Abs(half) < 1e-9*cmplx.Abs(c) {
-			half = 0 // below what the moments can tell
+		// Below what rounding leaves: it parts a pair with one shape by the root
+		// of itself, a pair with two shapes by r times that.
+		size := cmplx.Abs(half) / cmplx.Abs(c)
+		if size < 1e-7 {
+			if _, rank := l.e.w.shapes(centre, 2); size < 1e-9 || rank < 2 {
+				half = 0
+			}
 		}
 	}
 	for k := 0; k < n; k++ {

@@ -271,8 +271,8 @@ func TestSearchWithoutStarts(t *testing.T) {
 			if err != nil {
 				t.Fatal(err)
 			}
-			l := &list{e: newEvaluator(w)}
-			if !l.complete(region{x0: -f.complete * 9, x1: 0.4 / w.travel, y0: 0, y1: f.complete}, 60) {
+			l := &list{e: newEvaluator(w), work: 2000}
+			if !l.complete(region{x0: -f.complete * 9, x1: 0.4 / w.travel, y0: 0, y1: f.complete}) {
 				t.Errorf("trial %d: not complete", trial)
 				continue
 			}

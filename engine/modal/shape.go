@@ -62,22 +62,26 @@ func (p *arc) at(x float64) complex128 {
 // shapes gives the shapes at a root: as many as there are, want at most.
 func (w *network) shapes(s complex128, want int) (shapes []*Shape, rank int) {
 	e := newEvaluator(w)
-	e.assemble(s, false)
+	e.assemble(s, true)
 	n := e.n
 	want = min(want, n)
+	size := 0.0
+	for _, v := range e.da[:n*n] {
+		size = math.Max(size, cmplx.Abs(s)*cmplx.Abs(v))
+	}
 	vectors, pivots := numeric.NullVectors(append([]complex128(nil), e.a[:n*n]...), n, want)
 	rank = want
 	// A pivot that is no zero betrays a missing shape. 1e-6: chosen, between
 	// the 1e-12 of true zeros and the size of the others; coinciding roots are
 	// known to 1e-8 (see merge).
-	for rank > 1 && n > rank && pivots[n-rank] > 1e-6*pivots[0] {
+	for rank > 1 && pivots[n-rank] > 1e-6*math.Max(size, pivots[0]) {
 		rank--
 	}
 	if rank < want {
 		vectors, _ = numeric.NullVectors(append([]complex128(nil), e.a[:n*n]...), n, rank)
 	}
 	if rank > 1 && real(s) == 0 {
-		w.orthogonal(e, s, vectors)
+		w.orthogonal(e, vectors)
 	}
 	for _, v := range vectors {
 		shapes = append(shapes, w.shape(e, v))
@@ -88,8 +92,7 @@ func (w *network) shapes(s complex128, want int) (shapes []*Shape, rank int) {
 // orthogonal makes real shapes of one frequency orthogonal to each other in the
 // kinetic energy, whose matrix is proportional to the derivative of the dynamic
 // stiffness (Gram and Schmidt).
-func (w *network) orthogonal(e *evaluator, s complex128, vectors [][]complex128) {
-	e.assemble(s, true)
+func (w *network) orthogonal(e *evaluator, vectors [][]complex128) {
 	n := e.n
 	energy := func(x, y []complex128) complex128 {
 		var sum complex128

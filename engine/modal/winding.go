@@ -115,29 +115,38 @@ func (l *list) inside(r region) int {
 
 // complete makes the list hold every zero of a region and reports whether it
 // does. Where the count tells that some are missing, the region is cut until
-// Newton's method, started in the part that lacks them, finds them.
-func (l *list) complete(r region, depth int) bool {
-	for try := 0; try < 12; try++ {
-		n, ok := l.e.count(r)
-		if !ok {
-			return false
-		}
+// Newton's method, started in the part that lacks them, finds them. It gives up
+// when the list's allowance of work is spent.
+func (l *list) complete(r region) bool {
+	n, ok := l.e.count(r)
+	return ok && l.fill(r, n)
+}
+
+// fill completes a region that holds n zeros.
+func (l *list) fill(r region, n int) bool {
+	for {
 		lack := n - l.inside(r)
-		if lack == 0 {
-			return true
+		if lack <= 0 {
+			return lack == 0
 		}
-		if lack < 0 {
-			return false
+		if lack > 2 || !(l.again(r) || l.seek(r)) {
+			break
 		}
-		if lack <= 2 && l.seek(r) {
-			continue
-		}
-		break
 	}
-	if depth == 0 {
+	return l.divide(r, n)
+}
+
+// again looks for more zeros where some are known; true when the list grew.
+func (l *list) again(r region) bool {
+	if l.inside(r) > 6 {
 		return false
 	}
-	return l.divide(r, depth)
+	for _, z := range l.roots {
+		if real(z) > r.x0 && real(z) < r.x1 && imag(z) >= r.y0 && imag(z) < r.y1 && l.merge(z, false) {
+			return true
+		}
+	}
+	return false
 }
 
 // seek tries a few places of a region; true when the list grew.
@@ -154,36 +163,40 @@ func (l *list) seek(r region) bool {
 	return false
 }
 
-// divide cuts a region and completes both parts.
-func (l *list) divide(r region, depth int) bool {
+// divide cuts a region with n zeros and fills both parts. A cut that a zero lies
+// on is moved.
+func (l *list) divide(r region, n int) bool {
 	height := r.y1 - r.y0
 	if r.y0 == 0 {
 		height *= 2
 	}
-	before := -1
 	for _, f := range [...]float64{0.5, 0.43, 0.59, 0.37, 0.66, 0.29} {
+		if l.work <= 0 {
+			return false
+		}
+		l.work--
 		a, b := r, r
 		if height > r.x1-r.x0 {
 			y := r.y0 + f*(r.y1-r.y0)
 			a.y1, b.y0 = y, y
 		} else {
 			x := r.x1 - f*(r.x1-r.x0)
-			if r.x0 < -4*r.y1 && r.y0 == 0 || r.x0 < -4*r.y1 && r.x1 > r.x0/4 {
-				x = math.Min(r.x1, 0) + 0.25*f*(r.x0-math.Min(r.x1, 0)) // far left is empty most often
+			if r.x0 < -4*r.y1 && r.x1 > r.x0/4 { // far left is empty most often
+				near := math.Min(r.x1, 0)
+				x = near + 0.25*f*(r.x0-near)
 			}
 			a.x0, b.x1 = x, x
 		}
-		if _, ok := l.e.count(a); !ok {
+		na, ok := l.e.count(a)
+		if !ok {
 			continue
 		}
-		okA := l.complete(a, depth-1)
-		if l.complete(b, depth-1) && okA {
-			return true
+		nb := n - na
+		if b.y0 > 0 && r.y0 == 0 { // r holds b's mirror image as well
+			nb /= 2
 		}
-		if len(l.roots) == before {
-			return false
-		}
-		before = len(l.roots)
+		okA := l.fill(a, na)
+		return l.fill(b, nb) && okA
 	}
 	return false
 }

@@ -33,6 +33,7 @@ type run struct {
 	notes      []string
 	start      float64 // J, stored at t = 0
 	most       float64
+	rolled     float64 // J, work of rolling loads
 	end        float64
 	closing    energy
 	closed     bool
@@ -158,7 +159,7 @@ func (r *run) makeLoads(lay *Layout, lag float64) map[int][]*load {
 }
 
 func (r *run) addSource(w *line, x float64, l *load, lag float64) {
-	s := &source{x: x, half: 1 / (2 * w.z), gamma: w.gamma, load: l}
+	s := &source{p: w, x: x, half: 1 / (2 * w.z), gamma: w.gamma, load: l}
 	delta := r.step
 	if w.stub {
 		delta = w.sent[0].delta
@@ -181,6 +182,13 @@ func (r *run) makeLattices(lay *Layout, lag float64) {
 		for _, s := range m.Channels[i].Spots {
 			if s.Node < 0 && s.At > 0 && s.At < m.Pieces[s.Piece].Length && !slices.Contains(places[s.Piece], s.At) {
 				places[s.Piece] = append(places[s.Piece], s.At)
+			}
+		}
+	}
+	for i, w := range r.lines {
+		for _, s := range w.sources {
+			if !slices.Contains(places[i], s.x) {
+				places[i] = append(places[i], s.x)
 			}
 		}
 	}
@@ -213,6 +221,11 @@ func (r *run) makeLattices(lay *Layout, lag float64) {
 			func(x float64) float64 { _, g := w.carried(x, 0, -1, 0); return g },
 			func(x float64) float64 { return startRate(p, x) })
 		r.lattices = append(r.lattices, w.lattice)
+	}
+	for _, s := range r.sources {
+		s.taps = s.p.tapsAt(s.x)
+		f, g := s.p.waves(s.x, 0, &s.taps, 0, -1)
+		s.u = f + g
 	}
 	for _, w := range r.winds {
 		for w.step < windAhead-1 {

@@ -14,10 +14,13 @@ func (r *run) stored() float64 {
 }
 
 func (r *run) account() energy {
-	var e energy
+	e := energy{work: r.rolled}
 	for _, c := range r.clusters {
 		e.work += c.account.work
 		e.lost += c.account.lost
+	}
+	for _, s := range r.sources {
+		e.work += s.work
 	}
 	for _, l := range r.lattices {
 		e.work += l.account.work

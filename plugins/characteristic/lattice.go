@@ -19,7 +19,7 @@ type lattice struct {
 	step     int // lattice steps done
 	f, g     []float64
 	phi, psi []float64
-	r, u     []float64
+	r, u, du []float64
 	slot     []int      // of each source, the point at its right
 	before   [2]float64 // u at the ends one step earlier
 	taps     []tap
@@ -32,7 +32,7 @@ type lattice struct {
 func newLattice(p *line, cells int, span, tol float64, places []float64) *lattice {
 	l := &lattice{p: p, n: cells, ds: p.tau / float64(cells), viscous: 2 * p.mass * p.gamma}
 	l.e = p.decay(l.ds)
-	for _, s := range []*[]float64{&l.f, &l.g, &l.phi, &l.psi, &l.r, &l.u} {
+	for _, s := range []*[]float64{&l.f, &l.g, &l.phi, &l.psi, &l.r, &l.u, &l.du} {
 		*s = make([]float64, cells+1)
 	}
 	l.ends = [2]*history{newHistory(l.ds, span, 0, tol), newHistory(l.ds, span, 0, tol)}
@@ -51,7 +51,7 @@ func (l *lattice) begin(f, g, v func(x float64) float64) {
 	for j := range l.f {
 		x := float64(j) * h
 		l.f[j], l.g[j] = f(x), g(x)
-		l.u[j] = l.f[j] + l.g[j]
+		l.u[j], l.du[j] = l.f[j]+l.g[j], l.ds*v(x)
 	}
 	l.before = [2]float64{l.u[0] - l.ds*v(0), l.u[l.n] - l.ds*v(l.p.length)}
 	l.predict()
@@ -89,49 +89,82 @@ func (l *lattice) advance() {
 }
 
 // settle finds r and u at the new time: u_j holds r_j with a weight of at most
-// (gamma ds)^2/4, which is solved for. It books losses and work by differences.
+// (gamma ds)^2/4, which is solved for. It books losses and work by differences,
+// losses with u_t straight within a step (third order).
 func (l *lattice) settle(t1 float64) {
+	n := l.n
+	l.before = [2]float64{l.u[0], l.u[n]}
+	l.latest = energy{}
+	lost := 0.5 * (l.point(0, 0.5*l.ds, t1) + l.point(n, 0.5*l.ds, t1))
+	if l.p.wind == nil && len(l.p.rolls) == 0 {
+		lost += l.points()
+	} else {
+		for j := 1; j < n; j++ {
+			lost += l.point(j, l.ds, t1)
+		}
+	}
+	l.latest.lost = lost * l.p.length / float64(n) * l.viscous / l.ds
+	l.account.lost += l.latest.lost
+	l.account.work += l.latest.work
+}
+
+// points is point for all inner points of a piece without wind and rolls.
+func (l *lattice) points() (lost float64) {
+	p := l.p
+	w := 0.25 * p.gamma * p.gamma * l.ds
+	half, e := 0.5*l.ds, l.e
+	scale := 1 / (1 - l.ds*w)
+	size := l.n
+	f, g, phi, psi, r, u, du := l.f[:size], l.g[:size], l.phi[:size], l.psi[:size], l.r[:size], l.u[:size], l.du[:size]
+	for j := 1; j < size; j++ {
+		known := e * (r[j] + w*u[j])
+		now := (f[j] + g[j] + phi[j] + psi[j] + l.ds*known) * scale
+		r[j] = known + w*now
+		phi[j] += half * r[j]
+		psi[j] += half * r[j]
+		d := now - u[j]
+		bend := d - du[j]
+		lost += d*d + bend*bend*(1.0/12)
+		u[j], du[j] = now, d
+	}
+	return lost
+}
+
+// point settles one point, to whose u the waves' sources add share times r; it
+// returns the square mean of u_t ds.
+func (l *lattice) point(j int, share, t1 float64) (lost float64) {
 	p, n := l.p, l.n
 	h := p.length / float64(n)
 	w := 0.25 * p.gamma * p.gamma * l.ds
-	half := 0.5 * l.ds
-	l.before = [2]float64{l.u[0], l.u[n]}
-	var blown, impulse []float64
-	l.latest = energy{}
+	free := l.f[j] + l.g[j] + l.phi[j] + l.psi[j]
+	for i := range p.rolls {
+		f, g := p.rolls[i].waves(float64(j)*h, t1, 0)
+		free += f + g
+	}
+	impulse := 0.0
 	if p.wind != nil {
-		blown, impulse = p.wind.u[(l.step+1)%windRing], p.wind.impulse[(l.step+1)%windRing]
+		free += p.wind.u[(l.step+1)%windRing][j]
+		impulse = p.wind.impulse[(l.step+1)%windRing][j]
 	}
-	for j := 0; j <= n; j++ {
-		free := l.f[j] + l.g[j] + l.phi[j] + l.psi[j]
-		for i := range p.rolls {
-			f, g := p.rolls[i].waves(float64(j)*h, t1, 0)
-			free += f + g
-		}
-		if blown != nil {
-			free += blown[j]
-		}
-		known := l.e * (l.r[j] + w*l.u[j])
-		share, own := l.ds, h // what r adds to u; the length that is the point's own
-		if j == 0 || j == n {
-			share, own = half, 0.5*h
-		}
-		u := (free + share*known) / (1 - share*w)
-		l.r[j] = known + w*u
-		if j > 0 {
-			l.phi[j] += half * l.r[j]
-		}
-		if j < n {
-			l.psi[j] += half * l.r[j]
-		}
-		du := u - l.u[j]
-		l.latest.lost += own * l.viscous * du * du / l.ds
-		if impulse != nil {
-			l.latest.work += own * 2 * p.mass * impulse[j] * du / l.ds
-		}
-		l.u[j] = u
+	known := l.e * (l.r[j] + w*l.u[j])
+	now := (free + share*known) / (1 - share*w)
+	l.r[j] = known + w*now
+	own := h
+	if j > 0 {
+		l.phi[j] += 0.5 * l.ds * l.r[j]
+	} else {
+		own = 0.5 * h
 	}
-	l.account.lost += l.latest.lost
-	l.account.work += l.latest.work
+	if j < n {
+		l.psi[j] += 0.5 * l.ds * l.r[j]
+	} else {
+		own = 0.5 * h
+	}
+	d := now - l.u[j]
+	bend := d - l.du[j]
+	l.latest.work += own * 2 * p.mass * impulse * d / l.ds
+	l.u[j], l.du[j] = now, d
+	return d*d + bend*bend/12
 }
 
 // record puts the ends right and appends the taps.

@@ -97,10 +97,20 @@ func plan(m *mesh.Mesh, req solver.Request) (Layout, bool) {
 		case pressed[i]:
 			lay.Cells[i] = max(3, int(tau/lay.Step))
 		case loss*loss > thin:
-			lay.Cells[i] = max(3, int(tau/(2*lay.Step)))
+			lay.Cells[i] = cellsOf(tau, loss, lay.Step, req.Level)
 		}
 	}
 	return lay, false
+}
+
+// cellsOf sizes the lattice of a piece that loses loss = gamma tau: its error is
+// of the order of (gamma ds)^2 of a wave, so that a weak loss needs no more than
+// to see the band (two and a half points to its period), a strong one fifty
+// points to a decay. No lattice step is shorter than the nodes'.
+func cellsOf(tau, loss, step float64, level int) int {
+	const weakPer, strong = 4, 50
+	n := math.Max(tau/(weakPer*step), math.Ldexp(strong*loss, level))
+	return max(3, int(math.Min(n, tau/step)))
 }
 
 func pressedPieces(m *mesh.Mesh) []bool {

@@ -65,6 +65,13 @@ type source struct {
 	h      *history
 	breaks int // next of load.breaks
 	per    int // samples in one step of the network
+	p      *line
+	taps   [2]*tap
+	upto   float64 // s, work is booked to here
+	u      float64 // m, there
+	rate   float64 // m/s, mean of the last part
+	next   int     // next of load.breaks for the books
+	work   float64 // J
 }
 
 // ahead is the number of steps that sources lead: a stencil's reach and one.
@@ -99,6 +106,39 @@ func (s *source) advance() {
 		t0 = t1
 	}
 	h.push(phi)
+}
+
+// book adds the work of the force up to time t, which the nodes have reached:
+// by parts between breaks of the load, with the rate of the displacement taken
+// as straight within a part (third order).
+func (s *source) book(t float64) {
+	for s.next < len(s.load.breaks) && s.load.breaks[s.next] <= t {
+		s.part(s.load.breaks[s.next])
+		s.rate = math.NaN()
+		s.next++
+	}
+	s.part(t)
+}
+
+func (s *source) part(t float64) {
+	h := t - s.upto
+	if h <= s.h.tol {
+		return
+	}
+	f, g := s.p.waves(s.x, t, &s.taps, 0, -1)
+	v := (f + g - s.u) / h
+	places, weights := gauss()
+	var force, slope float64
+	for i, x := range places {
+		q := weights[i] * s.load.at(s.upto+x*h)
+		force += q
+		slope += 3 * q * (2*x - 1)
+	}
+	s.work += h * force * v
+	if dv := v - s.rate; !math.IsNaN(dv) {
+		s.work += h * slope * dv / 6
+	}
+	s.upto, s.u, s.rate = t, f+g, v
 }
 
 // gauss is Gauss's rule of three points on [0, 1]: places and weights.
@@ -183,6 +223,42 @@ func (r *rolling) heard(t, from, until, last, rate float64, d int) float64 {
 		return dv
 	}
 	return -r.gamma*dv + r.k*e*rate*r.gamma*(rate-1)
+}
+
+// work is what the load gives the line from t0 to t1: F times u_t, the mean of
+// the rates on both sides of the load, which for its own waves is k/(1 - slip^2).
+func (r *rolling) work(p *line, t0, t1 float64) float64 {
+	t0, t1 = math.Max(t0, r.tin), math.Min(t1, r.tout)
+	if t1 <= t0 {
+		return 0
+	}
+	slip := r.v / r.c
+	rate := r.k / (1 - slip*slip)
+	places, weights := gauss()
+	for i, s := range places {
+		t := t0 + s*(t1-t0)
+		x := math.Max(0, math.Min(p.length, r.s0+r.v*(t-r.tin)))
+		f, g := p.carried(x, t, -1, 1)
+		df, dg := r.waves(x, t, 1)
+		v := f + g - df - dg
+		if p.wind != nil {
+			s := &p.wind.shapes[p.wind.step%windRing]
+			v += p.drifting(s, x)
+		}
+		if l := p.lattice; l != nil {
+			v += p.drifting(&field{l.phi, l.psi, l.r}, x)
+		}
+		rate += weights[i] * v
+	}
+	return 2 * p.z * r.k * rate * (t1 - t0)
+}
+
+// drifting is the rate of u that a lattice adds at place x.
+func (p *line) drifting(s *field, x float64) float64 {
+	share := x / p.length
+	per := p.c * float64(len(s.phi)-1) / p.length
+	return 2*between(s.r, share) - p.gamma*(between(s.phi, share)+between(s.psi, share)) +
+		per*(tilt(s.psi, share)-tilt(s.phi, share))
 }
 
 // rollsOn is the passage of a roll over a piece, or none.

@@ -193,6 +193,14 @@ func (r *run) advance() {
 			l.advance()
 		}
 	}
+	for _, s := range r.sources {
+		s.book(now)
+	}
+	for _, p := range r.lines {
+		for i := range p.rolls {
+			r.rolled += p.rolls[i].work(p, now-r.step, now)
+		}
+	}
 	if s := r.stored(); s > r.most {
 		r.most = s
 	}

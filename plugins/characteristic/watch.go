@@ -51,7 +51,7 @@ func (r *run) viewOf(s mesh.Spot, attached [][]mesh.Attachment, q scenario.Quant
 	v := view{scale: 1, panel: r.step}
 	if s.Node < 0 {
 		v.p, v.x = r.lines[s.Piece], s.At
-		v.tap(v.p)
+		v.taps = v.p.tapsAt(s.At)
 		p := &m.Pieces[s.Piece]
 		v.u0, v.v0 = startShape(p, s.At), startRate(p, s.At)
 		v.slope0 = slopeAt(p, s.At)
@@ -97,21 +97,23 @@ func (r *run) viewOf(s mesh.Spot, attached [][]mesh.Attachment, q scenario.Quant
 	return v
 }
 
-func (v *view) tap(p *line) {
+// tapsAt finds the lattices' records of a place.
+func (p *line) tapsAt(x float64) (found [2]*tap) {
 	if p.wind != nil {
 		for i := range p.wind.taps {
-			if p.wind.taps[i].x == v.x {
-				v.taps[0] = &p.wind.taps[i]
+			if p.wind.taps[i].x == x {
+				found[0] = &p.wind.taps[i]
 			}
 		}
 	}
 	if p.lattice != nil {
 		for i := range p.lattice.taps {
-			if p.lattice.taps[i].x == v.x {
-				v.taps[1] = &p.lattice.taps[i]
+			if p.lattice.taps[i].x == x {
+				found[1] = &p.lattice.taps[i]
 			}
 		}
 	}
+	return found
 }
 
 // slopeAt is the slope of the start shape: central inside, one-sided at ends,
@@ -125,10 +127,11 @@ func slopeAt(p *mesh.Piece, x float64) float64 {
 	return (p.Start(hi) - p.Start(lo)) / (hi - lo)
 }
 
-// waves is the d-th derivative of f and g at place x of a piece, with the
+// waves is the d-th derivative of f and g at place x of a piece (from the right
+// of a break for side 1, from the left for -1), with the
 // lattices' share where x is an end or has taps.
-func (p *line) waves(x, t float64, taps *[2]*tap, d int) (f, g float64) {
-	f, g = p.carried(x, t, 1, d)
+func (p *line) waves(x, t float64, taps *[2]*tap, d, side int) (f, g float64) {
+	f, g = p.carried(x, t, side, d)
 	if taps != nil && (taps[0] != nil || taps[1] != nil) {
 		for _, k := range taps {
 			if k != nil {
@@ -171,7 +174,7 @@ func (v *view) shift(t float64, d int) float64 {
 	if v.own != nil {
 		return v.own.at(t, 1, d)
 	}
-	f, g := v.p.waves(v.x, t, &v.taps, d)
+	f, g := v.p.waves(v.x, t, &v.taps, d, 1)
 	return f + g
 }
 
@@ -201,7 +204,7 @@ func (v *view) stem(t float64, d int) float64 {
 	if v.p == nil {
 		return 0
 	}
-	f, g := v.p.waves(v.x, t, &v.taps, d)
+	f, g := v.p.waves(v.x, t, &v.taps, d, 1)
 	return v.scale * (g - f) / v.p.c
 }
 
@@ -229,10 +232,10 @@ func (v *view) leaks() bool {
 // towards is the d-th derivative of 2a - u = a - b at the port's node.
 func (q *port) towards(t float64, d int) float64 {
 	if q.end {
-		f, g := q.p.waves(q.p.length, t, nil, d)
+		f, g := q.p.waves(q.p.length, t, nil, d, 1)
 		return f - g
 	}
-	f, g := q.p.waves(0, t, nil, d)
+	f, g := q.p.waves(0, t, nil, d, 1)
 	return g - f
 }
 

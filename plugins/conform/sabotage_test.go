@@ -7,6 +7,7 @@ import (
 
 	"github.com/tautspan/tautspan/engine/compare"
 	"github.com/tautspan/tautspan/engine/compare/trial"
+	"github.com/tautspan/tautspan/engine/scenario"
 	"github.com/tautspan/tautspan/engine/solver"
 	"github.com/tautspan/tautspan/plugins/characteristic"
 	"github.com/tautspan/tautspan/plugins/differences"
@@ -17,12 +18,12 @@ import (
 // never misses a mistake that can be seen with the naked eye. What it catches of
 // small ones is reported; it depends on how sharp the bars are.
 func TestSabotage(t *testing.T) {
-	lines, passages := 60, 6.0
+	lines, passages := 60, 4.0
 	if testing.Short() {
 		lines = 8
 	}
 	solvers := []solver.Solver{differences.New(), spectral.New(), characteristic.New()}
-	scores, err := trial.Study(context.Background(), solvers, lines, passages, 20, compare.Options{Agree: 0.005})
+	scores, err := trial.Study(context.Background(), solvers, lines, passages, 20, compare.Options{Agree: 0.005, Effort: scenario.Quick})
 	if err != nil {
 		t.Fatal(err)
 	}

@@ -128,10 +128,11 @@ type fourthRun struct {
 	w      *network
 	u, v   []float64 // m, m/s: state at t_n
 	su, sv []float64 // state at a stage
-	du, dv []float64 // sums of the stages' rates
-	a      []float64 // m/s^2 at a stage; at nodes N until divided by the mass
-	q      []float64 // m, brackets; then their stage values, rates and sums
-	sq, rq []float64
+	tu, tv []float64 // state at the next stage
+	du, dv []float64 // state at t_n+1 as it is summed up
+	a      []float64 // m/s^2, of the nodes at a stage; N until divided by the mass
+	q      []float64 // m, brackets at t_n, at a stage, at the next, at t_n+1
+	sq, tq []float64
 	dq     []float64
 	loads  []fourthLoad
 	tapes  []*tape
@@ -148,14 +149,15 @@ type fourthLoad struct {
 }
 
 func newFourthRun(w *network, series [][][]float64) *fourthRun {
-	arena := make([]float64, 7*w.size)
+	arena := make([]float64, 8*w.size)
 	r := &fourthRun{w: w, onEnd: make([]float64, 2*len(w.strands))}
-	for i, p := range []*[]float64{&r.u, &r.v, &r.su, &r.sv, &r.du, &r.dv, &r.a} {
+	for i, p := range []*[]float64{&r.u, &r.v, &r.su, &r.sv, &r.tu, &r.tv, &r.du, &r.dv} {
 		*p = arena[i*w.size : (i+1)*w.size : (i+1)*w.size]
 	}
 	n := len(w.mounts)
 	brackets := make([]float64, 4*n)
-	r.q, r.sq, r.rq, r.dq = brackets[:n], brackets[n:2*n], brackets[2*n:3*n], brackets[3*n:]
+	r.q, r.sq, r.tq, r.dq = brackets[:n], brackets[n:2*n], brackets[2*n:3*n], brackets[3*n:]
+	r.a = make([]float64, w.nodes)
 	for i := range w.mounts {
 		r.q[i] = w.mounts[i].q
 	}
@@ -257,84 +259,143 @@ func (f *fourthLoad) read(i int, t float64) {
 	}
 }
 
-// pull sets a to the accelerations of a state at stage time i (0 start, 1 middle,
-// 2 end of the step) and enters the powers.
-func (r *fourthRun) pull(u, v, q []float64, i int) {
+// stage is one of the four of a step: the state x, y, q at time i (0 start, 1
+// middle, 2 end of the step) gives rates; share of them goes to the new state and
+// ahead of them from the old state make the next stage.
+type stage struct {
+	i            int
+	share, ahead float64 // s
+}
+
+// pass computes a stage from the state given into r.tu, r.tv, r.tq.
+func (r *fourthRun) pass(x, y, q []float64, st stage) {
 	w := r.w
-	r.work, r.lost = 0, 0
-	clear(r.a[:w.nodes])
+	clear(r.a)
 	clear(r.onEnd)
+	work, lost := 0.0, 0.0
 	for k := range w.strands {
 		s := &w.strands[k]
-		x := u[s.at : s.at+s.n+1]
-		y := v[s.at : s.at+s.n+1]
-		a := r.a[s.at : s.at+s.n+1]
-		s.bend(a, x, y)
-		r.a[s.from] += a[0]
-		r.a[s.to] += a[s.n]
-		if s.loss > 0 {
-			sum := 0.0
-			for j := 1; j < s.n; j++ {
-				sum += endWeight(j, s.n) * y[j] * y[j]
-			}
-			r.lost += s.loss * sum
-		}
+		left, right, squares := r.along(s, x, y, st)
+		r.a[s.from] += left
+		r.a[s.to] += right
+		lost += s.loss * squares
 	}
 	for k := range r.loads {
-		f := &r.loads[k]
-		for j := range f.load.taps {
-			t := &f.load.taps[j]
-			force := f.force[i][0]
-			if f.load.placed {
-				force = f.force[i][j]
-			}
-			force *= t.weight
-			r.work += force * v[t.at]
-			if t.node {
-				r.a[t.at] += force
-				if t.end >= 0 {
-					r.onEnd[t.end] += force
-				}
-			} else {
-				r.a[t.at] += force * t.gain
-			}
-		}
+		work += r.push(&r.loads[k], y, st)
 	}
 	for k := range w.links {
 		l := &w.links[k]
-		rate := v[l.A] - v[l.B]
-		f := l.Spring*(u[l.A]-u[l.B]) + l.Dashpot*rate
+		rate := y[l.A] - y[l.B]
+		f := l.Spring*(x[l.A]-x[l.B]) + l.Dashpot*rate
 		r.a[l.A] -= f
 		r.a[l.B] += f
-		r.lost += l.Dashpot * rate * rate
+		lost += l.Dashpot * rate * rate
 	}
 	for k := range w.mounts {
 		mt := &w.mounts[k]
-		f := mt.spring * (u[mt.node] - q[k])
+		f := mt.spring * (x[mt.node] - q[k])
 		r.a[mt.node] -= f
-		r.rq[k] = f / mt.loss
-		r.lost += f * f / mt.loss
+		lost += f * f / mt.loss
+		r.dq[k] += st.share * f / mt.loss
+		r.tq[k] = r.q[k] + st.ahead*f/mt.loss
 	}
 	for k := 0; k < w.nodes; k++ {
 		if w.held[k] {
 			r.a[k] = 0
+		} else {
+			lost += w.loss[k] * y[k] * y[k]
+			r.a[k] = (r.a[k] - w.spring[k]*x[k] - w.loss[k]*y[k]) / w.mass[k]
+		}
+		r.du[k] += st.share * y[k]
+		r.dv[k] += st.share * r.a[k]
+		r.tu[k] = r.u[k] + st.ahead*y[k]
+		r.tv[k] = r.v[k] + st.ahead*r.a[k]
+	}
+	w.tell(r.tu)
+	w.tell(r.tv)
+	r.energy.Work += st.share * work
+	r.energy.Lost += st.share * lost
+}
+
+// along does the inner points of a strand in one sweep and returns its forces on
+// the nodes and the sum of weight times velocity squared.
+func (r *fourthRun) along(s *strand, stateX, stateY []float64, st stage) (left, right, squares float64) {
+	n, from, to := s.n, s.at, s.at+s.n+1
+	x, y := stateX[from:to], stateY[from:to]
+	u, v, du, dv, tu, tv := r.u[from:to], r.v[from:to], r.du[from:to], r.dv[from:to], r.tu[from:to], r.tv[from:to]
+	c, g := s.stiff/s.mass, s.loss/s.mass
+	for k, e := range endRows[0] {
+		left -= s.stiff * e * x[k]
+		right -= s.stiff * e * x[n-k]
+	}
+	for j := 1; j < len(endRows); j++ {
+		for _, p := range [2]int{j, n - j} {
+			bend := 0.0
+			for k, e := range endRows[j] {
+				if p == j {
+					bend += e * x[k]
+				} else {
+					bend += e * x[n-k]
+				}
+			}
+			a := -c/endWeights[j]*bend - g*y[p]
+			squares += endWeights[j] * y[p] * y[p]
+			du[p] += st.share * y[p]
+			dv[p] += st.share * a
+			tu[p] = u[p] + st.ahead*y[p]
+			tv[p] = v[p] + st.ahead*a
+		}
+	}
+	near, far, mid := c*4/3, c/12, c*5/2
+	x0, x1, x2, x3 := x[2], x[3], x[4], x[5]
+	last := x[6 : n-1]
+	count := len(last)
+	y, u, v, du, dv, tu, tv = y[4:][:count], u[4:][:count], v[4:][:count], du[4:][:count], dv[4:][:count], tu[4:][:count], tv[4:][:count]
+	for j, x4 := range last {
+		rate := y[j]
+		a := near*(x1+x3) - far*(x0+x4) - mid*x2 - g*rate
+		squares += rate * rate
+		du[j] += st.share * rate
+		dv[j] += st.share * a
+		tu[j] = u[j] + st.ahead*rate
+		tv[j] = v[j] + st.ahead*a
+		x0, x1, x2, x3 = x1, x2, x3, x4
+	}
+	return left, right, squares
+}
+
+// push adds a load to a stage and returns its power, W.
+func (r *fourthRun) push(f *fourthLoad, y []float64, st stage) float64 {
+	power := 0.0
+	for j := range f.load.taps {
+		t := &f.load.taps[j]
+		force := f.force[st.i][0]
+		if f.load.placed {
+			force = f.force[st.i][j]
+		}
+		force *= t.weight
+		power += force * y[t.at]
+		if t.node {
+			r.a[t.at] += force
+			if t.end >= 0 {
+				r.onEnd[t.end] += force
+			}
 			continue
 		}
-		r.lost += w.loss[k] * v[k] * v[k]
-		r.a[k] = (r.a[k] - w.spring[k]*u[k] - w.loss[k]*v[k]) / w.mass[k]
+		r.dv[t.at] += st.share * force * t.gain
+		r.tv[t.at] += st.ahead * force * t.gain
 	}
-	w.tell(r.a)
+	return power
 }
 
 // bend sets a[1:n] to the accelerations of the inner points of a strand, and a[0]
-// and a[n] to its forces on the nodes.
-func (s *strand) bend(a, x, y []float64) {
+// and a[n] to its forces on the nodes, without loss.
+func (s *strand) bend(a, x []float64) {
 	n := s.n
 	c := s.stiff / s.mass
-	g := s.loss / s.mass
 	for j := 4; j <= n-4; j++ {
 		near, far := x[j-1]+x[j+1], x[j-2]+x[j+2]
-		a[j] = c*(4.0/3*near-1.0/12*far-2.5*x[j]) - g*y[j]
+		a[j] = c * (4.0/3*near - 1.0/12*far - 2.5*x[j])
 	}
 	for j := range endRows {
 		left, right := 0.0, 0.0
@@ -346,8 +407,7 @@ func (s *strand) bend(a, x, y []float64) {
 			a[0], a[n] = -s.stiff*left, -s.stiff*right
 			continue
 		}
-		a[j] = -c/endWeights[j]*left - g*y[j]
-		a[n-j] = -c/endWeights[j]*right - g*y[n-j]
+		a[j], a[n-j] = -c/endWeights[j]*left, -c/endWeights[j]*right
 	}
 }
 
@@ -395,7 +455,7 @@ func (r *fourthRun) stored() float64 {
 			}
 			a[k] = 0
 		}
-		s.bend(a, x, r.dv[s.at:s.at+s.n+1]) // the loss multiplies r.dv
+		s.bend(a, x)
 		e -= (a[0]*x[0] + a[s.n]*x[s.n]) / 2
 		for k := 1; k < s.n; k++ {
 			e -= s.mass * endWeight(k, s.n) * a[k] * x[k] / 2
@@ -419,38 +479,26 @@ func (r *fourthRun) step(n int) {
 	copy(r.du, r.u)
 	copy(r.dv, r.v)
 	copy(r.dq, r.q)
-	r.pull(r.u, r.v, r.q, 0)
+	r.pass(r.u, r.v, r.q, stage{0, dt / 6, dt / 2})
 	at := moment{n: n, u: r.u, v: r.v, a: r.a, onEnd: r.onEnd}
 	for _, tape := range r.tapes {
 		tape.take(&at)
 	}
-	r.stage(r.v, dt/6, dt/2)
-	r.pull(r.su, r.sv, r.sq, 1)
-	r.stage(r.sv, dt/3, dt/2)
-	r.pull(r.su, r.sv, r.sq, 1)
-	r.stage(r.sv, dt/3, dt)
-	r.pull(r.su, r.sv, r.sq, 2)
-	r.stage(r.sv, dt/6, 0)
+	for _, st := range [3]stage{{1, dt / 3, dt / 2}, {1, dt / 3, dt}, {2, dt / 6, 0}} {
+		r.su, r.tu = r.tu, r.su
+		r.sv, r.tv = r.tv, r.sv
+		r.sq, r.tq = r.tq, r.sq
+		r.pass(r.su, r.sv, r.sq, st)
+	}
+	w := r.w
+	w.tell(r.du)
+	w.tell(r.dv)
 	r.u, r.du = r.du, r.u
 	r.v, r.dv = r.dv, r.v
 	r.q, r.dq = r.dq, r.q
-}
-
-// stage adds share of the rates (v, a) to the sums and sets the next stage to the
-// start of the step plus ahead times the rates.
-func (r *fourthRun) stage(v []float64, share, ahead float64) {
-	r.energy.Work += share * r.work
-	r.energy.Lost += share * r.lost
-	for i, a := range r.a {
-		y := v[i]
-		r.du[i] += share * y
-		r.dv[i] += share * a
-		r.su[i] = r.u[i] + ahead*y
-		r.sv[i] = r.v[i] + ahead*a
-	}
-	for i, rate := range r.rq {
-		r.dq[i] += share * rate
-		r.sq[i] = r.q[i] + ahead*rate
+	if n%flushFourth == 0 {
+		flush(r.u)
+		flush(r.v)
 	}
 }
 
@@ -460,12 +508,7 @@ func (r *fourthRun) all(ctx context.Context, steps int, progress func(float64)) 
 	look := max(1, steps/energyLooks)
 	for n := 0; n < steps; n++ {
 		r.step(n)
-		if n%flushEvery == 0 {
-			flush(r.u)
-			flush(r.v)
-		}
 		if n%look == 0 || n == steps-1 {
-			clear(r.dv)
 			e := r.stored()
 			if math.IsNaN(e) || math.IsInf(e, 0) {
 				return &solver.FaultError{Solver: name, What: "the motion is not finite"}

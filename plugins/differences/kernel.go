@@ -57,7 +57,7 @@ func advanceLossyGo(prev, cur []float64, d, a float64, sums *[lanes]float64) {
 // tiny is the magnitude below which a displacement is set to zero now and then:
 // numbers below 2.2e-308 take the processor some forty times as long, and a
 // front of such numbers runs ahead of every pulse on a quiet line.
-const tiny = 1e-280
+const tiny = 1e-250
 
 // flush sets values of magnitude below tiny to zero.
 func flush(u []float64) {

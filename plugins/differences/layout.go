@@ -6,6 +6,7 @@ import (
 	"sort"
 
 	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/scenario"
 )
 
 // Layout is the discretisation of a network at level 0. A level l runs at
@@ -25,8 +26,8 @@ const (
 	cellsSmooth   = 100 // in the longest line, otherwise
 	shortShare    = 10  // a piece is short if it would ask for a step so many times finer
 	stretch       = 1.35
-	roundUp       = 1e-9     // cells that a travel time may lack to hold one more
-	maxCandidates = 20000000 // candidate steps times pieces
+	roundUp       = 1e-9    // cells that a travel time may lack to hold one more
+	maxCandidates = 2000000 // candidate steps times pieces
 )
 
 // newLayout chooses the step and the cells of a mesh.
@@ -43,7 +44,13 @@ func newLayout(m *mesh.Mesh, effort int) (*Layout, []string) {
 		l, notes := layoutOf(m, effort, 4)
 		l.Step *= fourthShare
 		if why = l.unstable(m); why == "" {
-			return l, append(notes, "Order 4 is used: the data are smooth and nothing on the line is too stiff for it.")
+			notes = append(notes, "Order 4 is used: the data are smooth and nothing on the line is too stiff for it.")
+			for i := range m.Channels {
+				if m.Channels[i].Quantity == scenario.Acceleration {
+					return l, append(notes, "Accelerations near joints converge with order 2 all the same.")
+				}
+			}
+			return l, notes
 		}
 	}
 	l, notes := layoutOf(m, effort, 2)
@@ -190,6 +197,8 @@ func frozen(old *Layout, m *mesh.Mesh) (l *Layout, same bool, note string) {
 }
 
 // thaw reads a Request's Freeze; nil if it is of no use for the mesh.
+//
+// A layout of order 4 is of use only where order 4 still is.
 func thaw(freeze any, m *mesh.Mesh) *Layout {
 	var old *Layout
 	switch f := freeze.(type) {
@@ -205,6 +214,9 @@ func thaw(freeze any, m *mesh.Mesh) *Layout {
 		if n < 1 {
 			return nil
 		}
+	}
+	if old.Order == 4 && unfit(m)+old.unstable(m) != "" || old.Order != 4 && old.Order != 2 {
+		return nil
 	}
 	return old
 }

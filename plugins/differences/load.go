@@ -16,6 +16,7 @@ type tap struct {
 	end    int     // 2*strand + (0 start, 1 end) where the load lies on that half cell of a node; -1 otherwise
 	weight float64 // share of the load; m for a force per length
 	gain   float64 // m/N, of an inner point
+	loss   float64 // N s/m, of an inner point
 	x      float64 // m, where a load that depends on place is read
 }
 
@@ -28,6 +29,7 @@ type load struct {
 	taps      []tap
 	last, now []float64 // N or N/m: means over the step before and after, one or one a tap
 	force     []float64 // N at each tap in this step
+	old       []float64 // m, at each tap before the kernel
 	before    float64   // J
 }
 
@@ -61,7 +63,7 @@ func newLoads(w *network) *loads {
 }
 
 func (l *loads) include(h scenario.History, taps []tap, placed bool) {
-	ld := load{history: h, placed: placed, taps: taps, force: make([]float64, len(taps))}
+	ld := load{history: h, placed: placed, taps: taps, force: make([]float64, len(taps)), old: make([]float64, len(taps))}
 	ld.breaks = append(ld.breaks, h.Breaks...)
 	sort.Float64s(ld.breaks)
 	n := 1
@@ -76,7 +78,7 @@ func (l *loads) include(h scenario.History, taps []tap, placed bool) {
 func (w *network) tapAt(strandIndex, k int, weight, x float64) tap {
 	s := &w.strands[strandIndex]
 	at, node := s.place(k)
-	t := tap{at: at, node: node, end: -1, weight: weight, gain: s.gain, x: x}
+	t := tap{at: at, node: node, end: -1, weight: weight, gain: s.gain, loss: s.loss, x: x}
 	switch k {
 	case 0:
 		t.end = 2 * strandIndex
@@ -135,6 +137,10 @@ func (w *network) partTaps(part mesh.Part) []tap {
 	return taps
 }
 
+// gauss2 holds the points of the two-point Gauss-Legendre rule on [0, 1], exact to
+// degree 3 (Abramowitz and Stegun, table 25.4).
+var gauss2 = [2]float64{0.2113248654051871, 0.7886751345948129}
+
 // mean is the mean of the history over [from, to] at place x, cut at breaks.
 func (ld *load) mean(from, to, x float64) float64 {
 	sum, a := 0.0, from
@@ -146,8 +152,8 @@ func (ld *load) mean(from, to, x float64) float64 {
 		if ld.placed {
 			sum += (b - a) * ld.history.At(a+(b-a)/2, x)
 		} else {
-			for _, g := range gauss3 {
-				sum += g[1] * (b - a) * ld.history.At(a+g[0]*(b-a), x)
+			for _, g := range gauss2 {
+				sum += (b - a) / 2 * ld.history.At(a+g*(b-a), x)
 			}
 		}
 		if b == to {
@@ -210,25 +216,33 @@ func (l *loads) sum(taps []tap, force []float64) {
 	}
 }
 
-// remember notes the state that the kernel is about to overwrite, for the work.
+// remember notes the state that the kernel is about to overwrite, for the work
+// and the loss.
 func (l *loads) remember(u []float64) {
 	for i := range l.each {
-		l.each[i].before = pair(l.each[i].taps, l.each[i].force, u)
+		ld := &l.each[i]
+		ld.before = note(ld.taps, ld.force, ld.old, u)
 	}
 	for i := range l.rolls {
-		l.rolls[i].before = pair(l.rolls[i].taps, l.rolls[i].force, u)
+		r := &l.rolls[i]
+		r.before = note(r.taps, r.force, r.old, u)
 	}
 }
 
 // act adds share times the forces' displacements to the inner points of u: 1 in a
-// step, 1/2 in the first one.
-func (l *loads) act(u []float64, share float64) {
+// step, 1/2 in the first one. It returns what this changes in the sum of
+// loss (u+ - u-)^2 that the kernel took without the loads, N s m.
+func (l *loads) act(u []float64, share float64) float64 {
+	sum := 0.0
 	for i := range l.each {
-		move(l.each[i].taps, l.each[i].force, u, share)
+		ld := &l.each[i]
+		sum += move(ld.taps, ld.force, ld.old, u, share)
 	}
 	for i := range l.rolls {
-		move(l.rolls[i].taps, l.rolls[i].force, u, share)
+		r := &l.rolls[i]
+		sum += move(r.taps, r.force, r.old, u, share)
 	}
+	return sum
 }
 
 // work is half of the forces times the displacement from the state remembered to
@@ -252,10 +266,25 @@ func pair(taps []tap, force, u []float64) float64 {
 	return sum
 }
 
-func move(taps []tap, force, u []float64, share float64) {
+// note is pair, and keeps the values.
+func note(taps []tap, force, old, u []float64) float64 {
 	for k := range taps {
-		if t := &taps[k]; !t.node {
-			u[t.at] += share * t.gain * force[k]
-		}
+		old[k] = u[taps[k].at]
 	}
+	return pair(taps, force, u)
+}
+
+func move(taps []tap, force, old, u []float64, share float64) float64 {
+	sum := 0.0
+	for k := range taps {
+		t := &taps[k]
+		if t.node {
+			continue
+		}
+		before := u[t.at] - old[k]
+		u[t.at] += share * t.gain * force[k]
+		after := u[t.at] - old[k]
+		sum += t.loss * (after*after - before*before)
+	}
+	return sum
 }

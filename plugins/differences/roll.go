@@ -20,6 +20,7 @@ type roll struct {
 	r      *mesh.Roll
 	taps   []tap     // at most cap, refilled every step
 	force  []float64 // N at each tap
+	old    []float64 // m, at each tap before the kernel
 	before float64   // J
 }
 
@@ -32,13 +33,13 @@ func newRoll(w *network, r *mesh.Roll) roll {
 	// side; every piece that the load meets in a step adds its ends.
 	n := int(math.Min(2*math.Abs(r.Speed)*w.dt*widest, 1e6)) + 4
 	n = min(n*len(w.m.Lines[r.Line].Pieces), n+4*len(w.m.Lines[r.Line].Pieces)+8)
-	return roll{w: w, r: r, taps: make([]tap, 0, n), force: make([]float64, 0, n)}
+	return roll{w: w, r: r, taps: make([]tap, 0, n), force: make([]float64, 0, n), old: make([]float64, 0, n)}
 }
 
 // set finds taps and forces at step n.
 func (r *roll) set(n int) {
 	w := r.w
-	r.taps, r.force = r.taps[:0], r.force[:0]
+	r.taps, r.force, r.old = r.taps[:0], r.force[:0], r.old[:0]
 	t := float64(n) * w.dt
 	first, last := math.Max(t-w.dt, math.Max(0, r.r.Starting)), t+w.dt
 	share := r.r.Force / (2 * w.dt)
@@ -74,6 +75,7 @@ func (r *roll) set(n int) {
 			if stay > 0 {
 				r.taps = append(r.taps, w.tapAt(k, j, 1, 0))
 				r.force = append(r.force, share*stay)
+				r.old = append(r.old, 0)
 			}
 		}
 	}

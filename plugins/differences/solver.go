@@ -17,6 +17,10 @@ const (
 // maxBytes is the memory that a solution may take, results included.
 const maxBytes = 2e9
 
+// fourthWork is what a cell-step of order 4 costs in those of order 2, rounded
+// down to the plain ones that a Plan counts: 15 ns were measured against 0.4 to 1.
+const fourthWork = 10
+
 // New is the finite-difference solver.
 func New() solver.Solver { return differences{} }
 
@@ -79,7 +83,7 @@ func (t *task) size(m *mesh.Mesh) error {
 	}
 	work := cells * steps
 	if t.layout.Order == 4 {
-		work *= 4 // stages of a step
+		work *= fourthWork
 	}
 	t.plan = solver.Plan{Cells: int(cells), Steps: int(steps), Work: int64(work), Bytes: int64(bytes)}
 	return nil

@@ -333,10 +333,13 @@ func (a *arrow) update(p *shifted, st *state) {
 		for _, half := range el.halves() {
 			lo, hi := half.lo, half.hi
 			u := ua + complex(half.sign, 0)*ub
-			finishInner(a.tr[lo:hi:hi], a.ti[lo:hi:hi], p.ir[lo:hi:hi], p.ii[lo:hi:hi], a.kappa[lo:hi:hi], real(u), imag(u))
-			if st.z != nil {
-				addIntegrals(st.z[lo:hi:hi], st.y[lo:hi:hi], a.tr[lo:hi:hi], a.ti[lo:hi:hi], i1, i2, nu)
+			if st.z == nil {
+				finishAdd(st.x[lo:hi:hi], st.v[lo:hi:hi], a.tr[lo:hi:hi], a.ti[lo:hi:hi], p.ir[lo:hi:hi], p.ii[lo:hi:hi],
+					a.kappa[lo:hi:hi], u, c2, cs, nu)
+				continue
 			}
+			finishInner(a.tr[lo:hi:hi], a.ti[lo:hi:hi], p.ir[lo:hi:hi], p.ii[lo:hi:hi], a.kappa[lo:hi:hi], real(u), imag(u))
+			addIntegrals(st.z[lo:hi:hi], st.y[lo:hi:hi], a.tr[lo:hi:hi], a.ti[lo:hi:hi], i1, i2, nu)
 			addInner(st.x[lo:hi:hi], st.v[lo:hi:hi], a.tr[lo:hi:hi], a.ti[lo:hi:hi], c2, cs, nu)
 		}
 	}
@@ -350,6 +353,20 @@ func finishInner(tr, ti, ir, ii, ka []float64, ur, ui float64) {
 		c, a, b := ka[k], ir[k], ii[k]
 		tr[k] -= c * (ur*a - ui*b)
 		ti[k] -= c * (ur*b + ui*a)
+	}
+}
+
+// finishAdd is finishInner and addInner in one pass, for runs without integrals.
+func finishAdd(x, v, tr, ti, ir, ii, ka []float64, u, c2, cs complex128, nu float64) {
+	ur, ui, cr, ci, dr, di := real(u), imag(u), real(c2), imag(c2), real(cs), imag(cs)
+	n := len(x)
+	v, tr, ti, ir, ii, ka = v[:n], tr[:n], ti[:n], ir[:n], ii[:n], ka[:n]
+	for k := range x {
+		c, a, b, x0 := ka[k], ir[k], ii[k], x[k]
+		sr := tr[k] - c*(ur*a-ui*b)
+		si := ti[k] - c*(ur*b+ui*a)
+		x[k] = nu*x0 + cr*sr - ci*si
+		v[k] = nu*v[k] + cr*x0 + dr*sr - di*si
 	}
 }
 

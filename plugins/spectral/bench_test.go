@@ -37,3 +37,15 @@ func BenchmarkThreeLossy(b *testing.B) {
 		})
 	}
 }
+
+// caseB2 is three segments with two masses and a dashpot, hit by a half sine.
+func caseB2() *mesh.Mesh {
+	m := chain(0.0005, 10001, seg{30, 0.9, 20000, 0.08}, seg{45, 1.6, 20000, 0.08}, seg{25, 0.9, 20000, 0.08})
+	m.Nodes[1].Mass = 4
+	m.Nodes[2].Mass, m.Nodes[2].Dashpot = 1.5, 120
+	m.Pieces[0].Marks = []mesh.Mark{{Kind: mesh.MarkLoad, At: 12}}
+	m.Pushes = []mesh.Push{{At: inside(0, 12), Force: halfSine(500, 0.008)}}
+	m.Jump, m.Band = 2, 1.5/0.008
+	watch(m, scenario.Displacement, 0, inside(1, 30))
+	return m
+}

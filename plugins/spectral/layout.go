@@ -32,7 +32,7 @@ type stretch struct {
 // Rules of level 0; chosen, see the convergence tests for what they give.
 const (
 	elementPhase = 28.0 // rad of the highest wave that one long element takes: degree 24
-	kinkedPhase  = 9.0  // the same for data with kinks: degree 11
+	kinkedPhase  = 20.0 // the same for data with kinks: degree 15
 	snapPhase    = 0.05 // rad; a mark nearer to a border than this gets none of its own
 	energyPhase  = 1.2  // rad of the highest wave per substep, for the energy account's quadrature
 	loadPhase    = 0.8  // rad of the loads' highest frequency per substep at level 0
@@ -46,10 +46,10 @@ func halfWaves(effort, jump int) (least, most float64) {
 	least = [3]float64{16, 24, 40}[effort]
 	most = [3]float64{400, 800, 1600}[effort]
 	if jump <= 2 {
-		most = [3]float64{40, 64, 128}[effort]
+		most = [3]float64{48, 96, 192}[effort]
 	}
 	if jump <= 1 {
-		least = [3]float64{28, 44, 72}[effort]
+		least = [3]float64{16, 28, 56}[effort]
 	}
 	return least, most
 }
@@ -116,7 +116,7 @@ func newLayout(m *mesh.Mesh, req solver.Request) (*layout, bool) {
 			theta := omega * (to - last) / c
 			phase, margin := elementPhase, 5.0
 			if m.Jump <= 2 {
-				phase, margin = kinkedPhase, 2.5
+				phase, margin = kinkedPhase, 0
 			}
 			n := max(1, int(math.Round(theta/phase)))
 			d := float64(degreeFor(theta/float64(n), margin))

@@ -1,39 +1,46 @@
 package spectral
 
 import (
-	"math"
-	"math/cmplx"
+	"context"
+	"github.com/tautspan/tautspan/engine/solver"
+	"syscall"
 	"testing"
+	"time"
 )
 
-func TestScratchPartial(t *testing.T) {
-	for _, m := range []int{15, 21, 29} {
-		fs := pade(m)
-		reach := padeReach(m, 1e-13)
-		for _, ord := range []string{"asc", "desc"} {
-			worst := 0.0
-			low := 1e9
-			for i := 0; i <= 200; i++ {
-				z := complex(0, reach*float64(i)/200)
-				r := complex128(1)
-				for k := range fs {
-					f := fs[k]
-					if ord == "desc" {
-						f = fs[len(fs)-1-k]
-					}
-					if f.single {
-						r *= f.res / (z - f.pole)
-					} else {
-						r *= complex(f.nu, 0) + f.res/(z-f.pole) + cmplx.Conj(f.res)/(z-cmplx.Conj(f.pole))
-					}
-					worst = math.Max(worst, cmplx.Abs(r))
-					low = math.Min(low, cmplx.Abs(r))
-				}
-			}
-			t.Log(m, ord, worst, low)
-		}
-		for _, f := range fs {
-			t.Log(f.pole, f.nu, cmplx.Abs(f.res))
-		}
+func TestScratchB2(t *testing.T) {
+	ref := caseB2()
+	ref.Jump = 9
+	rr, err := New().Solve(context.Background(), ref, solver.Request{Level: 2, Effort: 2}, nil)
+	if err != nil {
+		t.Fatal(err)
 	}
+	t.Log("ref", rr.Plan.Cells)
+	for lev := 0; lev < 5; lev++ {
+		m := caseB2()
+		c0 := cpu()
+		r := solve(t, m, lev)
+		t.Log(lev, r.Plan.Cells, r.Plan.Steps, cpu()-c0, apart(r.Series[0][0], rr.Series[0][0]), "gap", r.Energy.Unaccounted()/r.Energy.Most)
+	}
+}
+func TestScratchThree(t *testing.T) {
+	ref := threeLossy()
+	ref.Jump = 9
+	rr, err := New().Solve(context.Background(), ref, solver.Request{Level: 1, Effort: 2}, nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	t.Log("ref", rr.Plan.Cells)
+	for lev := 0; lev < 4; lev++ {
+		m := threeLossy()
+		c0 := cpu()
+		r := solve(t, m, lev)
+		t.Log(lev, r.Plan.Cells, r.Plan.Steps, cpu()-c0, apart(r.Series[0][0], rr.Series[0][0]), apart(r.Series[1][0], rr.Series[1][0]), apart(r.Series[2][0], rr.Series[2][0]), "gap", r.Energy.Unaccounted()/r.Energy.Most)
+	}
+}
+
+func cpu() time.Duration {
+	var r syscall.Rusage
+	syscall.Getrusage(0, &r)
+	return time.Duration(r.Utime.Nano())
 }

@@ -185,16 +185,6 @@ func (j *job) choose() {
 		if j.m.Band > 0 {
 			lay.loaded = math.Min(lay.loaded, loadPhase/(2*math.Pi*j.m.Band*scale))
 		}
-		for _, r := range j.m.Rolls {
-			for _, p := range j.m.Lines[r.Line].Pieces {
-				for _, e := range s.byPiece[p] {
-					el := &s.elements[e]
-					if v := math.Abs(r.Speed) * float64(el.ref.p) / el.h; v > 0 {
-						lay.loaded = math.Min(lay.loaded, 1/v)
-					}
-				}
-			}
-		}
 	} else if lay.modal && !(proportional && s.size() <= modalMost && !j.hasFields()) {
 		lay.modal = false // the damping is no longer proportional
 		lay.quiet = math.Min(lay.quiet, padeReach(padeMax, padeTol)/lay.hot)
@@ -207,6 +197,13 @@ func (j *job) choose() {
 	}
 	parts = math.Max(1, parts)
 	steps := parts * float64(j.steps)
+	for _, r := range j.m.Rolls {
+		for _, p := range j.m.Lines[r.Line].Pieces {
+			for _, e := range s.byPiece[p] {
+				steps += 3 * float64(s.elements[e].ref.p) // a changing step is prepared anew
+			}
+		}
+	}
 	j.plan.Steps = int(math.Min(steps, math.MaxInt32))
 	n := float64(s.size())
 	work := steps * n * 10

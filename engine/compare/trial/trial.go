@@ -19,10 +19,11 @@ import (
 	"github.com/tautspan/tautspan/engine/solver"
 )
 
-// Line is a random line of three segments: fixed support, a joint with a mass
-// where the line is hit by a half sine, a joint with a dashpot and on every other
-// line a spring, a support with a spring. It runs for about so many passages of a
-// wave and is watched in each segment and at the springy support.
+// Line is a random line of three segments: fixed support, a joint with a mass, a
+// joint with a dashpot and on every other line a spring, a support with a spring.
+// It is hit by a half sine at the mass, plucked in the second segment, or lifted
+// by a rising force there. It runs for about so many passages of a wave and is
+// watched in each segment and at the springy support.
 func Line(random *rand.Rand, passages float64) (*mesh.Mesh, error) {
 	between := func(a, b float64) float64 { return a + (b-a)*random.Float64() }
 	tension := between(5e3, 4e4)
@@ -49,14 +50,29 @@ func Line(random *rand.Rand, passages float64) (*mesh.Mesh, error) {
 		{Name: "b", Kind: scenario.Support, Spring: between(2e4, 5e5)},
 	}
 	net.Lines = []scenario.Line{line}
-	knock := travel * between(0.15, 0.4)
-	force := formula.Apply(formula.OpHalfSine, formula.Arg(formula.ArgT), formula.Const(between(100, 800)), formula.Const(knock))
-	net.Pushes = []scenario.PushOf[float64]{{Name: "hit", At: scenario.Place{Node: 1}, Force: scenario.History{Value: force, Breaks: []float64{0, knock}}}}
+	inside := scenario.Place{Node: -1, Segment: 1, Offset: line.Segments[1].Length * between(0.2, 0.8)}
+	time, size := travel*between(0.15, 0.4), between(100, 800)
+	argT := formula.Arg(formula.ArgT)
+	push := func(at scenario.Place, force formula.Program) {
+		net.Pushes = []scenario.PushOf[float64]{{Name: "hit", At: at, Force: scenario.History{Value: force, Breaks: []float64{0, time}}}}
+	}
+	switch random.IntN(3) {
+	case 0:
+		push(scenario.Place{Node: 1}, formula.Apply(formula.OpHalfSine, argT, formula.Const(size), formula.Const(time)))
+	case 1:
+		net.Plucks = []scenario.PluckOf[float64]{{Name: "hit", At: inside, Force: size}}
+	case 2:
+		push(inside, formula.Apply(formula.OpRamp, argT, formula.Const(size), formula.Const(0), formula.Const(time)))
+	}
 	for i, s := range line.Segments {
 		at := scenario.Place{Node: -1, Segment: i, Offset: s.Length * between(0.3, 0.7)}
-		net.Watches = append(net.Watches, scenario.Watch{Name: fmt.Sprintf("w%d", i), At: at, Quantities: []scenario.Quantity{scenario.Displacement}})
+		quantities := []scenario.Quantity{scenario.Displacement}
+		if i == 1 {
+			quantities = append(quantities, scenario.Velocity, scenario.Slope)
+		}
+		net.Watches = append(net.Watches, scenario.Watch{Name: fmt.Sprintf("w%d", i), At: at, Quantities: quantities})
 	}
-	net.Watches = append(net.Watches, scenario.Watch{Name: "end", At: scenario.Place{Node: 3}, Quantities: []scenario.Quantity{scenario.Displacement}})
+	net.Watches = append(net.Watches, scenario.Watch{Name: "end", At: scenario.Place{Node: 3}, Quantities: []scenario.Quantity{scenario.Displacement, scenario.Force}})
 	rows := 40 * passages
 	net.Run = scenario.RunOf[float64]{For: passages * travel, Every: passages * travel / rows}
 	return mesh.Build(net)
@@ -70,8 +86,8 @@ type Defect struct {
 }
 
 // Defects are mistakes on lines such as Line gives: from one that turns the sign
-// of a reflection, which can be heard at once, down to a hundredth of one
-// segment's mass. voices is the number of solvers; the mistakes go around.
+// of a reflection, which can be heard at once, down to a thousandth of
+// one segment's mass. voices is the number of solvers; the mistakes go around.
 func Defects(voices int) []Defect {
 	mass := func(i int, factor float64) func(m *mesh.Mesh) {
 		return func(m *mesh.Mesh) { m.Pieces[i].MassPerLength *= factor }
@@ -84,8 +100,9 @@ func Defects(voices int) []Defect {
 			m.Pieces[0].Viscous, m.Pieces[1].Viscous = m.Pieces[1].Viscous, m.Pieces[0].Viscous
 		}},
 		{Name: "one segment's mass +1 %", Spoil: mass(1, 1.01)},
+		{Name: "one segment's mass +0.1 %", Spoil: mass(1, 1.001)},
 		{Name: "dashpot -5 %", Spoil: func(m *mesh.Mesh) { m.Nodes[m.Pieces[1].To].Dashpot *= 0.95 }},
-		{Name: "clamp mass +10 %", Spoil: func(m *mesh.Mesh) { m.Nodes[m.Pieces[0].To].Mass *= 1.1 }},
+		{Name: "clamp mass +1 %", Spoil: func(m *mesh.Mesh) { m.Nodes[m.Pieces[0].To].Mass *= 1.01 }},
 	}
 	for i := range list {
 		list[i].Voice = i % voices

@@ -84,3 +84,32 @@ func roundUp(bar float64, places int) float64 {
 
 // trimNumber writes a number with so many significant digits.
 func trimNumber(v float64, digits int) string { return unit.Digits(v, digits) }
+
+// column writes values in one unit, chosen by the largest, with as many decimals
+// as give the largest so many significant digits; it returns the unit for the
+// column's head.
+func (r reader) column(values []float64, si string, digits int) (cells []string, word string) {
+	largest := 0.0
+	for _, v := range values {
+		if !math.IsNaN(v) && !math.IsInf(v, 0) {
+			largest = math.Max(largest, math.Abs(v))
+		}
+	}
+	factor, word := r.unitFor(largest, si)
+	places := 0
+	if largest > 0 {
+		places = max(0, digits-1-int(math.Floor(math.Log10(largest*factor))))
+	}
+	for _, v := range values {
+		cells = append(cells, strconv.FormatFloat(v*factor, 'f', places, 64))
+	}
+	return cells, word
+}
+
+// head is a column's head with its unit.
+func head(name, word string) string {
+	if word == "" {
+		return name
+	}
+	return name + " [" + word + "]"
+}

@@ -125,37 +125,50 @@ func (p *printer) because(n *doubt.Number) string {
 // sayArrivals prints the pulse ledger.
 func (p *printer) sayArrivals(d *app.ArrivalsDoc) {
 	p.heading(&d.Head)
-	watch := ""
-	var t *table
-	flush := func() {
-		if t != nil {
-			p.table(t)
+	for i := 0; i < len(d.Arrivals); {
+		j := i
+		for j < len(d.Arrivals) && d.Arrivals[j].Watch == d.Arrivals[i].Watch {
+			j++
 		}
+		p.sayFronts(d.Arrivals[i:j])
+		i = j
 	}
-	for i := range d.Arrivals {
-		a := &d.Arrivals[i]
-		if a.Watch != watch {
-			flush()
-			watch = a.Watch
-			p.line("\nfronts at %s", watch)
-			t = newTable("no", "time", "jump", "of", "path").flush(0, 1, 2)
-		}
-		mark := ""
-		if a.Smeared {
-			mark = " (smeared)"
-		}
-		if a.Merged > 1 {
-			mark += fmt.Sprintf(" (%d paths)", a.Merged)
-		}
-		t.add(fmt.Sprint(a.Number), p.show(a.Time, "s", 6), signed(p.show(a.Amplitude, a.Unit, 4)), a.Quantity+mark, shorten(strings.Join(a.Path, " → "), p.width-44))
-	}
-	flush()
 	if len(d.Arrivals) == 0 {
 		p.line("\nNo front reaches a watch.")
 	}
 	p.line("\nFronts below %s of the strongest are left out; followed to %s.", percent(d.PrunedBelow), p.show(d.Reached, "s", 4))
 	for _, n := range d.Notes {
 		p.prose("note: ", n)
+	}
+}
+
+// sayFronts prints the fronts at one watch.
+func (p *printer) sayFronts(rows []app.ArrivalRow) {
+	p.line("\nfronts at %s", rows[0].Watch)
+	times := make([]float64, len(rows))
+	several, smeared := false, false
+	for i := range rows {
+		times[i] = rows[i].Time
+		several = several || rows[i].Merged > 1
+		smeared = smeared || rows[i].Smeared
+	}
+	cells, word := p.column(times, "s", 6)
+	t := newTable("no", head("time", word), "jump", "of", "path").flush(0, 1, 2)
+	for i := range rows {
+		a := &rows[i]
+		mark := ""
+		if a.Smeared {
+			mark += " ~"
+		}
+		path := shorten(strings.Join(a.Path, " → "), p.width-52)
+		if a.Merged > 1 {
+			path += fmt.Sprintf(" (%d paths)", a.Merged)
+		}
+		t.add(fmt.Sprint(a.Number), cells[i], signed(p.show(a.Amplitude, a.Unit, 4)), a.Quantity+mark, path)
+	}
+	p.table(t)
+	if smeared {
+		p.prose("  ", "~ smeared on its way by a mass or a spring: it begins at this time and rises; the jump is what a record with the run's interval shows")
 	}
 }
 

@@ -18,7 +18,7 @@ type record struct {
 // sayRun prints the answer of a run.
 func (p *printer) sayRun(d *app.RunDoc, records []record) {
 	p.heading(&d.Head)
-	if d.Run != nil {
+	if d.Run != nil && len(d.Watches) > 0 {
 		assumed := ""
 		if len(d.Run.Assumed) > 0 {
 			assumed = " (assumed: " + strings.Join(d.Run.Assumed, ", ") + ")"
@@ -156,26 +156,31 @@ func (p *printer) sayRecords(records []record) {
 }
 
 func (p *printer) saySolvers(d *app.RunDoc) {
-	p.line("\nsolvers")
-	energy := map[string]app.EnergyRow{}
-	for _, e := range d.Energy {
-		energy[e.Solver] = e
+	if len(d.Solvers) == 0 {
+		return
 	}
-	t := newTable()
-	var notes []string
+	p.line("\nsolvers")
+	energy := map[string]*app.EnergyRow{}
+	for i := range d.Energy {
+		energy[d.Energy[i].Solver] = &d.Energy[i]
+	}
+	t := newTable("", "cells", "steps", "levels", "energy in", "lost", "unexplained").flush(1, 2, 3, 4, 5, 6)
+	var more []string
 	for _, s := range d.Solvers {
 		if s.ReasonIfAbsent != nil {
-			t.add(s.Name, "took no part: "+*s.ReasonIfAbsent)
+			more = append(more, s.Name+" took no part: "+*s.ReasonIfAbsent)
 			continue
 		}
-		e := energy[s.Name]
-		t.add(s.Name, fmt.Sprintf("%d cells, %d steps, levels %s", *s.Cells, *s.Steps, levelText(s.Levels)), p.account(&e))
+		row := []string{s.Name, fmt.Sprint(*s.Cells), fmt.Sprint(*s.Steps), levelText(s.Levels)}
+		t.add(append(row, p.account(energy[s.Name])...)...)
 		for _, n := range s.Notes {
-			notes = append(notes, s.Name+": "+n)
+			more = append(more, s.Name+": "+n)
 		}
 	}
-	p.table(t)
-	for _, n := range notes {
+	if len(t.rows) > 0 {
+		p.table(t)
+	}
+	for _, n := range more {
 		p.prose("  ", n)
 	}
 }
@@ -187,15 +192,17 @@ func levelText(levels []int) string {
 	return fmt.Sprintf("%d to %d", levels[0], levels[len(levels)-1])
 }
 
-func (p *printer) account(e *app.EnergyRow) string {
-	if e.Unaccounted == nil || e.Start == nil || e.End == nil || e.Lost == nil || e.Work == nil {
-		return ""
+// account is the energy that came in, the share lost and the share that the
+// solver cannot explain.
+func (p *printer) account(e *app.EnergyRow) []string {
+	if e == nil || e.Unaccounted == nil || e.Start == nil || e.End == nil || e.Lost == nil || e.Work == nil {
+		return []string{"-", "-", "-"}
 	}
 	in := math.Max(math.Abs(*e.Start)+math.Abs(*e.Work), *e.End)
 	if in == 0 {
-		return "nothing moved"
+		return []string{"0", "-", "-"}
 	}
-	return fmt.Sprintf("energy: %s in, %s lost, %.1e of it unexplained", p.show(*e.Start+*e.Work, "J", 3), p.show(*e.Lost, "J", 3), math.Abs(*e.Unaccounted)/in)
+	return []string{p.show(*e.Start+*e.Work, "J", 3), percent(*e.Lost / in), fmt.Sprintf("%.0e", math.Abs(*e.Unaccounted)/in)}
 }
 
 func (p *printer) sayCautions(list []app.CautionNote) {
