@@ -169,6 +169,16 @@ func TestDiagnose(t *testing.T) {
 	}
 }
 
+// A value that stands against a default is told when the scenario is compiled.
+func TestBindingIsPartOfCompiling(t *testing.T) {
+	text := strings.Replace(read(t, "stay.taut"), "    for    40 s\n    every  5 ms\n", "    every  1e6 s\n", 1)
+	c := compileText(text, Options{})
+	e := c.Diagnostics.Errors()
+	if len(e) != 1 || e[0].Code != "cannot-bind" || e[0].Span.Text() != "1e6 s" {
+		t.Errorf("%s", c.Diagnostics.Text(0))
+	}
+}
+
 func TestScope(t *testing.T) {
 	text, ok := Explain("scope")
 	for _, word := range []string{"galloping", "parametric", "torsion", "creep", "whirling", "lengthwise", "not-yet"} {
@@ -179,4 +189,29 @@ func TestScope(t *testing.T) {
 	if codes := Codes(); len(codes) < 50 || codes[0] > codes[1] {
 		t.Errorf("codes: %v", codes)
 	}
+}
+
+// Folding never changes what a scenario says.
+func FuzzFold(f *testing.F) {
+	files := folding()
+	f.Add(string(files["case.taut"].Data), string(files["lib/pulls.taut"].Data), string(files["lib/strands.taut"].Data), "300 kN")
+	f.Add("tautspan 1\nuse \"lib/pulls.taut\"\nlet a = pull # c\n", "tautspan 1\nlet pull = # c\n  3 kN\nrun {\n  for 3 s\n}\n", "tautspan 1\n", "between 1 kN and 2 kN")
+	f.Add("tautspan 1\r\nuse \"lib/pulls.taut\"\r\n", "tautspan 1\r\nlet pull = 3 kN", "tautspan 1", "3 +- 4")
+	f.Fuzz(func(t *testing.T, text, pulls, strands, value string) {
+		files := fstest.MapFS{"case.taut": {Data: []byte(text)}, "lib/pulls.taut": {Data: []byte(pulls)}, "lib/strands.taut": {Data: []byte(strands)}}
+		for _, set := range []map[string]string{nil, {"pull": value}} {
+			c := Compile(files, "case.taut", Options{Set: set})
+			if c.Diagnostics.HasErrors() {
+				continue
+			}
+			folded := c.Fold()
+			alone := compileText(folded, Options{})
+			if alone.Diagnostics.HasErrors() {
+				t.Fatalf("the folded text does not compile:\n%s\n%s", folded, alone.Diagnostics.Text(0))
+			}
+			if !reflect.DeepEqual(c.Template, alone.Template) {
+				t.Fatalf("folding changes the template:\n%q", folded)
+			}
+		}
+	})
 }

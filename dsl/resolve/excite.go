@@ -1,6 +1,8 @@
 package resolve
 
 import (
+	"math"
+
 	"github.com/tautspan/tautspan/dsl/diag"
 	"github.com/tautspan/tautspan/dsl/syntax"
 	"github.com/tautspan/tautspan/dsl/unit"
@@ -111,6 +113,9 @@ func (r *resolver) start(a *syntax.Start, name, path string) {
 	if v.bad || !ok || !r.finiteAlong(a.Shape, v.prog, along) {
 		return
 	}
+	if !velocity {
+		r.torn(a.Shape, v.prog, along)
+	}
 	r.tmpl.Model.Starts = append(r.tmpl.Model.Starts, scenario.StartOf[formula.Program]{Name: name, Along: along, Velocity: velocity, Shape: v.prog})
 }
 
@@ -132,6 +137,47 @@ func (r *resolver) finiteAlong(e syntax.Expr, shape formula.Program, along scena
 		}
 	}
 	return true
+}
+
+// tornShare is the share of its largest value that a start shape may have where
+// it must vanish. Chosen: a tail of a bell that nobody would see in a figure.
+const tornShare = 1e-3
+
+// torn remarks on a start displacement that does not vanish at a support that
+// is held, or where its stretch ends within the line.
+func (r *resolver) torn(e syntax.Expr, shape formula.Program, along scenario.SpanOf) {
+	line := &r.tmpl.Model.Lines[along.Line]
+	at := func(x float64) float64 { return math.Abs(shape.Eval(r.values, []float64{0, x})) }
+	first, last := 0, len(line.Segments)
+	if along.Segment >= 0 {
+		first, last = along.Segment, along.Segment+1
+	}
+	length := 0.0
+	for _, s := range line.Segments[first:last] {
+		length += r.num(s.Length)
+	}
+	largest := 0.0
+	const places = 200
+	for i := range places + 1 {
+		largest = math.Max(largest, at(length*float64(i)/places))
+	}
+	x := 0.0
+	for n := first; n <= last && n < len(line.Nodes); n++ {
+		if at(x) > tornShare*largest {
+			edge := (n == first || n == last) && n > 0 && n < len(line.Nodes)-1
+			switch {
+			case line.Nodes[n].Fixed:
+				r.warnAt(e.Place(), "start-jumps", "this shape is not zero at "+line.Nodes[n].Name+", which is held", "the line would be torn there", "")
+				return
+			case edge:
+				r.warnAt(e.Place(), "start-jumps", "this shape is not zero where its stretch ends within the line", "the line would be torn there", "start displacement along "+line.Name)
+				return
+			}
+		}
+		if n < last {
+			x += r.num(line.Segments[n].Length)
+		}
+	}
 }
 
 func (r *resolver) move(a *syntax.Move, name, path string) {

@@ -100,6 +100,8 @@ The run would write more rows, or the table holds more, than are taken. A row ev
 There is a limit to the number of segments and of used files in one scenario; the message says it.`,
 	"too-long": `
 The expression has too many parts to be computed with. Give parts of it names with let.`,
+	"start-jumps": `
+A start displacement should be zero at every support that is held, and where its stretch ends within the line; otherwise the line has a step there, which no real line has and which no two solvers treat alike. Several starts add up, so that the sum may still be sound.`,
 	"short-segment": `
 A segment is shorter than a millionth of the longest. That is usually a slip in a unit; if it is meant, rounding will show in the answers.`,
 	"wrong-arguments": `

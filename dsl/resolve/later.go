@@ -65,11 +65,17 @@ func (r *resolver) letNamed(n *syntax.Name) value {
 	return badValue
 }
 
-// like compiles values that must have the dimension of a let; the unit of the
-// last holds for all.
+// like compiles a list of values that must have the dimension of a let; the unit
+// of the last holds for all.
 func (r *resolver) like(let value, what string, list ...syntax.Expr) ([]float64, bool) {
+	return r.likeIn(let, what, syntax.SharedUnit(list...), list)
+}
+
+// likeIn compiles values of the dimension of a let; shared is a unit for those
+// without one, or nil.
+func (r *resolver) likeIn(let value, what string, shared *syntax.Unit, list []syntax.Expr) ([]float64, bool) {
 	sc := *plain
-	sc.shared = syntax.SharedUnit(list...)
+	sc.shared = shared
 	ok := !let.bad
 	var out []float64
 	for _, e := range list {
@@ -89,7 +95,7 @@ func (r *resolver) like(let value, what string, list ...syntax.Expr) ([]float64,
 
 // over checks NAME from A to B.
 func (r *resolver) over(name *syntax.Name, from, to syntax.Expr) {
-	ends, ok := r.like(r.letNamed(name), "the range of "+clip(name), from, to)
+	ends, ok := r.likeIn(r.letNamed(name), "the range of "+clip(name), nil, []syntax.Expr{from, to})
 	if ok && !(ends[0] < ends[1]) {
 		r.errorAt(from.Place().To(to.Place()), "empty-range", "a range runs from its lower to its higher end", "", "")
 	}
@@ -102,7 +108,7 @@ func (r *resolver) vary(s *syntax.Vary) {
 	case s.Draw != nil:
 		r.draw(s.Draw, let, what)
 	case s.Steps != nil:
-		ends, ok := r.like(let, what, s.From, s.To)
+		ends, ok := r.likeIn(let, what, nil, []syntax.Expr{s.From, s.To})
 		if ok && ends[0] == ends[1] {
 			r.errorAt(s.From.Place().To(s.To.Place()), "empty-range", "a range has two different ends", "", "")
 		} else if ok && s.Geometric && !(ends[0] > 0 && ends[1] > 0) {

@@ -66,8 +66,10 @@ func (r *resolver) override() map[string]syntax.Expr {
 	originals := map[string]syntax.Expr{}
 	names := known(r.opts.Set)
 	for _, name := range names {
-		file := diag.NewFile("--set "+name, "tautspan 1\nlet "+name+" = "+r.opts.Set[name]+"\n")
-		value := diag.Span{File: file, Start: len("tautspan 1\nlet "), End: len(file.Text()) - 1}
+		typed := "let " + name + " = " + r.opts.Set[name]
+		file := diag.NewFile("--set "+name, setHead+typed+"\n")
+		r.typed[file] = diag.NewFile("--set "+name, typed)
+		value := diag.Span{File: file, Start: len(setHead + "let "), End: len(setHead + typed)}
 		e, ok := r.lets[name]
 		if !ok {
 			if !r.incomplete {
@@ -96,6 +98,20 @@ func (r *resolver) override() map[string]syntax.Expr {
 		e.expr, e.doubt, e.given = let.Value, let.Doubt, true
 	}
 	return originals
+}
+
+// setHead makes a file of one let.
+const setHead = "tautspan 1\n"
+
+// asTyped moves a place in the file made of a value from outside to the place
+// in what was typed.
+func (r *resolver) asTyped(s diag.Span) diag.Span {
+	shown, ok := r.typed[s.File]
+	if !ok {
+		return s
+	}
+	end := len(shown.Text())
+	return diag.Span{File: shown, Start: min(max(s.Start-len(setHead), 0), end), End: min(max(s.End-len(setHead), 0), end)}
 }
 
 // checkOverrides holds an overriding value against the dimension of the let's own.

@@ -80,7 +80,7 @@ func Resolve(fsys fs.FS, name string, opts Options) Result {
 	r := &resolver{
 		fsys: fsys, opts: opts, tmpl: &scenario.Template{}, paths: Paths{},
 		top: map[string]symbol{}, lets: map[string]*letEntry{}, stocks: map[string]*stockEntry{}, lines: map[string]*lineEntry{},
-		elements: map[string][]element{}, watches: map[string]int{}, units: map[string]unitRead{}, tables: map[string]*csvFile{}, broken: map[string]bool{}, parts: map[string]string{},
+		elements: map[string][]element{}, watches: map[string]int{}, units: map[string]unitRead{}, tables: map[string]*csvFile{}, typed: map[*diag.File]*diag.File{}, broken: map[string]bool{}, parts: map[string]string{},
 	}
 	r.load(name)
 	r.declare()
@@ -92,6 +92,16 @@ func Resolve(fsys fs.FS, name string, opts Options) Result {
 
 // finish orders what was found.
 func (r *resolver) finish() Result {
+	for i := range r.diags {
+		d := &r.diags[i]
+		d.Span = r.asTyped(d.Span)
+		for j := range d.Related {
+			d.Related[j].Span = r.asTyped(d.Related[j].Span)
+		}
+	}
+	for p, s := range r.paths {
+		r.paths[p] = r.asTyped(s)
+	}
 	r.diags.Sort()
 	r.diags = r.diags.OnePerLine()
 	return Result{Template: r.tmpl, Diags: r.diags, Paths: r.paths, Sources: r.sources, Lets: r.letInfo()}
@@ -125,8 +135,9 @@ type resolver struct {
 
 	units  map[string]unitRead
 	tables map[string]*csvFile
-	depth  int  // of the expression being compiled
-	bent   bool // some stock has a bending stiffness
+	typed  map[*diag.File]*diag.File // files made of values from outside, and what was typed
+	depth  int                       // of the expression being compiled
+	bent   bool                      // some stock has a bending stiffness
 	// partsUnsure: a line could not be read whole, so that a part may exist unseen.
 	partsUnsure bool
 	searched    int  // words looked through for hints

@@ -1,7 +1,9 @@
 package resolve
 
 import (
+	"errors"
 	"math"
+	"reflect"
 	"strings"
 	"testing"
 	"testing/fstest"
@@ -510,6 +512,62 @@ func TestOverrides(t *testing.T) {
 	}
 }
 
+// A faulty value from outside is shown with its place in what was typed.
+func TestOverrideMessage(t *testing.T) {
+	res := Resolve(fstest.MapFS{"case.taut": {Data: []byte(example)}}, "case.taut", Options{Set: map[string]string{"pull": "300 KN"}})
+	e := res.Diags.Errors()
+	if len(e) != 1 || !matches(e[0], "--set pull:1:16 unknown-unit | perhaps  300 kN") {
+		t.Error(res.Diags.Text(0))
+	}
+}
+
+// The same line in other units is the same line. The factors are written out
+// with all their digits (NIST SP 811, appendix B), so that only roundings differ.
+func TestUnitsDoNotMatter(t *testing.T) {
+	swap := strings.NewReplacer(
+		"412 kN", "92.62128455708 kip", "4.8 kN*s/m", "328.9044761126 lbf*s/ft", "18.4 kg/m", "12.36422914257 lb/ft", "610 MN", "137133455.2908 lbf",
+		"12.0 m", "39.37007874016 ft", "148.5 m", "5846.456692913 in", "mass 18 kg", "mass 39.68320719328 lb", "4.2 MN/m", "287.7914165985 kip/ft",
+		"67 m", "73.27209098863 yd", "2 kN", "203.9432425956 kgf", "68 m", "0.04225324107214 mi", "40 s", "0.6666666666667 min", "5 ms", "5000 us", "0.6 N*s/m^2", "0.6 Pa*s")
+	text := swap.Replace(example)
+	a, b := bind(t, resolveText(t, example, Options{})), bind(t, resolveText(t, text, Options{}))
+	// Thirteen digits were written.
+	close := func(what string, x, y float64) {
+		if math.Abs(x-y) > 1e-12*math.Abs(x) {
+			t.Errorf("%s: %.15g and %.15g", what, x, y)
+		}
+	}
+	for i := range a.Lines[0].Segments {
+		x, y := a.Lines[0].Segments[i], b.Lines[0].Segments[i]
+		close("length", x.Length, y.Length)
+		close("mass", x.MassPerLength, y.MassPerLength)
+		close("tension", x.Tension, y.Tension)
+		close("axial", x.Axial, y.Axial)
+		close("loss", x.Viscous, y.Viscous)
+	}
+	close("clamp", a.Lines[0].Nodes[1].Mass, b.Lines[0].Nodes[1].Mass)
+	close("dashpot", a.Lines[0].Nodes[1].Dashpots[0].C, b.Lines[0].Nodes[1].Dashpots[0].C)
+	close("spring", a.Lines[0].Nodes[2].Spring, b.Lines[0].Nodes[2].Spring)
+	close("pluck", a.Plucks[0].Force, b.Plucks[0].Force)
+	close("place", a.Plucks[0].At.Offset, b.Plucks[0].At.Offset)
+	close("watch", a.Watches[0].At.Offset, b.Watches[0].At.Offset)
+	close("for", a.Run.For, b.Run.For)
+	close("every", a.Run.Every, b.Run.Every)
+}
+
+// The order of statements does not matter.
+func TestOrderOfStatements(t *testing.T) {
+	body := strings.TrimPrefix(example, "tautspan 1\n")
+	var parts []string
+	for _, p := range strings.Split(body, "\n\n") {
+		parts = append([]string{strings.Trim(p, "\n")}, parts...)
+	}
+	turned := "tautspan 1\n" + strings.Join(parts, "\n") + "\n"
+	a, b := bind(t, resolveText(t, example, Options{})), bind(t, resolveText(t, turned, Options{}))
+	if !reflect.DeepEqual(a.Model, b.Model) {
+		t.Errorf("turned round the scenario is another:\n%s", turned)
+	}
+}
+
 // Every path that binding can name has a place in the text.
 func TestPaths(t *testing.T) {
 	res := resolveText(t, example, Options{})
@@ -537,8 +595,8 @@ func TestBindErrorsHavePlaces(t *testing.T) {
 			t.Fatal(err)
 		}
 		_, err = res.Template.Bind(values)
-		p, ok := err.(*scenario.PathError)
-		if !ok {
+		var p *scenario.PathError
+		if !errors.As(err, &p) {
 			t.Fatalf("a negative %s binds: %v", res.Template.Lets[i].Name, err)
 		}
 		if span, ok := res.Paths.Find(p.Path); !ok || span.Text() != res.Template.Lets[i].Name {

@@ -1,6 +1,7 @@
 package resolve
 
 import (
+	"errors"
 	"fmt"
 	"math"
 	"strings"
@@ -41,9 +42,7 @@ func (r *resolver) unit(u *syntax.Unit, number string) (unit.Unit, bool) {
 	if !ok {
 		parsed, err := unit.Parse(u.Text)
 		read.unit = parsed
-		if err != nil {
-			read.err = err.(*unit.Error)
-		}
+		errors.As(err, &read.err)
 		r.units[u.Text] = read
 	}
 	if read.err == nil {

@@ -109,16 +109,21 @@ func (p *parser) expr(r *exprRule) Expr {
 	if len(r.Rest) == 0 {
 		return p.operand(r.First)
 	}
-	c := climber{p: p, first: r.First, rest: r.Rest}
+	c := climber{p: p, operands: append([]*operandRule{r.First}, r.Rest...)}
+	at := len(r.First.Tokens)
+	for _, x := range r.Rest {
+		c.ops = append(c.ops, r.Tokens[at])
+		at += 1 + len(x.Tokens)
+	}
 	return c.bind(1)
 }
 
 // climber makes a tree of a flat row of operands by precedence climbing.
 type climber struct {
-	p     *parser
-	first *operandRule
-	rest  []*tailRule
-	next  int // index in rest of the next operator
+	p        *parser
+	operands []*operandRule
+	ops      []lexer.Token // ops[i] stands between operands i and i+1
+	next     int           // the next operator
 }
 
 // strength says how tightly an operator binds.
@@ -139,14 +144,14 @@ const signStrength = 3
 // least. Powers group to the right, the others to the left. A sign takes the
 // powers of its operand with it.
 func (c *climber) bind(least int) Expr {
-	r := c.first
+	r := c.operands[c.next]
 	x := c.p.atom(r)
 	if r.Sign != nil {
 		x = c.p.sign(r.Sign, c.powers(x))
 	}
-	for c.next < len(c.rest) {
-		tail := c.rest[c.next]
-		s := strength(tail.Op.Value)
+	for c.next < len(c.ops) {
+		op := c.ops[c.next]
+		s := strength(op.Value)
 		if s < least {
 			break
 		}
@@ -155,8 +160,7 @@ func (c *climber) bind(least int) Expr {
 			continue
 		}
 		c.next++
-		c.first = tail.X
-		x = binary(c.p.word(tail.Op), x, c.bind(s+1))
+		x = binary(c.p.word(op), x, c.bind(s+1))
 	}
 	return x
 }
@@ -164,20 +168,19 @@ func (c *climber) bind(least int) Expr {
 // powers raises x to the row of powers that follows, from the right.
 func (c *climber) powers(x Expr) Expr {
 	lo := c.next
-	for c.next < len(c.rest) && strength(c.rest[c.next].Op.Value) > signStrength {
+	for c.next < len(c.ops) && strength(c.ops[c.next].Value) > signStrength {
 		c.next++
 	}
-	row := c.rest[lo:c.next]
-	if len(row) == 0 {
+	hi := c.next
+	if lo == hi {
 		return x
 	}
-	y := c.p.operand(row[len(row)-1].X)
-	for i := len(row) - 1; i > 0; i-- {
-		base := row[i-1].X
-		y = binary(c.p.word(row[i].Op), c.p.atom(base), y)
-		y = c.p.sign(base.Sign, y)
+	y := c.p.operand(c.operands[hi])
+	for i := hi - 1; i > lo; i-- {
+		base := c.operands[i]
+		y = c.p.sign(base.Sign, binary(c.p.word(c.ops[i]), c.p.atom(base), y))
 	}
-	return binary(c.p.word(row[0].Op), x, y)
+	return binary(c.p.word(c.ops[lo]), x, y)
 }
 
 func (p *parser) sign(t *lexer.Token, x Expr) Expr {

@@ -66,6 +66,7 @@ func (p *parser) unknownWord(t Token, c Context, words []string) {
 			if other == Top {
 				found = "this stands outside of braces"
 			}
+			words = nil // a word of the language is no slip of the pen
 			break
 		}
 	}
@@ -189,7 +190,7 @@ func (p *parser) explain(k chunk, c Context, err error) {
 		return
 	}
 	i, message := failurePlace(tokens, err)
-	if p.slip(k, c, tokens, i, message) {
+	if p.slip(c, tokens, i, message) {
 		return
 	}
 	d := diag.Diagnostic{Code: "syntax", Hint: usage(c, word)}
@@ -217,7 +218,7 @@ func (p *parser) explain(k chunk, c Context, err error) {
 }
 
 // slip recognises a likely slip at token i and reports it.
-func (p *parser) slip(k chunk, c Context, tokens []Token, i int, message string) bool {
+func (p *parser) slip(c Context, tokens []Token, i int, message string) bool {
 	if t, ok := unmatched(tokens); ok {
 		if t.is(")") || t.is("]") {
 			p.report(t, "stray-bracket", "this bracket closes nothing", "", "")

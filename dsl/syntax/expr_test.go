@@ -202,3 +202,22 @@ func TestSharedUnit(t *testing.T) {
 		}
 	}
 }
+
+// TestDefinition: participle sees the scanner's tokens, comments left out.
+func TestDefinition(t *testing.T) {
+	const text = "let a = max(3 kN, b) # why\nlet c = [ \"x\" ]\n"
+	got, err := rootParser().Lex("d.taut", strings.NewReader(text))
+	if err != nil {
+		t.Fatal(err)
+	}
+	want, _ := Scan(diag.NewFile("d.taut", text))
+	want = withoutRemarks(want)
+	if len(got) != len(want)+1 || !got[len(got)-1].EOF() {
+		t.Fatalf("%d tokens, want %d and the end", len(got), len(want))
+	}
+	for i, w := range want {
+		if int(got[i].Type) != int(w.Kind) || got[i].Value != w.Text || got[i].Pos.Offset != w.Start {
+			t.Errorf("token %d is %v, want %v", i, got[i], w)
+		}
+	}
+}

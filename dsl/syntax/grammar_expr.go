@@ -7,14 +7,9 @@ import "github.com/alecthomas/participle/v2/lexer"
 // part of the parsing shallow: it costs most of the time.
 type exprRule struct {
 	mark
-	First *operandRule `parser:"@@"`
-	Rest  []*tailRule  `parser:"@@*"`
-}
-
-type tailRule struct {
-	mark
-	Op lexer.Token  `parser:"( @Sign | @Times )"`
-	X  *operandRule `parser:"@@"`
+	First *operandRule   `parser:"@@"`
+	Ops   []string       `parser:"( @( Sign | Times )"`
+	Rest  []*operandRule `parser:"  @@ )*"`
 }
 
 type operandRule struct {

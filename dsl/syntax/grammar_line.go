@@ -64,7 +64,7 @@ type jointRule struct {
 // better words than a grammar has.
 type propertyTail struct {
 	mark
-	Comma    bool          `parser:"@','?"`
+	Comma    bool          `parser:"(?! EOF) @','?"`
 	Property *propertyRule `parser:"@@"`
 }
 
@@ -78,7 +78,7 @@ type segmentRule struct {
 
 type segmentTail struct {
 	mark
-	Comma    bool          `parser:"@','?"`
+	Comma    bool          `parser:"(?! EOF) @','?"`
 	Tension  *exprRule     `parser:"( 'tension' @@"`
 	Loss     *lossRule     `parser:"| @@"`
 	Every    *everyRule    `parser:"| @@"`

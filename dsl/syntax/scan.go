@@ -56,9 +56,7 @@ func (s *scanner) run() {
 		case c == ' ' || c == '\t' || c == '\r':
 			s.at++
 		case c == '#':
-			end := s.lineEnd()
-			s.emit(Remark, len(strings.TrimRight(s.src[s.at:end], " \t\r")))
-			s.at = end
+			s.remark()
 		case c == '"':
 			s.text()
 		case c >= '0' && c <= '9':
@@ -98,6 +96,18 @@ func (s *scanner) touching() (Token, bool) {
 		return s.tokens[n-1], true
 	}
 	return Token{}, false
+}
+
+// remark scans a comment up to the end of its line.
+func (s *scanner) remark() {
+	end := s.lineEnd()
+	n := len(strings.TrimRight(s.src[s.at:end], " \t\r"))
+	if !utf8.ValidString(s.src[s.at : s.at+n]) {
+		span := diag.Span{File: s.file, Start: s.at, End: s.at + n}
+		s.diags.Add(diag.Diagnostic{Code: "bad-bytes", Span: span, Summary: "this comment is not UTF-8"})
+	}
+	s.emit(Remark, n)
+	s.at = end
 }
 
 // text scans a text in double quotes; it ends on its line and has no escapes.

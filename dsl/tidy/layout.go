@@ -89,8 +89,8 @@ func pad(rows []*row) {
 	}
 }
 
-// print writes the rows with their empty lines.
-func print(rows []row) string {
+// render writes the rows with their empty lines.
+func render(rows []row) string {
 	var b strings.Builder
 	end, opened := 0, true
 	for _, r := range rows {

@@ -24,7 +24,7 @@ func Tree(tree *syntax.Tree) string {
 	w.statements(w.out.Pieces, tree.Statements, 0)
 	w.remarksBefore(len(w.out.Tokens), 0)
 	align(w.rows)
-	return print(w.rows)
+	return render(w.rows)
 }
 
 // row is one statement's head, one closing brace or one comment line.

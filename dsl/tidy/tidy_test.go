@@ -2,6 +2,7 @@ package tidy
 
 import (
 	"flag"
+	"math/rand/v2"
 	"os"
 	"path/filepath"
 	"reflect"
@@ -118,4 +119,113 @@ func FuzzTidy(f *testing.F) {
 			sound(t, text, got)
 		}
 	})
+}
+
+// TestBlanksDoNotMatter: whatever the number of blanks between tokens, before
+// statements and at the ends of lines, the layout comes out the same.
+func TestBlanksDoNotMatter(t *testing.T) {
+	for _, golden := range []string{"testdata/footbridge.golden", "testdata/statements.golden"} {
+		want, err := os.ReadFile(golden)
+		if err != nil {
+			t.Fatal(err)
+		}
+		text := string(want)
+		tokens, _ := syntax.Scan(diag.NewFile("x", text))
+		random := rand.New(rand.NewPCG(1, 2))
+		for range 50 {
+			var b strings.Builder
+			end := 0
+			for _, k := range tokens {
+				for _, c := range text[end:k.Start] {
+					switch {
+					case c == '\n':
+						b.WriteString(strings.Repeat(" ", random.IntN(3)) + "\n")
+					case random.IntN(2) == 0:
+						b.WriteString(strings.Repeat("\t ", random.IntN(2)) + " ")
+					}
+				}
+				// Where blanks stood, one must stay: it may tell tokens apart.
+				if k.Start > end && !strings.Contains(text[end:k.Start], "\n") {
+					b.WriteByte(' ')
+				}
+				b.WriteString(k.Text)
+				end = k.End
+			}
+			got, list := Source(diag.NewFile("y", b.String()))
+			if len(list) > 0 || got != text {
+				t.Fatalf("%s: from\n%s\ngot\n%s%s", golden, b.String(), got, list.Text(0))
+			}
+		}
+	}
+}
+
+// TestTidySamples lays out every right sample of the grammar.
+func TestTidySamples(t *testing.T) {
+	data, err := os.ReadFile("../testdata/grammar-samples.txt")
+	if err != nil {
+		t.Fatal(err)
+	}
+	frames, count := map[string]string{}, 0
+	for _, section := range strings.Split("\n"+string(data), "\n== ")[1:] {
+		head, body, _ := strings.Cut(section, "\n")
+		kind, name, _ := strings.Cut(head, " ")
+		if kind == "frame" {
+			frames[name] = body
+		}
+		if kind != "production" {
+			continue
+		}
+		_, body, _ = strings.Cut(body, "frame ")
+		frame, body, _ := strings.Cut(body, "\n")
+		right, _, _ := strings.Cut(body, "\nwrong")
+		right = strings.ReplaceAll(strings.TrimPrefix(right, "right\n"), "| ", "")
+		var b strings.Builder
+		for _, l := range strings.SplitAfter(frames[frame], "\n") {
+			if strings.TrimSpace(l) == "%%" {
+				l = right + "\n"
+			}
+			b.WriteString(l)
+		}
+		got, list := Source(diag.NewFile("s.taut", b.String()))
+		if len(list) > 0 {
+			t.Errorf("%s: %s", name, list.Text(0))
+		}
+		sound(t, b.String(), got)
+		count++
+	}
+	if count < 70 {
+		t.Errorf("only %d samples", count)
+	}
+}
+
+// TestLayoutRules: what the rules of the package's comment say, case by case.
+func TestLayoutRules(t *testing.T) {
+	for name, c := range map[string]struct{ text, want string }{
+		"power behind a unit": {"let a = 3 m ^ 2 + 3 m^2 + x ^ - 2", "let a = 3 m ^ 2 + 3 m^2 + x^-2"},
+		"signs":               {"let a = - x - - y * ( + 2 )", "let a = -x - -y * (+2)"},
+		"ranges":              {"require damping( 1 .. 4 ) within 1 %..2 %", "require damping(1..4) within 1 % .. 2 %"},
+		"doubt":               {"let a=3 N+-2 %of it", "let a = 3 N +- 2 % of it"},
+		"places":              {"excite e pluck at upper ( reach+2 m )by 3 mm", "excite e pluck at upper (reach + 2 m) by 3 mm"},
+		"paths":               {`let a = hanger[ ROW.mark ].upper + ROW."L [m]"`, `let a = hanger[ROW.mark].upper + ROW."L [m]"`},
+		"columns":             {`let a = table( "f.csv","t"unit s )`, `let a = table("f.csv", "t" unit s)`},
+		"empty block":         {"run { }", "run {\n}"},
+		"block in one line":   {"run { for 3 s }  # x", "run {\n    for  3 s\n}  # x"},
+		"empty lines":         {"\n\n\nlet a = 1\n\n\n\nlet b = 2\nrun {\n\n\n for 3 s\n\n}\n\n\n", "\nlet a = 1\n\nlet b = 2\nrun {\n    for  3 s\n}"},
+		"watches apart":       {"watch a at b force\nlet a = 1\nwatch long at c force", "watch a at b  force\nlet a = 1\nwatch long at c  force"},
+		"texts":               {"require a < 1 \"x\"\nrequire abc < 1 clause \"y\"", "require a < 1     \"x\"\nrequire abc < 1   clause \"y\""},
+		"comment, continued":  {"collect a , # one\n# two\nb", "collect a,  # one\n    # two\n    b"},
+	} {
+		got, list := Source(diag.NewFile("r.taut", "tautspan 1\n"+c.text))
+		if want := "tautspan 1\n" + c.want + "\n"; len(list) > 0 || got != want {
+			t.Errorf("%s: got\n%s%s", name, got, list.Text(0))
+		}
+	}
+}
+
+// TestBrokenTextStays: a text with errors comes back as it was.
+func TestBrokenTextStays(t *testing.T) {
+	text := "tautspan 1\nlet  a 3\n"
+	if got, list := Source(diag.NewFile("b.taut", text)); got != text || !list.HasErrors() {
+		t.Errorf("%q %v", got, list)
+	}
 }

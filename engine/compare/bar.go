@@ -22,9 +22,16 @@ const (
 // size of the change coarse to middle (e1) and middle to fine (e2), with step
 // ratio r between levels:
 //
-//	p = log(e1/e2)/log(r), limited to [0.5, theory]
-//	U = F e2/(r^p - 1),  F = 1.25 if |p - theory| < 0.6, else 3
-//	U = 3 max(e1, e2) where p < 0.5 before it is limited: not converging
+//	p = log(e1/e2)/log(r)
+//	F = 1.25 if |p - theory| < 0.6, else 3
+//	U = F e2/(r^p - 1)                 for 0.5 <= p <= theory
+//	U = F e1 r^-theory/(r^theory - 1)  for p > theory
+//	U = 3 max(e1, e2)                  for p < 0.5: not converging
+//
+// Changes that fall faster than theory are not believed: the last one is then
+// taken as theory lets it follow from the one before. Where a kink falls
+// between cells its place in its cell, and with it the error, differs from level
+// to level, and one change is now and then small by chance.
 //
 // A solver whose theory order is 0 converges faster than any order, where
 // extrapolation has no meaning: U = e2 if e2 < e1/2, else 3 e2.
@@ -42,20 +49,19 @@ func NewBar(e1, e2, ratio, theory float64) Bar {
 		b.NotConverging = e2 > e1
 		return b
 	}
-	if e2 == 0 {
-		if e1 == 0 {
-			return Bar{Order: math.NaN()}
-		}
-		return Bar{Order: theory} // exact from the middle level on
+	if e1 == 0 && e2 == 0 {
+		return Bar{Order: math.NaN()}
 	}
 	p := math.Log(e1/e2) / math.Log(ratio)
 	if !(p >= orderLeast) { // also where e1 is 0
 		return Bar{Order: orderLeast, Bound: 3 * math.Max(e1, e2), NotConverging: true}
 	}
-	p = math.Min(p, math.Max(theory, orderLeast))
 	factor := float64(safetyUnsure)
 	if math.Abs(p-theory) < orderNear {
 		factor = safetySure
+	}
+	if theory = math.Max(theory, orderLeast); p > theory {
+		p, e2 = theory, e1*math.Pow(ratio, -theory)
 	}
 	return Bar{Order: p, Bound: factor * e2 / (math.Pow(ratio, p) - 1)}
 }

@@ -48,7 +48,8 @@ func TestBarRules(t *testing.T) {
 	}{
 		// By hand from the rules in the comment of NewBar.
 		{"order of theory", 4, 1, 2, 2, 2, 1.25 / 3, false},
-		{"faster than theory is not believed", 16, 1, 2, 2, 2, 1.25 / 3, false},
+		{"a little faster than theory", 5, 1, 2, 2, 2, 1.25 * 5 / 4 / 3, false},
+		{"much faster than theory is not believed", 16, 1, 2, 2, 2, 3 * 4.0 / 3, false},
 		{"a little below", 3, 1, 2, 2, math.Log2(3), 1.25 / 2, false},
 		{"far below", 2, 1, 2, 2, 1, 3, false},
 		{"not converging", 1.2, 1, 2, 2, 0.5, 3.6, true},
@@ -58,7 +59,7 @@ func TestBarRules(t *testing.T) {
 		{"spectral slow", 1.5, 1, 1.5, 0, math.NaN(), 3, false},
 		{"spectral growing", 1, 2, 1.5, 0, math.NaN(), 6, true},
 		{"exact", 0, 0, 2, 2, math.NaN(), 0, false},
-		{"exact from the middle", 1, 0, 2, 2, 2, 0, false},
+		{"no last change is not believed", 1, 0, 2, 2, 2, 3 * 0.25 / 3, false},
 	} {
 		b := NewBar(c.e1, c.e2, c.ratio, c.theory)
 		if !(b.Order == c.order || math.IsNaN(b.Order) && math.IsNaN(c.order) || math.Abs(b.Order-c.order) < 1e-14) ||

@@ -123,6 +123,11 @@ type Pair struct {
 	Difference float64 // in the observable's unit
 	Ratio      float64 // to the sum of the two bars
 	Resolving  float64 // the sum of the two bars as a share of the scale
+	// Unbacked says that the two records as a whole do not differ beyond their
+	// bars. A single figure that lies further apart is then not held against a
+	// solver: figures hang on few rows, whose changes from level to level may be
+	// small by chance, while a wrong solver is wrong in more than one row.
+	Unbacked bool
 }
 
 // Interval is a value that lies between Low and High; NaN as value where there

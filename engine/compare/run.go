@@ -124,7 +124,7 @@ func newRunner(m *mesh.Mesh, solvers []solver.Solver, options Options) *runner {
 func (r *runner) memoryLeft() int64 {
 	kept := int64(0)
 	for _, v := range r.voices {
-		kept += int64(min(len(v.runs), 2))
+		kept += int64(min(len(v.runs), levels))
 	}
 	return r.options.LimitMemory - kept*seriesBytes(r.mesh)
 }
@@ -245,7 +245,7 @@ func (r *runner) wants() map[int]int {
 	for c := range judged {
 		for k := range judged[c] {
 			o := &judged[c][k]
-			r.confirm(o, doubtful)
+			r.confirm(o, judged[c][Record].Pairs, doubtful)
 			if o.Governed && o.Verdict == Unsettled {
 				r.narrow(o, wants)
 			}
@@ -283,19 +283,19 @@ func (r *runner) wants() map[int]int {
 // the difference stands: once for every difference, and once more.
 const confirmMost = 2
 
-// plainDifference is the ratio of a difference to its bars beyond which no bar
-// was so wrong in any trial that refinement could mend it; such a difference
-// stands at once. Chosen: five times what counts as a difference.
+// plainDifference is the ratio of a difference of records to their bars beyond
+// which no bar was so wrong in any trial that refinement could mend it; such a
+// difference stands at once. Chosen: five times what counts as a difference.
 const plainDifference = 5 * ratioDiffer
 
 // confirm marks both voices of a pair that does not agree: they are refined once
 // more before anything is said about them.
-func (r *runner) confirm(o *Observable, doubtful map[int]bool) {
+func (r *runner) confirm(o *Observable, records []Pair, doubtful map[int]bool) {
 	if !o.Governed && o.Kind != Record {
 		return
 	}
-	for _, p := range o.Pairs {
-		if p.Ratio <= ratioAgree || p.Ratio > plainDifference {
+	for k, p := range o.Pairs {
+		if p.Ratio <= ratioAgree || records[k].Ratio > plainDifference {
 			continue
 		}
 		for _, i := range []int{p.A, p.B} {

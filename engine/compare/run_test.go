@@ -429,8 +429,8 @@ func TestEnvelope(t *testing.T) {
 		for i := range d {
 			d[i] = random.NormFloat64()
 		}
-		w := halfSwing(d, make([]float64, len(d)))
-		got := envelope(d, 2)
+		w := random.IntN(9)
+		got := envelope(d, w, 2)
 		for i := range d {
 			want := 0.0
 			for j := max(0, i-w); j <= min(len(d)-1, i+w); j++ {

@@ -13,6 +13,15 @@ const (
 	ratioDiffer = 2
 )
 
+// differs tells whether a pair's difference is a finding.
+func (p *Pair) differs() bool { return p.Ratio > ratioDiffer && !p.Unbacked }
+
+// unbacked tells whether a figure's ratio stands without its record: the records
+// agree, or do not differ and the figure is not plainly apart either.
+func unbacked(figure, record float64) bool {
+	return record <= ratioAgree || record <= ratioDiffer && figure <= plainDifference
+}
+
 // ruling is what the pairs of one observable say.
 type ruling struct {
 	verdict   Verdict
@@ -35,7 +44,7 @@ func rule(n int, pairs []Pair, agree, alone float64) ruling {
 	differing, open := 0, false
 	for _, p := range pairs {
 		switch {
-		case p.Ratio > ratioDiffer:
+		case p.differs():
 			differing++
 		case p.Ratio > ratioAgree && (1+p.Ratio)*p.Resolving > agree:
 			open = true
@@ -70,7 +79,7 @@ func oddOneOut(n int, pairs []Pair, differing int) int {
 	}
 	in := map[int]int{}
 	for _, p := range pairs {
-		if p.Ratio > ratioDiffer {
+		if p.differs() {
 			in[p.A]++
 			in[p.B]++
 		}
@@ -106,14 +115,14 @@ func (r *runner) judge() [][]Observable {
 	out := make([][]Observable, len(r.mesh.Channels))
 	for c := range out {
 		out[c] = make([]Observable, kindCount)
-		for k := Kind(0); k < kindCount; k++ {
-			out[c][k] = r.observable(c, k, s)
+		for k := Kind(0); k < kindCount; k++ { // Record is the first
+			out[c][k] = r.observable(c, k, s, out[c][Record].Pairs)
 		}
 	}
 	return out
 }
 
-func (r *runner) observable(c int, k Kind, s scales) Observable {
+func (r *runner) observable(c int, k Kind, s scales, records []Pair) Observable {
 	o := Observable{Kind: k, Scale: s.of(c, k, r.voices), Governed: k.governed() || r.asked[askedKind{c, k}]}
 	for _, v := range r.voices {
 		value, bar := math.NaN(), Bar{Order: math.NaN(), Bound: math.NaN()}
@@ -122,7 +131,7 @@ func (r *runner) observable(c int, k Kind, s scales) Observable {
 		}
 		o.Values, o.Bars, o.Orders = append(o.Values, value), append(o.Bars, bar.Bound), append(o.Orders, bar.Order)
 	}
-	r.compare(&o, func(a, b int) float64 {
+	r.compare(&o, records, func(a, b int) float64 {
 		if k == Record {
 			return distance(r.voices[a].series(c), r.voices[b].series(c))
 		}
@@ -131,8 +140,9 @@ func (r *runner) observable(c int, k Kind, s scales) Observable {
 	return o
 }
 
-// compare fills in the pairs, the verdict and the reported value.
-func (r *runner) compare(o *Observable, difference func(a, b int) float64) {
+// compare fills in the pairs, the verdict and the reported value. records are
+// the pairs of the whole records; nil where there are none to go by.
+func (r *runner) compare(o *Observable, records []Pair, difference func(a, b int) float64) {
 	n, single := 0, 0.0
 	for a := range r.voices {
 		if !r.voices[a].usable() {
@@ -147,6 +157,9 @@ func (r *runner) compare(o *Observable, difference func(a, b int) float64) {
 			p := Pair{A: a, B: b, Difference: difference(a, b), Resolving: share(o.Bars[a]+o.Bars[b], o.Scale)}
 			if p.Difference > 0 {
 				p.Ratio = p.Difference / (o.Bars[a] + o.Bars[b])
+			}
+			if at := len(o.Pairs); at < len(records) {
+				p.Unbacked = unbacked(p.Ratio, records[at].Ratio)
 			}
 			o.Pairs = append(o.Pairs, p)
 		}
@@ -253,6 +266,6 @@ func (r *runner) energyLeft() Observable {
 		}
 		o.Values, o.Bars, o.Orders = append(o.Values, value), append(o.Bars, bar.Bound), append(o.Orders, bar.Order)
 	}
-	r.compare(&o, func(a, b int) float64 { return math.Abs(o.Values[a] - o.Values[b]) })
+	r.compare(&o, nil, func(a, b int) float64 { return math.Abs(o.Values[a] - o.Values[b]) })
 	return o
 }

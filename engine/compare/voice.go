@@ -9,7 +9,7 @@ import (
 	"github.com/tautspan/tautspan/engine/solver"
 )
 
-// levelRun is one solution. Its series are dropped when two finer ones exist.
+// levelRun is one solution. Its series are dropped when three finer ones exist.
 type levelRun struct {
 	level   int
 	result  *solver.Result
@@ -69,8 +69,8 @@ func (v *voice) take(m *mesh.Mesh, level int, r *solver.Result, err error) {
 		}
 	}
 	v.runs = append(v.runs, run)
-	if n := len(v.runs); n > 2 {
-		v.runs[n-3].result.Series = nil
+	if n := len(v.runs); n > levels {
+		v.runs[n-levels-1].result.Series = nil
 	}
 }
 
@@ -117,9 +117,9 @@ func (v *voice) bar(c int, k Kind, s scales, all []*voice) Bar {
 		}
 		switch k {
 		case Final:
-			floor = math.Max(floor, v.lastBand(c, record))
+			floor = math.Max(floor, v.lastBand(c))
 		case Peak, Highest, Lowest:
-			floor = math.Max(floor, v.localBand(c, k, record))
+			floor = math.Max(floor, v.localBand(c, k))
 		}
 		b.Bound = math.Max(b.Bound, floor)
 	}
@@ -127,43 +127,63 @@ func (v *voice) bar(c int, k Kind, s scales, all []*voice) Bar {
 	return b
 }
 
-// band is the pointwise error band of spot k of channel c: the change from the
-// last level but one, taken as large as it is anywhere within half a swing of
-// the change itself, and scaled as the bar of the record.
-func (v *voice) band(c, k int) []float64 {
+// local gives, for a spot of a channel, the change from level to level row by
+// row: that to the finest level, or where it is more that to the level before,
+// as much smaller as the record's changes fell. The latter keeps a row from
+// looking exact by chance where a kink falls between cells, whose place in its
+// cell differs from level to level.
+func (v *voice) local(c, spot int) func(row int) float64 {
+	n := len(v.runs)
+	e1, e2 := v.changes(c, Record)
+	fall := 1.0
+	if e1 > 0 {
+		fall = math.Min(1, e2/e1)
+	}
+	fine, middle, coarse := v.runs[n-1].result.Series[c][spot], v.runs[n-2].result.Series[c][spot], v.runs[n-3].result.Series[c][spot]
+	return func(i int) float64 {
+		return math.Max(math.Abs(fine[i]-middle[i]), fall*math.Abs(middle[i]-coarse[i]))
+	}
+}
+
+// localFactor turns a change from level to level into an error bar: as the
+// record's bar is to the record's change.
+func (v *voice) localFactor(c int) float64 {
 	order, ratio := v.theory()
 	e1, e2 := v.changes(c, Record)
 	if e2 == 0 {
-		return make([]float64, len(v.series(c)[k]))
+		return 0
 	}
-	factor := NewBar(e1, e2, ratio, order).Bound / e2
-	fine, coarse := v.series(c)[k], v.runs[len(v.runs)-2].result.Series[c][k]
+	return NewBar(e1, e2, ratio, order).Bound / e2
+}
+
+// band is the pointwise error band of spot k of channel c: the change from
+// level to level, taken as large as it is anywhere within half a swing of the
+// change itself, and scaled as the bar of the record.
+func (v *voice) band(c, k int) []float64 {
+	fine, middle := v.series(c)[k], v.runs[len(v.runs)-2].result.Series[c][k]
+	change := v.local(c, k)
 	d := make([]float64, len(fine))
 	for i := range d {
-		d[i] = fine[i] - coarse[i]
+		d[i] = change(i)
 	}
-	return envelope(d, factor)
+	return envelope(d, halfSwing(fine, middle), v.localFactor(c))
 }
 
 // lastBand is the band at the last row, for the final value, whose own changes
 // cross zero.
-func (v *voice) lastBand(c int, record Bar) float64 {
-	_, e2 := v.changes(c, Record)
-	if e2 == 0 {
-		return 0
-	}
+func (v *voice) lastBand(c int) float64 {
 	sum := 0.0
-	coarse := v.runs[len(v.runs)-2].result.Series[c]
+	middle := v.runs[len(v.runs)-2].result.Series[c]
 	for k, fine := range v.series(c) {
 		n := len(fine)
-		reach := min(n, 2*halfSwing(fine, coarse[k])+1)
-		most := 0.0
+		reach := min(n, halfSwing(fine, middle[k])+1)
+		change, most := v.local(c, k), 0.0
 		for i := n - reach; i < n; i++ {
-			most = math.Max(most, math.Abs(fine[i]-coarse[k][i]))
+			most = math.Max(most, change(i))
 		}
 		sum += most * most
 	}
-	return record.Bound / e2 * math.Sqrt(sum/float64(len(coarse)))
+	return v.localFactor(c) * math.Sqrt(sum/float64(len(middle)))
 }
 
 // localRows is how many rows on either side of a peak its own change is looked
@@ -173,19 +193,14 @@ const localRows = 2
 
 // localBand is the change at and beside the row of a peak, highest or lowest
 // value, scaled as the bar of the record.
-func (v *voice) localBand(c int, k Kind, record Bar) float64 {
-	_, e2 := v.changes(c, Record)
-	if e2 == 0 {
-		return 0
-	}
+func (v *voice) localBand(c int, k Kind) float64 {
 	f := &v.top().figures[c]
-	spot, row := f.spot[k], f.at[k]
-	fine, coarse := v.series(c)[spot], v.runs[len(v.runs)-2].result.Series[c][spot]
-	most := 0.0
-	for i := max(0, row-localRows); i <= min(len(fine)-1, row+localRows); i++ {
-		most = math.Max(most, math.Abs(fine[i]-coarse[i]))
+	row := f.at[k]
+	change, most := v.local(c, f.spot[k]), 0.0
+	for i := max(0, row-localRows); i <= min(len(v.series(c)[f.spot[k]])-1, row+localRows); i++ {
+		most = math.Max(most, change(i))
 	}
-	return record.Bound / e2 * most
+	return v.localFactor(c) * most
 }
 
 // halfSwing is half the mean distance, in rows, between changes of sign of a-b,
@@ -200,12 +215,10 @@ func halfSwing(a, b []float64) int {
 	return min(max(1, len(a)/(2*(signs+1))), max(1, len(a)/20))
 }
 
-// envelope is factor times the largest |d| within half a swing on either side.
-func envelope(d []float64, factor float64) []float64 {
+// envelope is factor times the largest |d| within w rows on either side.
+func envelope(d []float64, w int, factor float64) []float64 {
 	n := len(d)
-	zero := make([]float64, n)
-	w := halfSwing(d, zero)
-	out := zero
+	out := make([]float64, n)
 	queue := make([]int, 0, 2*w+2) // rows of falling |d| inside the window
 	for i := 0; i < n+w; i++ {
 		if i < n {

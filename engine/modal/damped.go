@@ -28,7 +28,7 @@ func (w *network) dampedModes(want Want) (found, error) {
 				l.offer(z)
 			}
 		}
-		edge, left, proved := l.prove(top, gamma)
+		edge, left, short, proved := l.prove(top, gamma)
 		osc, re := l.within(edge, left)
 		enough := len(osc) >= most || (limit > 0 && edge >= limit)
 		if !enough && try < 4 && len(w.elements) > 0 {
@@ -36,7 +36,7 @@ func (w *network) dampedModes(want Want) (found, error) {
 			continue
 		}
 		f.osc, f.real, f.complete = osc, re, edge
-		if proved && left < 10*edge {
+		if proved && short {
 			f.notes = append(f.notes, fmt.Sprintf("the list of modes of %s is proved complete for decays below %.4g 1/s only.", w.name(), left))
 		}
 		if !proved {
@@ -56,18 +56,14 @@ func (w *network) top(most int, limit float64) (top, gamma float64, err error) {
 	for _, el := range w.elements {
 		gamma = math.Max(gamma, el.c/(2*el.m))
 	}
+	if len(w.elements) == 0 {
+		return w.fastest(), 0, nil
+	}
 	c := newCounter(w)
 	spare := len(w.brackets) + 1
 	for _, d := range w.dashpot {
 		if d > 0 {
 			spare++
-		}
-	}
-	if len(w.elements) == 0 {
-		spare = 0
-		most = min(most, w.massive()-w.rigid)
-		if most <= 0 {
-			return math.Max(limit, 1), gamma, nil
 		}
 	}
 	slow := 0
@@ -95,13 +91,39 @@ func (w *network) top(most int, limit float64) (top, gamma float64, err error) {
 	return top, gamma, nil
 }
 
+// fastest bounds the damped frequency, rad/s, of a group without pieces from
+// above: no mass swings faster than the lightest would on all springs at once,
+// their far ends moving as far against it; dashpots only slow it down or make
+// springs act together.
+func (w *network) fastest() float64 {
+	k, least := 0.0, math.Inf(1)
+	for _, v := range w.spring {
+		k += v
+	}
+	for _, l := range w.links {
+		k += l.k
+	}
+	for _, b := range w.brackets {
+		k += b.k
+	}
+	for _, m := range w.mass {
+		if m > 0 {
+			least = math.Min(least, m)
+		}
+	}
+	if k == 0 || math.IsInf(least, 1) {
+		return 1 // nothing swings; any frequency will do
+	}
+	return 1.1 * math.Sqrt(2*k/least)
+}
+
 // prove completes the list in the region up to a damped frequency of about top,
 // an edge that keeps away from the roots, and says how far left it reaches. That
 // is so far that the shortest piece has died out over one way (12 travel times'
 // worth of decay), or a thousand times its height. Where a dashpot matches its
 // line Delta vanishes to rounding that far left; then the region ends where the
 // longest piece still tells.
-func (l *list) prove(top, gamma float64) (edge, left float64, proved bool) {
+func (l *list) prove(top, gamma float64) (edge, left float64, short, proved bool) {
 	w := l.e.w
 	right := 0.1 * top
 	left = math.Max(10*top, 4*gamma)
@@ -116,16 +138,17 @@ func (l *list) prove(top, gamma float64) (edge, left float64, proved bool) {
 			}
 		}
 	}
-	for _, left = range lefts {
+	for i := range lefts {
+		left = lefts[i]
 		edge = l.edge(top)
 		r := region{x0: -left, x1: right, y0: 0, y1: edge}
 		l.work = 400 + 4*int(edge*w.travel) // cuts; a network needs some tens, or a few a root
 		if l.complete(r) {
-			return edge, left, true
+			return edge, left, i > 1, true
 		}
 		top *= 1.01
 	}
-	return edge, left, false
+	return edge, left, false, false
 }
 
 // edge is the middle of the widest gap between the damped frequencies known just

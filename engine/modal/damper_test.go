@@ -265,3 +265,26 @@ func TestBracketLimits(t *testing.T) {
 		}
 	}
 }
+
+// A mass hung on a dashpot behind a spring, without any line: the bracket as a
+// place without mass, and as a bracket, obey M s^2 (K + sC) + K s C = 0.
+func TestMassBehindBracket(t *testing.T) {
+	const m, k, c = 2.0, 50.0, 30.0
+	hung := &build{}
+	mass := hung.node(mesh.Node{Line: -1, Mass: m})
+	place := hung.node(mesh.Node{Line: -1, Spring: k})
+	hung.link(mass, place, 0, c)
+	bracket := &build{}
+	bracket.node(mesh.Node{Line: -1, Mass: m, Brackets: []mesh.Maxwell{{K: k, C: c}}})
+	for name, b := range map[string]*build{"place": hung, "bracket": bracket} {
+		res := find(t, &b.m, Want{})
+		if len(res.Modes) != 1 || res.CompleteBelow == 0 {
+			t.Fatalf("%s: %d modes, notes %v", name, len(res.Modes), res.Notes)
+		}
+		s := res.Modes[0].S
+		f, f1 := m*s*(k+s*c)+k*c, m*k+2*m*c*s
+		if e := cmplx.Abs(f / f1 / s); e > 1e-13 {
+			t.Errorf("%s: %v off by %g", name, s, e)
+		}
+	}
+}

@@ -3,6 +3,8 @@ package modal
 import (
 	"fmt"
 	"math"
+	"slices"
+	"sort"
 
 	"github.com/tautspan/tautspan/engine/mesh"
 )
@@ -27,6 +29,7 @@ type network struct {
 	rigid   int // motions without restoring force
 	zeros   int // order of the zero of Delta at s = 0
 	notes   []string
+	order   []int // of the unknowns, for a narrow band
 }
 
 // element is a uniform piece between unknowns i and j; -1 is held.
@@ -151,6 +154,7 @@ func newNetwork(m *mesh.Mesh, in func(node int) bool) *network {
 	}
 	w.freedom()
 	w.matched()
+	w.arrange()
 	return w
 }
 
@@ -270,4 +274,65 @@ func (w *network) name() string {
 		return "what hangs together at " + w.m.Nodes[w.nodes[0]].Name
 	}
 	return "the network"
+}
+
+// unknowns is the largest number of unknowns: nodes, far ends of brackets, one
+// hidden one an element.
+func (w *network) unknowns() int { return len(w.nodes) + len(w.brackets) + len(w.elements) }
+
+// arrange orders the unknowns so that neighbours get numbers near each other:
+// breadth first from an end, those with fewer neighbours first, then turned
+// round.
+// Source: Cuthill, McKee, Reducing the bandwidth of sparse symmetric matrices,
+// Proc. 24th Nat. Conf. ACM (1969) (from memory).
+func (w *network) arrange() {
+	n := w.unknowns()
+	next := make([][]int, n)
+	meet := func(i, j int) {
+		if i >= 0 && j >= 0 && i != j {
+			next[i] = append(next[i], j)
+			next[j] = append(next[j], i)
+		}
+	}
+	for i, b := range w.brackets {
+		meet(b.at, len(w.nodes)+i)
+	}
+	for i, el := range w.elements {
+		h := len(w.nodes) + len(w.brackets) + i
+		meet(el.i, h)
+		meet(el.j, h)
+		meet(el.i, el.j)
+	}
+	for _, l := range w.links {
+		meet(l.a, l.b)
+	}
+	seen := make([]bool, n)
+	// walk lists what hangs together with u, marking it.
+	walk := func(u int) []int {
+		seen[u] = true
+		list := []int{u}
+		for k := 0; k < len(list); k++ {
+			from := len(list)
+			for _, v := range next[list[k]] {
+				if !seen[v] {
+					seen[v] = true
+					list = append(list, v)
+				}
+			}
+			level := list[from:]
+			sort.SliceStable(level, func(i, j int) bool { return len(next[level[i]]) < len(next[level[j]]) })
+		}
+		return list
+	}
+	for u := 0; u < n; u++ {
+		if seen[u] {
+			continue
+		}
+		part := walk(u)
+		for _, v := range part { // again, from the far end
+			seen[v] = false
+		}
+		w.order = append(w.order, walk(part[len(part)-1])...)
+	}
+	slices.Reverse(w.order)
 }

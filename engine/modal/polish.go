@@ -13,38 +13,51 @@ type evaluator struct {
 	w      *network
 	n      int
 	blocks []block
-	hidden []int // row of the hidden unknown of each element, -1 where none
-	a, da  []complex128
-	lu     numeric.ComplexLU
+	// row of each unknown: nodes, far ends of brackets, hidden unknowns of the
+	// elements; -1 where a hidden unknown is not kept.
+	row   []int
+	a, da []complex128
+	last  []int
 }
 
 func newEvaluator(w *network) *evaluator {
-	n := len(w.nodes) + len(w.brackets) + len(w.elements)
-	return &evaluator{w: w,
-		blocks: make([]block, len(w.elements)), hidden: make([]int, len(w.elements)),
-		a: make([]complex128, n*n), da: make([]complex128, n*n)}
+	n := w.unknowns()
+	return &evaluator{w: w, blocks: make([]block, len(w.elements)), row: make([]int, n),
+		a: make([]complex128, n*n), da: make([]complex128, n*n), last: make([]int, n)}
 }
 
-// assemble builds the matrix at s and, where asked, its derivative. A bracket's
-// far end q is an unknown with the row -K u + (K + sC) q = 0, so that it adds no
-// pole.
-func (e *evaluator) assemble(s complex128, slopes bool) {
+// hidden is the row of an element's hidden unknown, -1 where it keeps none.
+func (e *evaluator) hidden(element int) int {
+	return e.row[len(e.w.nodes)+len(e.w.brackets)+element]
+}
+
+// number gives the rows in the network's order, hidden unknowns only where kept.
+func (e *evaluator) number() {
 	w := e.w
-	n := len(w.nodes) + len(w.brackets)
+	first := len(w.nodes) + len(w.brackets)
+	e.n = 0
+	for _, u := range w.order {
+		if u >= first && e.blocks[u-first].keep == keepNone {
+			e.row[u] = -1
+			continue
+		}
+		e.row[u] = e.n
+		e.n++
+	}
+}
+
+// assemble builds the matrix at s and its derivative. A bracket's far end q is
+// an unknown with the row -K u + (K + sC) q = 0, so that it adds no pole.
+func (e *evaluator) assemble(s complex128) {
+	w := e.w
 	for i := range w.elements {
 		e.blocks[i] = w.elements[i].at(s)
-		e.hidden[i] = -1
-		if e.blocks[i].keep != keepNone {
-			e.hidden[i] = n
-			n++
-		}
 	}
-	e.n = n
+	e.number()
+	n := e.n
 	a, da := e.a[:n*n], e.da[:n*n]
 	clear(a)
-	if slopes {
-		clear(da)
-	}
+	clear(da)
 	add := func(i, j int, v, v1 complex128) {
 		if i < 0 || j < 0 {
 			return
@@ -56,39 +69,47 @@ func (e *evaluator) assemble(s complex128, slopes bool) {
 			da[j*n+i] += v1
 		}
 	}
+	at := func(node int) int {
+		if node < 0 {
+			return -1
+		}
+		return e.row[node]
+	}
 	for i := range w.nodes {
 		m, c := complex(w.mass[i], 0), complex(w.dashpot[i], 0)
-		add(i, i, (m*s+c)*s+complex(w.spring[i], 0), 2*m*s+c)
+		add(e.row[i], e.row[i], (m*s+c)*s+complex(w.spring[i], 0), 2*m*s+c)
 	}
 	for i, b := range w.brackets {
-		q, k, c := len(w.nodes)+i, complex(b.k, 0), complex(b.c, 0)
-		add(b.at, b.at, k, 0)
-		add(b.at, q, -k, 0)
+		u, q, k, c := e.row[b.at], e.row[len(w.nodes)+i], complex(b.k, 0), complex(b.c, 0)
+		add(u, u, k, 0)
+		add(u, q, -k, 0)
 		add(q, q, k+s*c, c)
 	}
 	for _, l := range w.links {
 		c := complex(l.c, 0)
 		v := complex(l.k, 0) + s*c
-		add(l.a, l.a, v, c)
-		add(l.b, l.b, v, c)
-		add(l.a, l.b, -v, -c)
+		x, y := at(l.a), at(l.b)
+		add(x, x, v, c)
+		add(y, y, v, c)
+		add(x, y, -v, -c)
 	}
 	for i := range w.elements {
-		el, b := &w.elements[i], &e.blocks[i]
-		add(el.i, el.i, b.diag, b.diag1)
-		add(el.j, el.j, b.diag, b.diag1)
-		if el.i == el.j { // a loop of one piece
-			add(el.i, el.i, 2*b.off, 2*b.off1)
+		b := &e.blocks[i]
+		x, y := at(w.elements[i].i), at(w.elements[i].j)
+		add(x, x, b.diag, b.diag1)
+		add(y, y, b.diag, b.diag1)
+		if x == y { // a loop of one piece
+			add(x, x, 2*b.off, 2*b.off1)
 		} else {
-			add(el.i, el.j, b.off, b.off1)
+			add(x, y, b.off, b.off1)
 		}
-		if h := e.hidden[i]; h >= 0 {
+		if h := e.hidden(i); h >= 0 {
 			f, f1 := b.b, b.b1
 			if b.keep == keepOdd {
 				f, f1 = -f, -f1
 			}
-			add(h, el.i, f, f1)
-			add(h, el.j, b.b, b.b1)
+			add(h, x, f, f1)
+			add(h, y, b.b, b.b1)
 			add(h, h, b.d, b.d1)
 		}
 	}
@@ -100,21 +121,16 @@ func (e *evaluator) assemble(s complex128, slopes bool) {
 //
 // It reports false where the matrix is singular in the arithmetic.
 func (e *evaluator) delta(s complex128) (log, slope complex128, ok bool) {
-	e.assemble(s, true)
+	e.assemble(s)
+	log, slope, ok = numeric.LogDet(e.a, e.da, e.last, e.n)
+	if !ok {
+		return 0, 0, false
+	}
 	for i := range e.blocks {
 		log += e.blocks[i].log
 		slope += e.blocks[i].logSlope
 	}
-	if e.n == 0 {
-		return log, slope, true
-	}
-	if !e.lu.Factor(e.a, e.n) {
-		return 0, 0, false
-	}
-	log += e.lu.LogDet()
-	slope += e.lu.Trace(e.da[:e.n*e.n])
-	ok = !cmplx.IsNaN(log) && !cmplx.IsInf(log) && !cmplx.IsNaN(slope) && !cmplx.IsInf(slope)
-	return log, slope, ok
+	return log, slope, !cmplx.IsNaN(log) && !cmplx.IsInf(log) && !cmplx.IsNaN(slope) && !cmplx.IsInf(slope)
 }
 
 // newton polishes a start value with Newton's method on log Delta, dividing out

@@ -130,9 +130,8 @@ func TestRandomUndampedAgainstDense(t *testing.T) {
 			for i, omega := range got {
 				e := math.Abs(omega/want[i] - 1)
 				worst = math.Max(worst, e)
-				// The mesh itself is good to about 1e-9 at the lowest modes of
-				// networks with hard springs (rounding of its large eigenvalues).
-				if e > 3e-8 {
+				// What the mesh's rule promises; the worst seen is 1e-10.
+				if e > 1e-8 {
 					t.Errorf("trial %d group %d mode %d: %.12g, dense %.12g", trial, g, i+1, omega, want[i])
 				}
 			}
@@ -187,7 +186,7 @@ func TestRandomDampedAgainstDense(t *testing.T) {
 			for _, s := range want {
 				e := match(s, got)
 				worst = math.Max(worst, e)
-				if e > 1e-6 {
+				if e > 1e-8 { // as above; the worst seen is 2e-12
 					t.Errorf("trial %d group %d: root %.9g of the dense matrix is missing in %.6g", trial, g, s, got)
 				}
 				compared++
@@ -285,6 +284,57 @@ func TestSearchWithoutStarts(t *testing.T) {
 			}
 			if n < 10 {
 				t.Errorf("trial %d: only %d of 10 roots agree: %v and %v", trial, n, osc, f.osc)
+			}
+		}
+	}
+}
+
+// The proof can fail, and what is missing is found again: roots are struck from
+// a complete list, and the count tells how many.
+func TestProofSeesWhatIsMissing(t *testing.T) {
+	r := rand.New(rand.NewSource(8))
+	for trial := 0; trial < 20; trial++ {
+		for _, w := range split(randomNetwork(r, true)) {
+			if !w.damped {
+				continue
+			}
+			f, err := w.dampedModes(Want{Count: 9})
+			if err != nil || f.complete == 0 || len(f.osc) < 3 {
+				t.Fatal(err, f.notes)
+			}
+			all := append([]complex128(nil), f.osc...)
+			for _, s := range f.real {
+				all = append(all, complex(s, 0))
+			}
+			left := 2 * f.complete
+			for _, s := range all {
+				left = math.Max(left, -1.2*real(s))
+			}
+			reg := region{x0: -left, x1: 0.5 / w.travel, y0: 0, y1: f.complete}
+			k := r.Intn(len(f.osc))
+			l := &list{e: newEvaluator(w), roots: append(append([]complex128(nil), all[:k]...), all[k+1:]...), work: 2000}
+			n, ok := l.e.count(reg)
+			if !ok {
+				continue
+			}
+			if lack := n - l.inside(reg); lack != 2 {
+				t.Errorf("trial %d: a root and its mirror image struck, %d missing", trial, lack)
+			}
+			if !l.complete(reg) || l.inside(reg) != n {
+				t.Errorf("trial %d: %d roots after repair of %d", trial, l.inside(reg), n)
+				continue
+			}
+			best := math.Inf(1)
+			for _, s := range l.roots {
+				best = math.Min(best, cmplx.Abs(s-all[k])/cmplx.Abs(s))
+			}
+			if best > 1e-11 {
+				t.Errorf("trial %d: %v is not found again (%g)", trial, all[k], best)
+			}
+			// A list without allowance of work and with a false root is refused.
+			l.roots = append(l.roots, complex(-0.01, 0.5)*complex(f.complete, 0))
+			if l.complete(reg) {
+				t.Errorf("trial %d: a root too many passed", trial)
 			}
 		}
 	}

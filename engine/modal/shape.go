@@ -62,7 +62,7 @@ func (p *arc) at(x float64) complex128 {
 // shapes gives the shapes at a root: as many as there are, want at most.
 func (w *network) shapes(s complex128, want int) (shapes []*Shape, rank int) {
 	e := newEvaluator(w)
-	e.assemble(s, true)
+	e.assemble(s)
 	n := e.n
 	want = min(want, n)
 	size := 0.0
@@ -117,13 +117,13 @@ func (w *network) orthogonal(e *evaluator, vectors [][]complex128) {
 func (w *network) shape(e *evaluator, v []complex128) *Shape {
 	s := &Shape{nodes: map[int]complex128{}, pieces: map[int]arc{}}
 	for i, node := range w.nodes {
-		s.nodes[node] = v[i]
+		s.nodes[node] = v[e.row[i]]
 	}
 	value := func(i int) complex128 {
 		if i < 0 {
 			return 0
 		}
-		return v[i]
+		return v[e.row[i]]
 	}
 	for i := range w.elements {
 		el, b := &w.elements[i], &e.blocks[i]
@@ -131,9 +131,9 @@ func (w *network) shape(e *evaluator, v []complex128) *Shape {
 		p := arc{a: b.a, length: el.len, keep: b.keep, even: (a + c) / 2, odd: (c - a) / 2}
 		switch b.keep {
 		case keepEven:
-			p.even = v[e.hidden[i]]
+			p.even = v[e.hidden(i)]
 		case keepOdd:
-			p.odd = v[e.hidden[i]] * complex(b.scale, 0)
+			p.odd = v[e.hidden(i)] * complex(b.scale, 0)
 		}
 		s.pieces[el.piece] = p
 	}

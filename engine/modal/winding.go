@@ -124,14 +124,17 @@ func (l *list) complete(r region) bool {
 
 // fill completes a region that holds n zeros.
 func (l *list) fill(r region, n int) bool {
+	before := math.MaxInt
 	for {
 		lack := n - l.inside(r)
 		if lack <= 0 {
 			return lack == 0
 		}
-		if lack > 2 || !(l.again(r) || l.seek(r)) {
+		// Roots found outside are kept but do not help here.
+		if lack > 2 || lack == before || !(l.again(r) || l.seek(r)) {
 			break
 		}
+		before = lack
 	}
 	return l.divide(r, n)
 }

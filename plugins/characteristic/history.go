@@ -234,6 +234,32 @@ func lagrange(w *[wide]float64, theta float64) {
 	}
 }
 
+// leaky is the integral of exp(-gamma (b-t)) times the history over a .. b, by
+// Gauss's three points on panels of two samples at most, cut at breaks.
+func (h *history) leaky(gamma, a, b float64) float64 {
+	places, weights := gauss()
+	sum := 0.0
+	for i := h.after(a, 1); a < b; i++ {
+		end := b
+		if i < len(h.breaks) && h.breaks[i].t < b {
+			end = h.breaks[i].t
+		}
+		n := math.Ceil((end - a) * h.inv / 2)
+		step := (end - a) / n
+		for k := 0.0; k < n; k++ {
+			for g, x := range places {
+				t := a + (k+x)*step
+				sum += weights[g] * step * math.Exp(-gamma*(b-t)) * h.at(t, 1, 0)
+			}
+		}
+		if end == b {
+			break
+		}
+		a = end
+	}
+	return sum
+}
+
 // reader reads a history that lags behind by a fixed delay. Where the lag is
 // the same share of a sample at every step, the weights are prepared.
 type reader struct {

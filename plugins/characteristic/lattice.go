@@ -6,9 +6,12 @@ import "math"
 // along f and psi along g, on n cells that a wave crosses in one lattice step,
 //
 //	phi_j(s+ds) = E (phi_(j-1)(s) + ds/2 r_(j-1)(s)) + ds/2 r_j(s+ds),  E = exp(-gamma ds),
-//	r_j(s+ds) = E r_j(s) + gamma^2 ds/4 (E u_j(s) + u_j(s+ds)),
+//	r_j(s+ds) = E r_j(s) + gamma^2/2 (J_j + ds/2 (E v_j(s) + v_j(s+ds))),
 //
-// second order in ds, with a factor gamma^2. It keeps the piece's shape u at its
+// second order in ds, with a factor gamma^2. u = f + g + v: f and g are what the
+// ends sent, and J is the integral of exp(-gamma (s+ds-t)) (f + g) over the step,
+// which travels along with them and is taken once, at the end that sends, with
+// its breaks; so a jump that runs along the line costs no order. It keeps the piece's shape u at its
 // points, and therefore the books of what the loss takes and a force per length
 // gives. What arrives at the ends is needed one step ahead; u there is then
 // extrapolated, which enters with gamma^2 ds^2/8 only.
@@ -20,8 +23,11 @@ type lattice struct {
 	f, g     []float64
 	phi, psi []float64
 	r, u, du []float64
+	v        []float64  // u - f - g
+	jf, jg   []float64  // J's two parts, over the last step
+	jlast    [2]float64 // jf at the start and jg at the end, one step earlier
 	slot     []int      // of each source, the point at its right
-	before   [2]float64 // u at the ends one step earlier
+	before   [2]float64 // v at the ends one step earlier
 	taps     []tap
 	ends     [2]*history // psi at x = 0, phi at x = L
 	viscous  float64     // N s/m^2
@@ -32,7 +38,7 @@ type lattice struct {
 func newLattice(p *line, cells int, span, tol float64, places []float64) *lattice {
 	l := &lattice{p: p, n: cells, ds: p.tau / float64(cells), viscous: 2 * p.mass * p.gamma}
 	l.e = p.decay(l.ds)
-	for _, s := range []*[]float64{&l.f, &l.g, &l.phi, &l.psi, &l.r, &l.u, &l.du} {
+	for _, s := range []*[]float64{&l.f, &l.g, &l.phi, &l.psi, &l.r, &l.u, &l.du, &l.v, &l.jf, &l.jg} {
 		*s = make([]float64, cells+1)
 	}
 	l.ends = [2]*history{newHistory(l.ds, span, 0, tol), newHistory(l.ds, span, 0, tol)}
@@ -53,7 +59,14 @@ func (l *lattice) begin(f, g, v func(x float64) float64) {
 		l.f[j], l.g[j] = f(x), g(x)
 		l.u[j], l.du[j] = l.f[j]+l.g[j], l.ds*v(x)
 	}
-	l.before = [2]float64{l.u[0] - l.ds*v(0), l.u[l.n] - l.ds*v(l.p.length)}
+	// What the first step needs was sent before t = 0.
+	p := l.p
+	for j := 0; j < l.n; j++ {
+		lag := float64(j) * l.ds
+		l.jf[j] = p.decay(lag) * p.sent[0].leaky(p.gamma, -lag-l.ds, -lag)
+		l.jg[l.n-j] = p.decay(lag) * p.sent[1].leaky(p.gamma, -lag-l.ds, -lag)
+	}
+	l.jlast = [2]float64{l.jf[0], l.jg[l.n]}
 	l.predict()
 }
 
@@ -67,12 +80,17 @@ func (l *lattice) advance() {
 	half := 0.5 * l.ds
 	for j := n; j > 0; j-- {
 		l.f[j] = l.e * l.f[j-1]
+		l.jf[j] = l.e * l.jf[j-1]
 		l.phi[j] = l.e * (l.phi[j-1] + half*l.r[j-1])
 	}
 	for j := 0; j < n; j++ {
 		l.g[j] = l.e * l.g[j+1]
+		l.jg[j] = l.e * l.jg[j+1]
 		l.psi[j] = l.e * (l.psi[j+1] + half*l.r[j+1])
 	}
+	l.jlast = [2]float64{l.jf[0], l.jg[n]}
+	l.jf[0] = p.sent[0].leaky(p.gamma, t1-l.ds, t1)
+	l.jg[n] = p.sent[1].leaky(p.gamma, t1-l.ds, t1)
 	l.f[0], l.phi[0] = p.sent[0].at(t1, 1, 0), 0
 	l.g[n], l.psi[n] = p.sent[1].at(t1, 1, 0), 0
 	h := p.length / float64(n)
@@ -80,20 +98,22 @@ func (l *lattice) advance() {
 		j := l.slot[i]
 		lag := (float64(j)*h - src.x) / p.c
 		l.f[j] += p.decay(lag) * src.h.at(t1-lag, 1, 0)
+		l.jf[j] += p.decay(lag) * src.h.leaky(p.gamma, t1-lag-l.ds, t1-lag)
 		lag = (src.x - float64(j-1)*h) / p.c
 		l.g[j-1] += p.decay(lag) * src.h.at(t1-lag, 1, 0)
+		l.jg[j-1] += p.decay(lag) * src.h.leaky(p.gamma, t1-lag-l.ds, t1-lag)
 	}
 	l.settle(t1)
 	l.step++
 	l.record()
 }
 
-// settle finds r and u at the new time: u_j holds r_j with a weight of at most
+// settle finds r and u at the new time: v_j holds r_j with a weight of at most
 // (gamma ds)^2/4, which is solved for. It books losses and work by differences,
 // losses with u_t straight within a step (third order).
 func (l *lattice) settle(t1 float64) {
 	n := l.n
-	l.before = [2]float64{l.u[0], l.u[n]}
+	l.before = [2]float64{l.v[0], l.v[n]}
 	l.latest = energy{}
 	lost := 0.5 * (l.point(0, 0.5*l.ds, t1) + l.point(n, 0.5*l.ds, t1))
 	if l.p.wind == nil && len(l.p.rolls) == 0 {
@@ -115,13 +135,16 @@ func (l *lattice) points() (lost float64) {
 	half, e := 0.5*l.ds, l.e
 	scale := 1 / (1 - l.ds*w)
 	size := l.n
+	feed := 0.5 * p.gamma * p.gamma
 	f, g, phi, psi, r, u, du := l.f[:size], l.g[:size], l.phi[:size], l.psi[:size], l.r[:size], l.u[:size], l.du[:size]
+	v, jf, jg := l.v[:size], l.jf[:size], l.jg[:size]
 	for j := 1; j < size; j++ {
-		known := e * (r[j] + w*u[j])
-		now := (f[j] + g[j] + phi[j] + psi[j] + l.ds*known) * scale
-		r[j] = known + w*now
+		known := e*(r[j]+w*v[j]) + feed*(jf[j]+jg[j])
+		v[j] = (phi[j] + psi[j] + l.ds*known) * scale
+		r[j] = known + w*v[j]
 		phi[j] += half * r[j]
 		psi[j] += half * r[j]
+		now := f[j] + g[j] + v[j]
 		d := now - u[j]
 		bend := d - du[j]
 		lost += d*d + bend*bend*(1.0/12)
@@ -136,7 +159,7 @@ func (l *lattice) point(j int, share, t1 float64) (lost float64) {
 	p, n := l.p, l.n
 	h := p.length / float64(n)
 	w := 0.25 * p.gamma * p.gamma * l.ds
-	free := l.f[j] + l.g[j] + l.phi[j] + l.psi[j]
+	free := l.phi[j] + l.psi[j]
 	for i := range p.rolls {
 		f, g := p.rolls[i].waves(float64(j)*h, t1, 0)
 		free += f + g
@@ -146,9 +169,10 @@ func (l *lattice) point(j int, share, t1 float64) (lost float64) {
 		free += p.wind.u[(l.step+1)%windRing][j]
 		impulse = p.wind.impulse[(l.step+1)%windRing][j]
 	}
-	known := l.e * (l.r[j] + w*l.u[j])
-	now := (free + share*known) / (1 - share*w)
-	l.r[j] = known + w*now
+	known := l.e*(l.r[j]+w*l.v[j]) + 0.5*p.gamma*p.gamma*(l.jf[j]+l.jg[j])
+	l.v[j] = (free + share*known) / (1 - share*w)
+	l.r[j] = known + w*l.v[j]
+	now := l.f[j] + l.g[j] + l.v[j]
 	own := h
 	if j > 0 {
 		l.phi[j] += 0.5 * l.ds * l.r[j]
@@ -185,8 +209,10 @@ func (l *lattice) predict() {
 	n := l.n
 	w := 0.25 * l.p.gamma * l.p.gamma * l.ds
 	half := 0.5 * l.ds
+	// J of the end that has yet to send runs straight on.
+	sent := [2]float64{2*l.jf[0] - l.jlast[0] + l.e*l.jg[1], 2*l.jg[n] - l.jlast[1] + l.e*l.jf[n-1]}
 	for i, j := range [2]int{0, n} {
-		r := l.e*(l.r[j]+w*l.u[j]) + w*(2*l.u[j]-l.before[i])
+		r := l.e*(l.r[j]+w*l.v[j]) + w*(2*l.v[j]-l.before[i]) + 0.5*l.p.gamma*l.p.gamma*sent[i]
 		inner := l.psi[1] + half*l.r[1]
 		if i == 1 {
 			inner = l.phi[n-1] + half*l.r[n-1]

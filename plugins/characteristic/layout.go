@@ -5,6 +5,7 @@ import (
 	"math"
 
 	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/scenario"
 	"github.com/tautspan/tautspan/engine/solver"
 )
 
@@ -31,9 +32,13 @@ const (
 	// thin: the loss's source is left out of pieces where (gamma tau)^2, its
 	// share of the wave, is below this.
 	thin = 1e-14
+	// strong is the number of lattice points to the time 1/gamma.
+	strong = 50
 	// most bytes a run may hold.
 	mostBytes = 2e9
 	mostSteps = 1e12
+	// fieldRows is the most rows that a picture over x and t has.
+	fieldRows = 1200
 )
 
 // wanted is the step at level 0 before it is fitted to the travel times.
@@ -58,6 +63,13 @@ func wanted(m *mesh.Mesh, effort int) float64 {
 	}
 	if longest > 0 {
 		want = math.Min(want, longest/4)
+	}
+	for i := range m.Pieces {
+		// A strong loss wants its lattice fine, and no lattice is finer than the step.
+		p := &m.Pieces[i]
+		if gamma := p.Viscous / (2 * p.MassPerLength); gamma*p.TravelTime() > lossy {
+			want = math.Min(want, 1/(strong*gamma))
+		}
 	}
 	if math.IsInf(want, 1) {
 		want = m.Timing.Every
@@ -106,10 +118,16 @@ func plan(m *mesh.Mesh, req solver.Request) (Layout, bool) {
 // cellsOf sizes the lattice of a piece that loses loss = gamma tau: its error is
 // of the order of (gamma ds)^2 of a wave, so that a weak loss needs no more than
 // to see the band (two and a half points to its period), a strong one fifty
-// points to a decay. No lattice step is shorter than the nodes'.
+// points to a decay. A faint one's error is far below the rest of the solution;
+// its lattice is refined by the root of two a level, since it costs the square.
+// No lattice step is shorter than the nodes'. Shares chosen.
 func cellsOf(tau, loss, step float64, level int) int {
-	const weakPer, strong = 4, 50
-	n := math.Max(tau/(weakPer*step), math.Ldexp(strong*loss, level))
+	const weakPer, faint = 4, 0.02
+	n := tau / (weakPer * step)
+	if loss < faint {
+		n *= math.Pow(2, -0.5*float64(level))
+	}
+	n = math.Max(n, math.Ldexp(strong*loss, level))
 	return max(3, int(math.Min(n, tau/step)))
 }
 
@@ -222,16 +240,19 @@ func size(m *mesh.Mesh, lay *Layout) solver.Plan {
 		}
 	}
 	work += 20 * float64(len(m.Nodes))
-	rows, _ := m.FieldRows()
 	reads := 0.0
 	for i := range m.Channels {
 		ch := &m.Channels[i]
 		n := float64(m.Timing.Rows)
 		if ch.Along {
-			n = float64(rows)
+			n = math.Min(n, fieldRows)
 		}
 		bytes += 8 * n * float64(len(ch.Spots))
-		reads += 60 * n * float64(len(ch.Spots))
+		each := 60.0
+		if ch.Means > 1 || ch.Means == 1 && ch.Quantity == scenario.Displacement {
+			each *= 1 + 6*m.Timing.Every/lay.Step
+		}
+		reads += each * n * float64(len(ch.Spots))
 		for _, s := range ch.Spots {
 			if s.Node < 0 && lay.Cells[s.Piece] > 0 {
 				ds := m.Pieces[s.Piece].TravelTime() / float64(lay.Cells[s.Piece])

@@ -126,8 +126,6 @@ func TestStubPiece(t *testing.T) {
 	m.Band = 60
 	m.Nodes[1].Mass, m.Nodes[2].Dashpot = 0.5, 100
 	m.Pushes = []mesh.Push{{At: inside(0, 4), Force: bump(300, 0.08)}}
-	whole := span(1e-3, 301, stretch{8, 20000, 2, 0}, stretch{0.05, 20000, 2, 0}, stretch{11.95, 20000, 3.5, 0})
-	_ = whole
 	against(t, "stub", m, []int{160, 2, 240}, 2, 1e-5, 1e-4, node(1), node(2), inside(2, 11.95/2))
 	if res := solve(t, m, 0); len(res.Notes) != 1 {
 		t.Errorf("notes %q", res.Notes)

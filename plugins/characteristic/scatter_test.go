@@ -159,60 +159,62 @@ func TestRollingOverJoints(t *testing.T) {
 	}
 }
 
-// The front of a displacement jump loses exp(-d x/(2Z)), and the wake of a point
-// impulse on an endless damped string follows a Bessel function: Courant and
-// Hilbert 1962, vol. II; Morse and Feshbach 1953, ch. 7 (cited from memory,
-// values recomputed).
-func TestDampedFrontAndWake(t *testing.T) {
-	m := span(0.01, 2100, stretch{2100, 10000, 1, 0.5})
+// The front of a displacement jump loses exp(-d x/(2Z)): Courant and Hilbert
+// 1962, vol. II; Morse and Feshbach 1953, ch. 7 (cited from memory, values
+// recomputed). The front itself is carried without error; behind it the loss's
+// own wave rises with slope g gamma^2 t/2, and the cubic that reads the lattice
+// rounds that corner by up to 0.15 of a lattice step (chosen; seen 0.11).
+func TestDampedFront(t *testing.T) {
+	m := span(0.01, 2050, stretch{2100, 10000, 1, 0.5})
 	m.Jump = 0
-	m.Timing = mesh.Timing{Every: 0.01, Rows: 2050}
 	m.Nodes[0].Motion = &mesh.Motion{Displacement: func(t float64) float64 { return 1 }, Velocity: func(float64) float64 { return 0 }}
 	look(m, scenario.Displacement, 0, inside(0, 100), inside(0, 400), inside(0, 2000))
-	res := solve(t, m, 0)
-	// One row after the front, 1 m of it has passed: u behind the front changes
-	// by about exp(-g t) (1 - g^2 t dt/2 ...), below 1e-2 g = 2.5e-3 of it: read
-	// at the front itself (right limit) instead.
+	res := solve(t, m, 2)
+	ds := m.Pieces[0].TravelTime() / float64(res.Layout.(Layout).Cells[0])
 	for k, c := range []struct{ x, f float64 }{{100, 0.778800783071405}, {400, 0.367879441171442}, {2000, 0.00673794699908547}} {
-		near(t, fmt.Sprintf("front after %g m", c.x), res.Series[0][k][int(c.x)], c.f, 1e-9)
-		near(t, "before the front", res.Series[0][k][int(c.x)-1], 0, 1e-12)
+		tol := 0.15 * ds * c.f * 0.25 * 0.25 / 2 * c.x / 100
+		near(t, fmt.Sprintf("front after %g m", c.x), res.Series[0][k][int(c.x)], c.f, tol)
+		near(t, "before the front", res.Series[0][k][int(c.x)-1], 0, tol)
+		if tol > 2e-3*c.f {
+			t.Errorf("the tolerance %g says nothing", tol)
+		}
 	}
 }
 
-// wake is J/(2Z) exp(-s t) I0(s sqrt(t^2 - x^2/c^2)) behind the front.
+// The wake of a point impulse on an endless damped string is
+// J/(2Z) exp(-s t) I0(s sqrt(t^2 - x^2/c^2)) behind the front: Courant and
+// Hilbert 1962; Morse and Feshbach 1953 (cited from memory, values recomputed).
+// The impulse is a rectangle of 1e-4 s; its wake is the mean of the formula over
+// it. Tolerance: second order in the lattice step, 1/200 of 1/gamma at level 2.
 func TestWakeOfAnImpulse(t *testing.T) {
-	const J, width = 10.0, 1e-4
+	const J, width, s = 10.0, 1e-4, 2.0
 	m := span(0.1, 11, stretch{260, 10000, 1, 4})
-	endless(m)
-	for i := range m.Nodes {
-		m.Nodes[i].Dashpot = 0
-		m.Nodes[i].Absorbing = false
-	}
 	m.Jump = 1
-	// A rectangle as short as 1e-4 s: its middle is the impulse's moment; the
-	// wake's error is of order (s width)^2.
 	m.Pushes = []mesh.Push{{At: inside(0, 130), Force: step(J/width, 0)}, {At: inside(0, 130), Force: step(-J/width, width)}}
 	look(m, scenario.Displacement, 0, inside(0, 130), inside(0, 180), inside(0, 250))
-	wake := func(x, t float64) float64 {
-		s := 2.0
-		sum := 0.0
-		n := 4000
-		for i := 0; i < n; i++ { // mean of the impulse over the rectangle
-			tt := t - width*(float64(i)+0.5)/float64(n)
-			if q := tt*tt - x*x/1e4; q > 0 {
-				sum += J / 200 * math.Exp(-s*tt) * bessel0(s*math.Sqrt(q))
-			}
+	exact := func(x, t float64) float64 {
+		if q := t*t - x*x/1e4; q > 0 {
+			return J / 200 * math.Exp(-s*t) * bessel0(s*math.Sqrt(q))
 		}
-		return sum / float64(n)
+		return 0
 	}
-	near(t, "bessel", wake(0, 1), 0.0154254161276836, 1e-5)
-	res := solve(t, m, 0)
-	near(t, "y(0, 0.1)", res.Series[0][0][1], wake(0, 0.1), 2e-6)
-	near(t, "y(0, 1)", res.Series[0][0][10], wake(0, 1), 2e-6)
-	near(t, "y(50, 0.6)", res.Series[0][1][6], wake(50, 0.6), 2e-6)
-	near(t, "y(120, 1)", res.Series[0][2][10], 0, 1e-12)
-	a := solve(t, m, 2)
-	t.Logf("errors level 0 %g, level 2 %g", res.Series[0][0][10]-wake(0, 1), a.Series[0][0][10]-wake(0, 1))
+	wake := func(x, t float64) float64 {
+		sum := 0.0
+		for i := range 100 {
+			sum += exact(x, t-width*(float64(i)+0.5)/100)
+		}
+		return sum / 100
+	}
+	near(t, "y(0, 0.1)", exact(0, 0.1), 0.0413469275817165, 1e-15)
+	near(t, "y(0, 1)", exact(0, 1), 0.0154254161276836, 1e-15)
+	near(t, "y(50, 0.6)", exact(50, 0.6), 0.0167623950214781, 1e-15)
+	for level, tol := range []float64{2e-6, 5e-7, 1.3e-7} {
+		u := solve(t, m, level).Series[0]
+		near(t, "y(0, 0.1)", u[0][1], wake(0, 0.1), tol)
+		near(t, "y(0, 1)", u[0][10], wake(0, 1), tol)
+		near(t, "y(50, 0.6)", u[1][6], wake(50, 0.6), tol)
+		near(t, "y(120, 1)", u[2][10], 0, tol)
+	}
 }
 
 func bessel0(x float64) float64 {

@@ -301,26 +301,43 @@ func (v *view) record(q scenario.Quantity, means int, t, w float64) float64 {
 	return v.twice(q, t, w)
 }
 
-// twice is the record of means averaged once more.
-func (v *view) twice(q scenario.Quantity, t, w float64) float64 {
-	switch q {
-	case scenario.Velocity:
-		after := v.mean(t, t+w, (*view).displacement)
-		return (after - v.mean(t-w, t, (*view).displacement)) / w
-	case scenario.Acceleration:
-		return (v.shift(t+w, 0) - 2*v.shift(t, 0) + v.shift(t-w, 0)) / (w * w)
-	}
+// triangle is the mean of a function with triangular weight over t-w .. t+w.
+func (v *view) triangle(t, w float64, q func(v *view, t float64) float64) float64 {
 	n := math.Max(1, math.Ceil(w/v.panel))
 	h := w / n
 	places, weights := gauss()
 	s := 0.0
 	for k := 0.0; k < n; k++ {
 		for i, x := range places {
-			s += weights[i] * v.record(q, 1, t-w/2+(k+x)*h, w)
+			d := (k + x) * h
+			s += weights[i] * (1 - d/w) * (q(v, t-d) + q(v, t+d))
 		}
 	}
 	return s / n
 }
+
+// twice is the record of means averaged once more.
+func (v *view) twice(q scenario.Quantity, t, w float64) float64 {
+	switch q {
+	case scenario.Displacement:
+		return v.triangle(t, w, (*view).displacement)
+	case scenario.Velocity:
+		after := v.mean(t, t+w, (*view).displacement)
+		return (after - v.mean(t-w, t, (*view).displacement)) / w
+	case scenario.Acceleration:
+		return (v.shift(t+w, 0) - 2*v.shift(t, 0) + v.shift(t-w, 0)) / (w * w)
+	}
+	if t-w < 0 {
+		return v.triangle(t, w, (*view).steep)
+	}
+	s := (v.mean(t, t+w, (*view).stemNow) - v.mean(t-w, t, (*view).stemNow)) / w
+	if v.leaks() {
+		s += v.triangle(t, w, (*view).leak)
+	}
+	return s
+}
+
+func (v *view) stemNow(t float64) float64 { return v.stem(t, 0) }
 
 // output records every row that the histories reach around.
 func (r *run) output(now float64) {

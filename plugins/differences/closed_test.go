@@ -151,8 +151,20 @@ func TestPushInside(t *testing.T) {
 	for _, x := range []float64{0, 5.4321, 7.7} {
 		want[watchAt(m, scenario.Displacement, 0, x, 0)] = sample(m, func(t float64) float64 { return u(x, t) })
 	}
+	rate := func(x, t float64) float64 {
+		s := t - late - math.Abs(x-5.4321)/c
+		if s < 0 || s > width {
+			return 0
+		}
+		return peak * math.Sin(math.Pi*s/width) / (2 * mass * c)
+	}
+	rates := map[int][]float64{}
+	rates[watchAt(m, scenario.Velocity, 0, 5.4321, 0)] = sample(m, func(t float64) float64 { return rate(5.4321, t) })
+	rates[watchAt(m, scenario.Slope, 0, 5.4321, 0)] = sample(m, func(t float64) float64 { return -rate(5.4321, t) / c })
+	rates[watchAt(m, scenario.Velocity, 0, 7.7, 0)] = sample(m, func(t float64) float64 { return rate(7.7, t) })
 	want[watchAt(m, scenario.Displacement, 1, 3, 0)] = sample(m, func(t float64) float64 { return u(14, t) })
 	orders(t, m, 2, want, 2, 1e-3)
+	orders(t, m, 2, rates, 2, 5e-3) // slope at the force: that after it
 }
 
 // A support that moves sends u(x, t) = g(t - x/c) into the line; the other end

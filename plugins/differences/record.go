@@ -178,7 +178,7 @@ func (w *network) newReader(ch *mesh.Channel, at mesh.Spot, points int) reader {
 
 // inside reads a place x cells into a strand without reaching across a point
 // force, where the slope jumps: from the stretch between the forces around it,
-// and at a force from both sides by halves.
+// and at a force from both sides by halves, slopes from the stretch after it.
 func (w *network) inside(s *strand, x float64, points, deriv int) []stencil {
 	x = math.Min(math.Max(x, 0), float64(s.n))
 	if r := math.Round(x); math.Abs(x-r) < 1e-9 {
@@ -204,6 +204,9 @@ func (w *network) inside(s *strand, x float64, points, deriv int) []stencil {
 	case there && left > lo && hi > right:
 		a := newStencil(s.at, lo, left, x, points, deriv)
 		b := newStencil(s.at, right, hi, x, points, deriv)
+		if deriv > 0 {
+			return []stencil{b} // the slope of the stretch after it, as at a node
+		}
 		a.times(0.5)
 		b.times(0.5)
 		return []stencil{a, b}
@@ -222,7 +225,7 @@ func endIndex(piece int, end bool) int {
 
 // endForce is the force of a strand on the node at its end, N: that of the end
 // cell less the inertia and the loss of its half at the node, and the load on
-// it. It is the force that balances the node in the scheme, of order 2.
+// it. It is the force that balances the node in the scheme, of order 2; n >= 1.
 func (w *network) endForce(end int, at *moment) float64 {
 	s := &w.strands[end/2]
 	node, next := s.from, s.at+1
@@ -234,9 +237,6 @@ func (w *network) endForce(end int, at *moment) float64 {
 	}
 	dt := w.dt
 	bend, rate := at.x[node]-at.y[node], (at.x[node]+at.y[node])/2
-	if at.n == 0 {
-		rate = at.x[node]
-	}
 	var f float64
 	if s.implicit {
 		k := s.point(1)
@@ -248,6 +248,22 @@ func (w *network) endForce(end int, at *moment) float64 {
 		f = s.stiff * (at.u[next] - at.u[node])
 	}
 	return f - s.mass/2*bend/(dt*dt) - s.loss/2*rate/dt + at.onEnd[end]
+}
+
+// startForce is the force at t = 0 of a strand on the node at its end, N: that of
+// the start shape, whatever sets in at t = 0.
+func (w *network) startForce(end int, u []float64) float64 {
+	s := &w.strands[end/2]
+	x, sign := 0.0, 1.0
+	if end%2 == 1 {
+		x, sign = float64(s.n), -1
+	}
+	points := 4
+	if w.fourth {
+		points = maxPoints
+	}
+	in := newStencil(s.at, 0, s.n, x, points, 1)
+	return sign * s.stiff * in.read(u)
 }
 
 // reach is the last step that the tapes of a mesh may need.
@@ -271,7 +287,11 @@ func (t *tape) take(at *moment) {
 			v += r.inside[i].read(at.u)
 		}
 		for _, e := range r.ends {
-			v += e.scale * t.w.endForce(e.end, at)
+			if at.n == 0 {
+				v += e.scale * t.w.startForce(e.end, at.u)
+			} else {
+				v += e.scale * t.w.endForce(e.end, at)
+			}
 		}
 		now[k] = v
 	}

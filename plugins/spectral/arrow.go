@@ -4,12 +4,21 @@ import (
 	"math/cmplx"
 )
 
-// arrow propagates the network in arrow form by Padé factors. One factor costs
-// about 30 operations for each coordinate: with a shift s, an inner coordinate is
+// arrow propagates the network in arrow form by Padé factors. Every factor is 1 at
+// the origin, and is applied as an increment,
 //
-//	xi = (rhs - kappa_a u_a - kappa_b u_b)/d,   d = omega^2 + g s + s^2,
+//	y + 2 Re c w,   w = A (A - s)^-1 y,
 //
-// which leaves a small symmetric system for the end points.
+// because nu y + 2 Re c (A - s)^-1 y would lose the slow modes' velocities in the
+// rounding of the shift, which is as large as the highest frequency. The first half
+// of w solves
+//
+//	(K + s C + s^2 M) w = K x - s M v + s f_s,
+//
+// where f_s is the load seen through the same factor; the second half is v + s w. An
+// inner coordinate is (rhs - kappa (w_a + or - w_b))/d with d = omega^2 + g s + s^2,
+// which leaves a small symmetric system for the end points. One factor costs about 35
+// operations for each coordinate.
 type arrow struct {
 	*system
 	factors map[int][]factor // by degree m
@@ -30,11 +39,11 @@ type plan struct {
 
 // shifted is one factor at one step length.
 type shifted struct {
-	s, c   complex128 // shift, weight of the solution
-	nu     float64
+	s, c   complex128   // shift, weight of the solution
 	ir, ii []float64    // [inner] 1/d
 	inv    []complex128 // [ends*ends] inverse of the end points' system
 	w      [loadDegree + 1]complex128
+	// w[j] is s times the solution for the load's power j.
 }
 
 // keptPlans is how many step lengths are remembered.
@@ -90,16 +99,16 @@ func (a *arrow) planFor(h float64) *plan {
 // w_j' = w_(j-1)/h.
 func (a *arrow) shift(p *shifted, f factor, h float64, w *[loadDegree + 1]float64) {
 	ih := complex(1/h, 0)
-	p.s, p.c, p.nu = f.pole*ih, f.res*ih, f.nu
+	p.s, p.c = f.pole*ih, 2*f.res/f.pole
 	if f.single {
-		p.c /= 2 // 2 Re of it is then the whole
+		p.c /= 2
 	}
-	old := *w
+	// With (J - s) v = w: v_j = (v_(j-1)/h - w_j)/s, and w + s v = v_(j-1)/h.
 	var before complex128
 	for j := range w {
-		p.w[j] = (before*ih - complex(old[j], 0)) / p.s
-		before = p.w[j]
-		w[j] = p.nu*old[j] + 2*real(p.c*p.w[j])
+		p.w[j] = before*ih - complex(w[j], 0)
+		w[j] += real(p.c * before * ih)
+		before = p.w[j] / p.s
 	}
 	n := a.ends
 	clear(p.inv)
@@ -211,7 +220,7 @@ func (a *arrow) loadAt(p *shifted, ld *load) {
 	}
 }
 
-// apply replaces the state y by nu y + 2 Re c (A - s)^-1 y.
+// apply replaces the state y by y + Re c A (A - s)^-1 y; c holds the 2 of a pair.
 func (a *arrow) apply(p *shifted, st *state, ld *load) {
 	loaded := ld != nil && ld.active
 	if loaded {
@@ -219,9 +228,9 @@ func (a *arrow) apply(p *shifted, st *state, ld *load) {
 	}
 	innerLoad := loaded && ld.lo < a.inner
 	a.endRight(p, st, loaded)
-	sr, si := real(p.s), imag(p.s)
 	for e := range a.elements {
 		el := &a.elements[e]
+		ua, ub := a.endValue(st.x, el.end[0]), a.endValue(st.x, el.end[1])
 		for _, half := range el.halves() {
 			lo, hi := half.lo, half.hi
 			var fr, fi []float64
@@ -229,12 +238,12 @@ func (a *arrow) apply(p *shifted, st *state, ld *load) {
 				fr, fi = a.fr[lo:hi:hi], a.fi[lo:hi:hi]
 			}
 			pull := solveInner(a.tr[lo:hi:hi], a.ti[lo:hi:hi], st.x[lo:hi:hi], st.v[lo:hi:hi],
-				p.ir[lo:hi:hi], p.ii[lo:hi:hi], a.kappa[lo:hi:hi], fr, fi, el.rate+sr, si)
+				p.ir[lo:hi:hi], p.ii[lo:hi:hi], a.kappa[lo:hi:hi], a.omega2[lo:hi:hi], fr, fi, ua+half.sign*ub, p.s)
 			if el.end[0] >= 0 {
-				a.rh[el.end[0]] -= pull
+				a.rh[el.end[0]] += pull
 			}
 			if el.end[1] >= 0 {
-				a.rh[el.end[1]] -= complex(half.sign, 0) * pull
+				a.rh[el.end[1]] += complex(half.sign, 0) * pull
 			}
 		}
 	}
@@ -248,28 +257,30 @@ func (a *arrow) apply(p *shifted, st *state, ld *load) {
 	a.update(p, st)
 }
 
-// solveInner writes (f - v - (g+s) x)/d into tr, ti and returns its pull on the
-// element's first end. fr, fi may be nil.
-func solveInner(tr, ti, x, v, ir, ii, ka, fr, fi []float64, gr, si float64) complex128 {
+// solveInner writes t = (omega^2 x + kappa u - s v + f)/d into tr, ti and returns
+// the pull of x - t on the element's first end. fr, fi may be nil.
+func solveInner(tr, ti, x, v, ir, ii, ka, w2, fr, fi []float64, u float64, s complex128) complex128 {
 	var ar, ai float64
 	n := len(tr)
-	ti, x, v, ir, ii, ka = ti[:n], x[:n], v[:n], ir[:n], ii[:n], ka[:n]
+	sr, si := real(s), imag(s)
+	ti, x, v, ir, ii, ka, w2 = ti[:n], x[:n], v[:n], ir[:n], ii[:n], ka[:n], w2[:n]
 	if fr == nil {
 		for k := range tr {
-			xk, a, b := x[k], ir[k], ii[k]
-			r, i := -v[k]-gr*xk, -si*xk
-			t, u := r*a-i*b, r*b+i*a
-			tr[k], ti[k] = t, u
-			ar, ai = ar+ka[k]*t, ai+ka[k]*u
+			xk, vk, c, a, b := x[k], v[k], ka[k], ir[k], ii[k]
+			r, i := w2[k]*xk+c*u-sr*vk, -si*vk
+			t, q := r*a-i*b, r*b+i*a
+			tr[k], ti[k] = t, q
+			ar, ai = ar+c*(xk-t), ai-c*q
 		}
 		return complex(ar, ai)
 	}
 	fr, fi = fr[:n], fi[:n]
 	for k := range tr {
-		r, i := fr[k]-v[k]-gr*x[k], fi[k]-si*x[k]
-		t, u := r*ir[k]-i*ii[k], r*ii[k]+i*ir[k]
-		tr[k], ti[k] = t, u
-		ar, ai = ar+ka[k]*t, ai+ka[k]*u
+		c := ka[k]
+		r, i := w2[k]*x[k]+c*u-sr*v[k]+fr[k], fi[k]-si*v[k]
+		t, q := r*ir[k]-i*ii[k], r*ii[k]+i*ir[k]
+		tr[k], ti[k] = t, q
+		ar, ai = ar+c*(x[k]-t), ai-c*q
 	}
 	return complex(ar, ai)
 }
@@ -279,9 +290,9 @@ func solveInner(tr, ti, x, v, ir, ii, ka, fr, fi []float64, gr, si float64) comp
 func (a *arrow) endRight(p *shifted, st *state, loaded bool) {
 	n := a.inner
 	for i := range a.rows {
-		r := -complex(a.mass[i], 0) * (complex(st.v[n+i], 0) + p.s*complex(st.x[n+i], 0))
+		r := -p.s * complex(a.mass[i]*st.v[n+i], 0)
 		for _, t := range a.rows[i] {
-			r -= complex(t.c*st.x[n+t.col], 0)
+			r += complex(t.k*st.x[n+t.col], 0)
 		}
 		if loaded {
 			r += complex(a.fr[n+i], a.fi[n+i])
@@ -290,36 +301,30 @@ func (a *arrow) endRight(p *shifted, st *state, loaded bool) {
 	}
 	for b := range a.brackets {
 		k := &a.brackets[b]
-		a.rh[k.end] -= complex(k.k*st.r[b], 0) / (complex(k.k/k.c, 0) + p.s)
+		a.rh[k.end] += complex(k.k*(st.x[n+k.end]-st.r[b]), 0) * p.s / (complex(k.k/k.c, 0) + p.s)
 	}
 }
 
-// update adds the solution to the state: first brackets and end points, then the
+// update adds the increment to the state: first brackets and end points, then the
 // inner coordinates.
 func (a *arrow) update(p *shifted, st *state) {
-	n, c2, nu := a.inner, 2*p.c, p.nu
+	n := a.inner
 	for b := range a.brackets {
 		k := &a.brackets[b]
 		rho := complex(k.k/k.c, 0)
-		q := (rho*a.us[k.end] - complex(st.r[b], 0)) / (rho + p.s)
-		st.r[b] = nu*st.r[b] + real(c2*q)
+		q := rho * (a.us[k.end] - complex(st.x[n+k.end]-st.r[b], 0)) / (rho + p.s)
+		st.r[b] += real(p.c * q)
 	}
-	cr, ci := real(c2), imag(c2)
-	cs := c2 * p.s
-	dr, di := real(cs), imag(cs)
-	is := 1 / p.s
-	i1, i2 := c2*is, c2*is*is // integrals: z = (x - z0)/s, y = (z - y0)/s
-	for i := 0; i < a.ends; i++ {
-		ur, ui := real(a.us[i]), imag(a.us[i])
-		x := st.x[n+i]
+	for i, u := range a.us {
+		x, v := st.x[n+i], st.v[n+i]
 		if st.z != nil {
-			z := st.z[n+i]
-			st.y[n+i] = (nu-real(i1))*st.y[n+i] + real(i2*(a.us[i]-complex(z, 0)))
-			st.z[n+i] = nu*z + real(i1*(a.us[i]-complex(z, 0)))
-			// y uses z_sol = (x_sol - z0)/s, so y_sol = (z_sol - y0)/s.
+			// Of z = int x it is (w - x)/s, of y = int z ((w - x)/s - z)/s.
+			q := (u - complex(x, 0)) / p.s
+			st.y[n+i] += real(p.c * (q - complex(st.z[n+i], 0)) / p.s)
+			st.z[n+i] += real(p.c * q)
 		}
-		st.x[n+i] = nu*x + cr*ur - ci*ui
-		st.v[n+i] = nu*st.v[n+i] + cr*x + dr*ur - di*ui
+		st.x[n+i] = x + real(p.c*u)
+		st.v[n+i] = v + real(p.c*(complex(v, 0)+p.s*u))
 	}
 	for e := range a.elements {
 		el := &a.elements[e]
@@ -333,65 +338,45 @@ func (a *arrow) update(p *shifted, st *state) {
 		for _, half := range el.halves() {
 			lo, hi := half.lo, half.hi
 			u := ua + complex(half.sign, 0)*ub
-			if st.z == nil {
-				finishAdd(st.x[lo:hi:hi], st.v[lo:hi:hi], a.tr[lo:hi:hi], a.ti[lo:hi:hi], p.ir[lo:hi:hi], p.ii[lo:hi:hi],
-					a.kappa[lo:hi:hi], u, c2, cs, nu)
-				continue
+			if st.z != nil {
+				addIntegrals(st.z[lo:hi:hi], st.y[lo:hi:hi], st.x[lo:hi:hi], a.tr[lo:hi:hi], a.ti[lo:hi:hi],
+					p.ir[lo:hi:hi], p.ii[lo:hi:hi], a.kappa[lo:hi:hi], u, p.c, p.s)
 			}
-			finishInner(a.tr[lo:hi:hi], a.ti[lo:hi:hi], p.ir[lo:hi:hi], p.ii[lo:hi:hi], a.kappa[lo:hi:hi], real(u), imag(u))
-			addIntegrals(st.z[lo:hi:hi], st.y[lo:hi:hi], a.tr[lo:hi:hi], a.ti[lo:hi:hi], i1, i2, nu)
-			addInner(st.x[lo:hi:hi], st.v[lo:hi:hi], a.tr[lo:hi:hi], a.ti[lo:hi:hi], c2, cs, nu)
+			addInner(st.x[lo:hi:hi], st.v[lo:hi:hi], a.tr[lo:hi:hi], a.ti[lo:hi:hi],
+				p.ir[lo:hi:hi], p.ii[lo:hi:hi], a.kappa[lo:hi:hi], u, p.c, p.c*p.s)
 		}
 	}
 }
 
-// finishInner takes the ends' pull off the inner solution: t -= kappa u/d.
-func finishInner(tr, ti, ir, ii, ka []float64, ur, ui float64) {
-	n := len(tr)
-	ti, ir, ii, ka = ti[:n], ir[:n], ii[:n], ka[:n]
-	for k := range tr {
-		c, a, b := ka[k], ir[k], ii[k]
-		tr[k] -= c * (ur*a - ui*b)
-		ti[k] -= c * (ur*b + ui*a)
-	}
-}
-
-// finishAdd is finishInner and addInner in one pass, for runs without integrals.
-func finishAdd(x, v, tr, ti, ir, ii, ka []float64, u, c2, cs complex128, nu float64) {
-	ur, ui, cr, ci, dr, di := real(u), imag(u), real(c2), imag(c2), real(cs), imag(cs)
+// addInner takes the ends' pull off the inner solution, w = t - kappa u/d, and adds
+// Re c w to x and Re c (v + s w) to v.
+func addInner(x, v, tr, ti, ir, ii, ka []float64, u, c, cs complex128) {
+	ur, ui, cr, ci, dr, di := real(u), imag(u), real(c), imag(c), real(cs), imag(cs)
 	n := len(x)
 	v, tr, ti, ir, ii, ka = v[:n], tr[:n], ti[:n], ir[:n], ii[:n], ka[:n]
+	keep := 1 + cr
 	for k := range x {
-		c, a, b, x0 := ka[k], ir[k], ii[k], x[k]
-		sr := tr[k] - c*(ur*a-ui*b)
-		si := ti[k] - c*(ur*b+ui*a)
-		x[k] = nu*x0 + cr*sr - ci*si
-		v[k] = nu*v[k] + cr*x0 + dr*sr - di*si
+		p, a, b := ka[k], ir[k], ii[k]
+		wr := tr[k] - p*(ur*a-ui*b)
+		wi := ti[k] - p*(ur*b+ui*a)
+		x[k] += cr*wr - ci*wi
+		v[k] = keep*v[k] + dr*wr - di*wi
 	}
 }
 
-// addIntegrals updates z = int x and y = int z: z_sol = (x_sol - z)/s,
-// y_sol = (z_sol - y)/s.
-func addIntegrals(z, y, tr, ti []float64, i1, i2 complex128, nu float64) {
-	i1r, i1i, i2r, i2i := real(i1), imag(i1), real(i2), imag(i2)
+// addIntegrals updates z = int x by Re c (w - x)/s and y = int z by
+// Re c ((w - x)/s - z)/s, before x moves on.
+func addIntegrals(z, y, x, tr, ti, ir, ii, ka []float64, u, c, s complex128) {
+	c1, c2 := c/s, c/(s*s)
+	ur, ui := real(u), imag(u)
 	n := len(z)
-	y, tr, ti = y[:n], tr[:n], ti[:n]
+	y, x, tr, ti, ir, ii, ka = y[:n], x[:n], tr[:n], ti[:n], ir[:n], ii[:n], ka[:n]
 	for k := range z {
-		sr, si := tr[k]-z[k], ti[k]
-		y[k] = (nu-i1r)*y[k] + i2r*sr - i2i*si
-		z[k] = nu*z[k] + i1r*sr - i1i*si
-	}
-}
-
-// addInner updates x and v = x_old + s x_sol.
-func addInner(x, v, tr, ti []float64, c2, cs complex128, nu float64) {
-	cr, ci, dr, di := real(c2), imag(c2), real(cs), imag(cs)
-	n := len(x)
-	v, tr, ti = v[:n], tr[:n], ti[:n]
-	for k := range x {
-		x0, sr, si := x[k], tr[k], ti[k]
-		x[k] = nu*x0 + cr*sr - ci*si
-		v[k] = nu*v[k] + cr*x0 + dr*sr - di*si
+		p, a, b := ka[k], ir[k], ii[k]
+		wr := tr[k] - p*(ur*a-ui*b) - x[k]
+		wi := ti[k] - p*(ur*b+ui*a)
+		y[k] += real(c2)*wr - imag(c2)*wi - real(c1)*z[k]
+		z[k] += real(c1)*wr - imag(c1)*wi
 	}
 }
 

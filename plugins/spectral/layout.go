@@ -49,7 +49,7 @@ func halfWaves(effort, jump int) (least, most float64) {
 		most = [3]float64{48, 96, 192}[effort]
 	}
 	if jump <= 1 {
-		least = [3]float64{16, 28, 56}[effort]
+		least = [3]float64{18, 34, 68}[effort]
 	}
 	return least, most
 }

@@ -124,12 +124,11 @@ func (j *job) baseSteps() {
 func (j *job) size() error {
 	_, inner, ends := j.lay.count(j.m)
 	n, rec, spots := float64(inner+ends), 0.0, 0.0
-	fieldRows, _ := j.m.FieldRows()
 	for c := range j.m.Channels {
 		ch := &j.m.Channels[c]
 		rows := j.m.Timing.Rows
 		if ch.Along {
-			rows = fieldRows
+			rows, _ = j.m.FieldRows()
 		}
 		rec += float64(rows) * float64(len(ch.Spots))
 		spots += float64(len(ch.Spots))

@@ -114,12 +114,17 @@ func (r *runner) prepare() error {
 	r.asked = len(t.Collects)
 	t.Collects = append(append([]scenario.Collect(nil), t.Collects...), watchFigures(&t)...)
 	var err error
-	r.session, err = measure.New(&t, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples})
+	r.session, err = measure.New(&t, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples, RunSamples: noSamples})
 	if err != nil {
 		r.refuse(err)
 	}
 	return nil
 }
+
+// noSamples keeps records from being drawn over the doubtful inputs: a run for
+// each draw would take minutes, and the language carries doubt to first order
+// unless it is told to sample. Where first order does not hold, the answer says so.
+const noSamples = 1
 
 // watchFigures asks for peak, rms and final value of every watched quantity, so
 // that these carry the doubt of the inputs like any collected value.

@@ -71,7 +71,7 @@ func barPlaces(v, bar float64) int {
 	}
 	most := 9
 	if v != 0 {
-		most = max(0, 7-int(math.Floor(math.Log10(math.Abs(v)))))
+		most = max(0, 5-int(math.Floor(math.Log10(math.Abs(v)))))
 	}
 	return max(0, min(places, most))
 }
