@@ -25,6 +25,17 @@ func (r *resolver) resolveAsked() {
 	r.resolveLater()
 }
 
+// writtenUnit is the unit of the first of the limits that is a plain quantity:
+// people are shown the value in the unit that they asked in.
+func writtenUnit(limits ...syntax.Expr) string {
+	for _, l := range limits {
+		if n, ok := l.(*syntax.Number); ok && n.Unit != nil {
+			return n.Unit.Text
+		}
+	}
+	return ""
+}
+
 // measured is the scope of an expression over measures.
 func measured(a *asked, what string) *scope { return &scope{what: what, measures: a} }
 
@@ -47,6 +58,7 @@ func (r *resolver) require(q *syntax.Require) {
 	case "outside":
 		out.Relation = scenario.Outside
 	}
+	out.Shown = writtenUnit(q.Limit, q.High, q.Low)
 	ok := !v.bad
 	end := q.Value.Place()
 	if q.Limit != nil {

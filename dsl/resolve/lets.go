@@ -160,7 +160,7 @@ func (r *resolver) stack(e *letEntry) { r.letStack = append(r.letStack, e) }
 
 // maxLetChain bounds how many lets may hang on one another against the order of
 // the text.
-const maxLetChain = 50_000
+const maxLetChain = 20_000
 
 // circle reports the lets that read one another, once, at the first of them in the text.
 func (r *resolver) circle(e *letEntry) {

@@ -137,6 +137,7 @@ type resolver struct {
 	tables map[string]*csvFile
 	typed  map[*diag.File]*diag.File // files made of values from outside, and what was typed
 	depth  int                       // of the expression being compiled
+	wanted *unit.Dim                 // of the number that is being read, nil where nothing is known
 	bent   bool                      // some stock has a bending stiffness
 	// partsUnsure: a line could not be read whole, so that a part may exist unseen.
 	partsUnsure bool

@@ -52,12 +52,31 @@ func (r *resolver) unit(u *syntax.Unit, number string) (unit.Unit, bool) {
 	if len(span.Text()) == len(u.Text) {
 		span.Start, span.End = u.Span.Start+read.err.Start, u.Span.Start+read.err.End
 	}
-	hint := read.err.Hint
+	hint := r.fitting(read.err.Hint)
 	if hint != "" && number != "" {
 		hint = number + " " + hint
 	}
 	r.errorAt(span, "unknown-unit", read.err.What, "", hint)
 	return unit.Unit{}, false
+}
+
+// pounds are the units that people mean when they mix up mass and weight.
+var pounds = [...][2]string{{"lb", "lbf"}, {"lbf", "lb"}, {"kgf", "kg"}}
+
+// fitting is a hint for a unit, with mass and weight exchanged where only that
+// fits what is wanted.
+func (r *resolver) fitting(hint string) string {
+	u, err := unit.Parse(hint)
+	if err != nil || r.wanted == nil || u.Dim == *r.wanted {
+		return hint
+	}
+	for _, swap := range pounds {
+		text := swapUnit(hint, swap[0], swap[1])
+		if u, err := unit.Parse(text); err == nil && u.Dim == *r.wanted {
+			return text
+		}
+	}
+	return hint
 }
 
 // number compiles a number as written; shared is the unit of its list, or nil.
@@ -87,7 +106,11 @@ func (r *resolver) number(n *syntax.Number, shared *syntax.Unit) value {
 
 // want compiles an expression that must be of a kind; subject is what wants it.
 func (r *resolver) want(e syntax.Expr, sc *scope, k unit.Kind, subject string) value {
+	if isNumber(e) {
+		r.wanted = &k.Dim
+	}
 	v := r.compile(e, sc)
+	r.wanted = nil
 	return r.check(v, e, k, subject)
 }
 
@@ -179,8 +202,8 @@ func (r *resolver) meant(v value, e syntax.Expr, k unit.Kind) string {
 	if !ok || n.Unit == nil {
 		return ""
 	}
-	for _, swap := range [...][2]string{{"lb", "lbf"}, {"lbf", "lb"}, {"kgf", "kg"}, {"N", "kg"}, {"m", "mm"}} {
-		if text := swapUnit(n.Unit.Text, swap[0], swap[1]); text != n.Unit.Text && swap[0] != "N" && swap[0] != "m" {
+	for _, swap := range pounds {
+		if text := swapUnit(n.Unit.Text, swap[0], swap[1]); text != n.Unit.Text {
 			if u, err := unit.Parse(text); err == nil && u.Dim == k.Dim {
 				return n.Text + " " + text
 			}

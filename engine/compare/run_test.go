@@ -308,6 +308,7 @@ func TestCancel(t *testing.T) {
 	fakes := three()
 	var once sync.Once
 	ctx, cancel := context.WithCancel(context.Background())
+	defer cancel()
 	hang := make(chan struct{})
 	for _, f := range fakes {
 		f.before = func(ctx context.Context, level int) error {
@@ -328,9 +329,9 @@ func TestCancel(t *testing.T) {
 		t.Errorf("took %v to stop", time.Since(start))
 	}
 	close(hang)
-	ctx, cancel = context.WithCancel(context.Background())
-	cancel()
-	if out, err := Run(ctx, plain(200, scenario.Displacement), asSolvers(three()), Options{}); !errors.Is(err, context.Canceled) || out != nil {
+	ended, end := context.WithCancel(context.Background())
+	end()
+	if out, err := Run(ended, plain(200, scenario.Displacement), asSolvers(three()), Options{}); !errors.Is(err, context.Canceled) || out != nil {
 		t.Errorf("cut before the start: %v", err)
 	}
 }

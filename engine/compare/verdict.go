@@ -72,16 +72,20 @@ func rule(n int, pairs []Pair, agree, alone float64) ruling {
 }
 
 // oddOneOut is the voice that is in every differing pair while all pairs
-// without it agree; -1 where no single voice is, or where only two speak.
+// without it agree, and agree more closely than the differences: that two voices
+// with wide bars agree speaks for neither. It is -1 where no single voice is
+// that, or where only two speak.
 func oddOneOut(n int, pairs []Pair, differing int) int {
 	if n < 3 {
 		return -1
 	}
 	in := map[int]int{}
+	least := math.Inf(1) // smallest difference that is a finding, as a share
 	for _, p := range pairs {
 		if p.differs() {
 			in[p.A]++
 			in[p.B]++
+			least = math.Min(least, p.Ratio*p.Resolving)
 		}
 	}
 	candidates := make([]int, 0, len(in))
@@ -96,7 +100,7 @@ func oddOneOut(n int, pairs []Pair, differing int) int {
 		}
 		rest := true
 		for _, p := range pairs {
-			rest = rest && (p.A == v || p.B == v || p.Ratio <= ratioAgree)
+			rest = rest && (p.A == v || p.B == v || p.Ratio <= ratioAgree && p.Resolving < least)
 		}
 		if !rest {
 			continue

@@ -47,6 +47,16 @@ func TestHistories(t *testing.T) {
 	}
 }
 
+func TestTableAtNoPlace(t *testing.T) {
+	rows := &Table{X: []float64{0, 1}, Y: []float64{2, 4}}
+	if v := rows.At(math.NaN()); !math.IsNaN(v) {
+		t.Errorf("at NaN: %g", v)
+	}
+	if v := (&Table{}).At(1); v != 0 {
+		t.Errorf("of no rows: %g", v)
+	}
+}
+
 func TestOperations(t *testing.T) {
 	for _, c := range []struct {
 		op   Op

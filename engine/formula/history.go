@@ -55,9 +55,12 @@ type Table struct {
 	Y    []float64 `json:"y"`    // same length, SI
 }
 
-// At is the table's value at x.
+// At is the table's value at x; NaN where x is.
 func (t *Table) At(x float64) float64 {
 	n := len(t.X)
+	if math.IsNaN(x) {
+		return x
+	}
 	if n == 0 || x < t.X[0] || x > t.X[n-1] {
 		return 0
 	}

@@ -90,6 +90,23 @@ func New(t *scenario.Template, override map[string]float64, options Options) (*S
 	return s, s.ask()
 }
 
+// WatchPeaks are statements that ask for the peak of every quantity of every
+// watch, in the order of a mesh's channels, for whoever wants those with the
+// doubt of the lets beside the numerical bound: append them to a template's
+// Collects before New.
+func WatchPeaks(t *scenario.Template) []scenario.Collect {
+	var out []scenario.Collect
+	for i := range t.Model.Watches {
+		w := &t.Model.Watches[i]
+		for _, q := range w.Quantities {
+			source := "peak(" + w.Name + "." + q.String() + ")"
+			m := scenario.MeasureOf[formula.Program]{Kind: scenario.Peak, Source: source, Watch: i, Quantity: q, Line: -1, Segment: -1}
+			out = append(out, scenario.Collect{Source: source, Unit: q.Unit(), Value: formula.Arg(0), Measures: []scenario.MeasureOf[formula.Program]{m}})
+		}
+	}
+	return out
+}
+
 // Centre is the scenario at the values of its lets as they stand.
 func (s *Session) Centre() *Point { return s.centre }
 

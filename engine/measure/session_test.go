@@ -3,6 +3,7 @@ package measure
 import (
 	"context"
 	"errors"
+	"fmt"
 	"math"
 	"strings"
 	"testing"
@@ -354,6 +355,37 @@ func TestWatchWithoutTheQuantity(t *testing.T) {
 	tmpl.Collects = []scenario.Collect{{Value: arg(0), Measures: []scenario.MeasureOf[formula.Program]{m}}}
 	if _, err := New(tmpl, nil, Options{}); err == nil || !strings.Contains(err.Error(), "slope") {
 		t.Errorf("%v", err)
+	}
+}
+
+func TestWatchPeaks(t *testing.T) {
+	tmpl := template()
+	tmpl.Collects = WatchPeaks(tmpl)
+	_, a := answer(t, tmpl, nil, Options{})
+	n := a.Collected[0].Value
+	near(t, "peak", n.Value, 0.025, n.Numerical)
+	near(t, "its doubt", n.InputU, 0.025*math.Hypot(0.01, 0.01), 1e-5)
+	if len(a.Collected) != 1 || n.Unit != "m" || a.Changes == "" {
+		t.Errorf("%+v %q", a.Collected, a.Changes)
+	}
+}
+
+func TestWorkersDoNotMatter(t *testing.T) {
+	text := ""
+	for _, workers := range []int{1, 4} {
+		tmpl := template()
+		tmpl.Collects = []scenario.Collect{
+			{Value: arg(0), Measures: []scenario.MeasureOf[formula.Program]{measureOf(scenario.Final)}},
+			{Value: arg(0), Measures: []scenario.MeasureOf[formula.Program]{mode(scenario.DampingRatio, 1, 2)}},
+			{Value: formula.Sub(arg(0), arg(1)), Measures: []scenario.MeasureOf[formula.Program]{measureOf(scenario.Peak), measureOf(scenario.RMS)}},
+		}
+		_, a := answer(t, tmpl, nil, Options{Workers: workers, RunSamples: 30, ExactSamples: 30, Sample: true})
+		got := fmt.Sprintf("%+v", []doubt.Number{a.Collected[0].Value, a.Collected[1].Value, a.Collected[2].Value})
+		if text == "" {
+			text = got
+		} else if got != text {
+			t.Errorf("%d workers: %s\none: %s", workers, got, text)
+		}
 	}
 }
 

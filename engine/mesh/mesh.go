@@ -194,10 +194,7 @@ func (c *Channel) Name() string { return c.Watch + "." + c.Quantity.String() }
 // FieldRows is the number of rows of a picture over x and t, and its stride in
 // rows of the time grid.
 func (m *Mesh) FieldRows() (rows, stride int) {
-	stride = 1
-	for (m.Timing.Rows-1)/stride+1 > maxFieldRows {
-		stride++
-	}
+	stride = max(1, (m.Timing.Rows-1+maxFieldRows-2)/(maxFieldRows-1))
 	return (m.Timing.Rows-1)/stride + 1, stride
 }
 

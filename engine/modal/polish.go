@@ -255,40 +255,65 @@ func (l *list) merge(c complex128, afresh bool) bool {
 	}
 	l.tried = append(l.tried, c)
 	abs := cmplx.Abs(c)
-	r := 1e-2 * abs
-	near := 0
+	// The circle shrinks until it holds two, or as many as coincide.
+	for r := 1e-2 * abs; r > 3e-8*abs; r /= 3 {
+		near, clear := l.known(c, r)
+		if !clear {
+			continue
+		}
+		n, m, ok := l.moments(c, r)
+		if !ok { // a zero near the circle
+			continue
+		}
+		if n < near || n == near && !afresh {
+			return false
+		}
+		spread := cmplx.Abs(m[2]/complex(float64(n), 0) - m[1]*m[1]/complex(float64(n*n), 0))
+		if n <= 2 || spread < 1e-14*abs*abs {
+			return l.replace(c, r, n, m)
+		}
+	}
+	return false
+}
+
+// known counts the known zeros within r of c, and says whether none is so near
+// the circle that the sum along it would not settle.
+func (l *list) known(c complex128, r float64) (n int, clear bool) {
 	for _, z := range l.roots {
-		for _, y := range []complex128{z, cmplx.Conj(z)} {
-			switch d := cmplx.Abs(y - c); {
-			case d < 10*same*abs:
-				near++
-			default:
-				r = math.Min(r, 0.4*d)
+		both := []complex128{z, cmplx.Conj(z)}
+		if imag(z) == 0 {
+			both = both[:1]
+		}
+		for _, y := range both {
+			d := cmplx.Abs(y - c)
+			if d > 0.5*r && d < 2*r {
+				return 0, false
 			}
-			if imag(z) == 0 {
-				break
+			if d < r {
+				n++
 			}
 		}
 	}
-	var m [3]complex128
-	const points = 48 // 0.4^48 is below rounding
+	return n, true
+}
+
+// moments are the sums of (z-c)^k, k = 0, 1, 2, over the zeros within r of c.
+func (l *list) moments(c complex128, r float64) (n int, m [3]complex128, ok bool) {
+	const points = 48 // 0.5^48 is below rounding
 	for k := 0; k < points; k++ {
 		sin, cos := math.Sincos(2 * math.Pi * (float64(k) + 0.5) / points)
 		d := complex(r*cos, r*sin)
 		_, slope, ok := l.e.delta(c + d)
 		if !ok {
-			return false
+			return 0, m, false
 		}
 		f := slope * d / points
 		m[0] += f
 		m[1] += f * d
 		m[2] += f * d * d
 	}
-	n := int(math.Round(real(m[0])))
-	if cmplx.Abs(m[0]-complex(float64(n), 0)) > 0.02 || n < near || n == near && !afresh {
-		return false
-	}
-	return l.replace(c, r, n, m)
+	n = int(math.Round(real(m[0])))
+	return n, m, cmplx.Abs(m[0]-complex(float64(n), 0)) < 0.02
 }
 
 // replace puts the n zeros that the moments around c tell in the place of the

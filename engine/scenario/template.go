@@ -52,6 +52,7 @@ type Require struct {
 	Text     string
 	Clause   string
 	Unit     string // SI unit of value and limits
+	Shown    string // unit in which the limit is written, for people; "": none
 	Relation Relation
 	Value    formula.Program
 	Limit    formula.Program

@@ -27,6 +27,7 @@
 // T du/dx; at a support or a joint that carries something it is what the line
 // exerts on it: the sum over the pieces that meet there of +T du/dx (piece
 // starts there) and -T du/dx (piece ends there). slope at a node where two
-// pieces meet is that of the piece after it. moment is 0 on a string. tension
+// pieces meet is that of the piece after it. At a point force inside a piece,
+// where the slope jumps, slope and force are those just after it. moment is 0 on a string. tension
 // is the piece's tension.
 package solver

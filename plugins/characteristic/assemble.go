@@ -55,6 +55,7 @@ func assemble(m *mesh.Mesh, lay *Layout) (*run, error) {
 	r.hrel = lay.Step / longest
 	const ulps = 8 * 0x1p-52
 	r.tol = math.Max(1e-9*lay.Step, ulps*m.Timing.End())
+	r.coarsest = lay.coarsest(m)
 	lag := window(m)
 	r.makeLines(lay, lag)
 	loads := r.makeLoads(lay, lag)
@@ -66,6 +67,9 @@ func assemble(m *mesh.Mesh, lay *Layout) (*run, error) {
 	cost := 1
 	for _, g := range r.groups {
 		cost += g.substeps * len(g.clusters)
+	}
+	for _, n := range lay.Cells {
+		cost += n / 4
 	}
 	r.checkEvery = max(1, 20000/cost)
 	r.series = solver.NewSeries(m)
@@ -80,8 +84,8 @@ func (r *run) makeLines(lay *Layout, lag float64) {
 		p := &m.Pieces[i]
 		w := &line{length: p.Length, c: p.WaveSpeed(), z: p.Impedance(), tau: p.TravelTime(), tension: p.Tension,
 			mass: p.MassPerLength, gamma: p.Viscous / (2 * p.MassPerLength), from: p.From, to: p.To, stub: lay.Stub[i]}
-		w.sent[0] = r.newSent(lay, p.From, w.tau+2*lag+10*lay.Step)
-		w.sent[1] = r.newSent(lay, p.To, w.tau+2*lag+10*lay.Step)
+		w.sent[0] = r.newSent(lay, p.From, w.tau+2*lag+10*lay.Step+r.coarsest)
+		w.sent[1] = r.newSent(lay, p.To, w.tau+2*lag+10*lay.Step+r.coarsest)
 		r.launch(w, p)
 		for k := range m.Rolls {
 			if roll, ok := rollsOn(m, &m.Rolls[k], p, w); ok {
@@ -98,7 +102,7 @@ func (r *run) newSent(lay *Layout, node int, span float64) *history {
 	return newHistory(delta, span, room, r.tol)
 }
 
-// history makes a load of a bound force: at place x, times share.
+// forceOf makes a load of a bound force: at place x, times share.
 func forceOf(h *scenario.History, end, x, share, tol float64) *load {
 	program := h.Value
 	return &load{value: func(t float64) float64 { return share * program.At(t, x) }, breaks: breaksOf(h.Breaks, end, tol)}
@@ -164,7 +168,7 @@ func (r *run) addSource(w *line, x float64, l *load, lag float64) {
 	if w.stub {
 		delta = w.sent[0].delta
 	}
-	span := w.tau + 2*lag + float64(20+ahead)*r.step
+	span := w.tau + 2*lag + float64(20+ahead)*r.step + r.coarsest
 	s.h = newHistory(delta, span, min(4096, max(24, ringSize(delta, span)/6)), r.tol)
 	s.per = int(math.Round(r.step / delta))
 	for i := 0; i < ahead*s.per; i++ {
@@ -200,7 +204,6 @@ func (r *run) makeLattices(lay *Layout, lag float64) {
 			continue
 		}
 		span := 2*lag + 12*lay.Step + 12*w.tau/float64(n)
-		r.coarsest = math.Max(r.coarsest, w.tau/float64(n))
 		if pressed[i] {
 			w.wind = newWind(w, n, span, r.tol, places[i])
 			for k := range m.Presses {

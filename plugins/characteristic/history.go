@@ -30,8 +30,9 @@ const (
 	wide   = 6
 	narrow = 4
 	// skip: samples nearer to a break than this share of a step are left out
-	// of stencils; the break's own value stands for them. Chosen.
-	skip = 1e-3
+	// of stencils; the break's own value stands for them. Chosen: differences
+	// of values closer than that blow up what separates the two computations.
+	skip = 0.2
 )
 
 func newHistory(delta, span float64, breaks int, tol float64) *history {
@@ -127,6 +128,7 @@ func (h *history) at(t float64, side, d int) float64 {
 			kmax = k2
 		}
 	}
+	kmax = max(kmax, kmin-1) // two breaks with nothing between
 	if k-2 >= kmin && k+3 <= kmax {
 		var v [wide]float64
 		for j := range v {

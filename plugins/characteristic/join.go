@@ -120,11 +120,22 @@ func (r *run) newJoint(i int, at []mesh.Attachment, loads []*load, lay *Layout, 
 		j.r += w.z
 		j.ports = append(j.ports, q)
 	}
-	if len(at) == 0 {
-		j.own = newHistory(delta, 2*window(r.m)+12*lay.Step, 64, r.tol)
+	if r.watched(i) {
+		j.own = newHistory(delta, 2*window(r.m)+12*lay.Step+r.coarsest, 64, r.tol)
 	}
 	r.addBreaks(&j)
 	return j
+}
+
+func (r *run) watched(node int) bool {
+	for i := range r.m.Channels {
+		for _, s := range r.m.Channels[i].Spots {
+			if s.Node == node {
+				return true
+			}
+		}
+	}
+	return false
 }
 
 // addBreaks lists the times at which something new reaches a node that no
@@ -171,8 +182,7 @@ func (r *run) addBreaks(j *joint) {
 	}
 }
 
-// jerk is the lowest derivative of a prescribed motion that jumps at t, as far
-// as differences over a thousandth of a step show: 0, 1 or 2 for later ones.
+// jerk is the lowest derivative of a prescribed motion that jumps at t.
 func (r *run) jerk(j *joint, t float64) int {
 	n := &r.m.Nodes[j.node]
 	at := func(t float64) float64 {
@@ -181,17 +191,7 @@ func (r *run) jerk(j *joint, t float64) int {
 		}
 		return j.motion.Displacement(t)
 	}
-	e := 1e-3 * r.step
-	a, b, c, d := at(t-2*e), at(t-e), at(t+e), at(t+2*e)
-	before, after := b-a, d-c
-	size := math.Abs(before) + math.Abs(after)
-	switch {
-	case math.Abs(c-b) > 4*size:
-		return 0
-	case math.Abs(after-before) > 0.1*size:
-		return 1
-	}
-	return 2
+	return jumps(at, t, r.step, size1(at, breaksOf(j.motion.Breaks, math.Inf(1), r.tol)))
 }
 
 // addTies gives a cluster its links and brackets.

@@ -213,16 +213,27 @@ func fits(m *mesh.Mesh, lay *Layout) bool {
 	return true
 }
 
+// coarsest is the longest lattice step, s; records wait for it.
+func (lay *Layout) coarsest(m *mesh.Mesh) float64 {
+	most := 0.0
+	for i, n := range lay.Cells {
+		if n > 0 {
+			most = math.Max(most, m.Pieces[i].TravelTime()/float64(n))
+		}
+	}
+	return most
+}
+
 // size is what a run costs.
 func size(m *mesh.Mesh, lay *Layout) solver.Plan {
-	lag := window(m)
+	lag, more := window(m), 10*lay.Step+lay.coarsest(m)
 	steps := math.Ceil((m.Timing.End()+lag)/lay.Step) + ahead
 	var bytes, work, cells float64
 	ring := func(delta, span float64) float64 { return 2 * (span/delta + 2*wide + 8) }
 	for i := range m.Pieces {
 		p := &m.Pieces[i]
 		for _, node := range [2]int{p.From, p.To} {
-			n := ring(lay.Step/float64(lay.Substeps[node]), p.TravelTime()+2*lag+10*lay.Step)
+			n := ring(lay.Step/float64(lay.Substeps[node]), p.TravelTime()+2*lag+more)
 			cells += n / 2
 			bytes += n * 8 * 1.6
 			work += 12 * float64(lay.Substeps[node])
@@ -235,7 +246,7 @@ func size(m *mesh.Mesh, lay *Layout) solver.Plan {
 	}
 	for i := range m.Pushes {
 		if s := m.Pushes[i].At; s.Node < 0 {
-			bytes += 13 * ring(lay.Step, m.Pieces[s.Piece].TravelTime()+2*lag+10*lay.Step)
+			bytes += 13 * ring(lay.Step, m.Pieces[s.Piece].TravelTime()+2*lag+more)
 			work += 30
 		}
 	}
@@ -256,7 +267,7 @@ func size(m *mesh.Mesh, lay *Layout) solver.Plan {
 		for _, s := range ch.Spots {
 			if s.Node < 0 && lay.Cells[s.Piece] > 0 {
 				ds := m.Pieces[s.Piece].TravelTime() / float64(lay.Cells[s.Piece])
-				bytes += 32 * ring(ds, 2*lag+10*lay.Step)
+				bytes += 32 * ring(ds, 2*lag+more)
 			}
 		}
 	}

@@ -113,12 +113,12 @@ func pressedMesh(v float64) *mesh.Mesh {
 func TestPress(t *testing.T) {
 	m := pressedMesh(0)
 	m.Nodes[1].Mass = 1
-	against(t, "press", m, []int{160, 240}, 2, 1e-6, 1e-4, node(1), inside(1, 6), inside(0, 2))
+	against(t, "press", m, []int{80, 120}, 2, 1e-6, 1e-4, node(1), inside(1, 6), inside(0, 2))
 	m = pressedMesh(10)
-	against(t, "press, viscous", m, []int{160, 240}, 2, 1e-5, 1e-3, node(1), inside(1, 6), inside(0, 2))
+	against(t, "press, viscous", m, []int{80, 120}, 2, 1e-5, 1e-3, node(1), inside(1, 6), inside(0, 2))
 	m = pressedMesh(0)
 	m.Presses[0].Parts = []mesh.Part{{Piece: 1, From: 3, To: 9, Origin: 0}}
-	against(t, "press on a part", m, []int{160, 240}, 2, 1e-4, 1e-3, node(1), inside(1, 6), inside(0, 2))
+	against(t, "press on a part", m, []int{80, 160}, 2, 1e-4, 1e-3, node(1), inside(1, 6), inside(0, 2))
 }
 
 func TestStubPiece(t *testing.T) {

@@ -101,7 +101,9 @@ func (s *source) advance() {
 			phi = phi*math.Exp(-s.gamma*dt) + s.half*dt*sum
 		}
 		if mark {
-			h.mark(breakpoint{t: t1, left: phi, right: phi, weight: 1, order: s.load.order(t1, h.delta)})
+			if o := s.load.order(t1, h.delta); o <= rounded {
+				h.mark(breakpoint{t: t1, left: phi, right: phi, weight: 1, order: o})
+			}
 		}
 		t0 = t1
 	}
@@ -151,6 +153,7 @@ func gauss() (x, w [3]float64) {
 type load struct {
 	value  func(t float64) float64
 	breaks []float64
+	size   float64 // its largest magnitude, as far as known
 }
 
 func (l *load) at(t float64) float64 {
@@ -160,16 +163,51 @@ func (l *load) at(t float64) float64 {
 	return l.value(t)
 }
 
-// order is 1 where the force itself jumps at t, so that the displacement of a
-// massless place gets a corner there, and 2 where only a derivative may. The
-// probe is a thousandth of a step to either side.
+// order is the lowest derivative of a massless place's displacement that jumps
+// with the load at t: one more than of the load.
 func (l *load) order(t, delta float64) int {
-	e := 1e-3 * delta
-	a, b := l.at(t-e), l.at(t+e)
-	if math.Abs(b-a) > 0.1*math.Max(math.Abs(a), math.Abs(b)) {
-		return 1
+	if l.size == 0 {
+		l.size = size1(l.at, l.breaks)
 	}
-	return 2
+	return 1 + jumps(l.at, t, delta, l.size)
+}
+
+// size1 is the largest magnitude of a function at eight points between every
+// two of its breaks and one last unit of time.
+func size1(at func(t float64) float64, breaks []float64) float64 {
+	most := 0.0
+	for i, a := range breaks {
+		b := a + 1
+		if i+1 < len(breaks) {
+			b = breaks[i+1]
+		}
+		for k := range 8 {
+			if v := math.Abs(at(a + (b-a)*(float64(k)+0.5)/8)); v > most {
+				most = v
+			}
+		}
+	}
+	return most
+}
+
+// jumps is the lowest derivative (0 .. 2) of a function that jumps at t by more
+// than a millionth of its size in terms of one step, or 3: from the parabolas
+// through three points on either side, a 64th of a step apart.
+func jumps(at func(t float64) float64, t, delta, size float64) int {
+	e := delta / 64
+	var side [2][3]float64 // value, slope times delta, curvature times delta^2
+	for s, dir := range [2]float64{-e, e} {
+		f1, f2, f3 := at(t+dir), at(t+2*dir), at(t+3*dir)
+		steps := delta / dir
+		second := f1 - 2*f2 + f3
+		side[s] = [3]float64{3*f1 - 3*f2 + f3, (-2.5*f1 + 4*f2 - 1.5*f3) * steps, second * steps * steps}
+	}
+	for k := range 3 {
+		if !(math.Abs(side[1][k]-side[0][k]) <= 1e-6*size) {
+			return k
+		}
+	}
+	return 3
 }
 
 // rolling is a constant force on its way over one piece: at time tin it is at

@@ -134,10 +134,12 @@ func (c *cluster) arrive(q *port, r *reader, t float64) {
 
 // Strengths below weak, in shares of what set out times (step/longest travel
 // time)^(order-1), and orders above rounded are left to the interpolation.
-// Chosen; a pluck among four pieces then keeps some hundred breaks in flight.
+// Chosen; a cubic
+// beside a jump of the fourth derivative would do no better than a quintic
+// across it.
 const (
 	weak    = 1e-7
-	rounded = 5
+	rounded = 3
 )
 
 // scatter marks the break in what leaves a joint. A mass turns back a break as

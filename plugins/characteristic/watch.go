@@ -12,7 +12,7 @@ type view struct {
 	p      *line    // nil at a hung mass
 	x      float64  // m from the piece's start
 	ports  []*port  // of a node whose force on the fitting is asked
-	own    *history // of a hung mass
+	own    *history // of a node
 	taps   [2]*tap  // of wind and lattice
 	u0, v0 float64  // m, m/s at t = 0
 	slope0 float64  // slope or force before t = 0, in the channel's unit
@@ -58,9 +58,9 @@ func (r *run) viewOf(s mesh.Spot, attached [][]mesh.Attachment, q scenario.Quant
 	} else {
 		n, j := &m.Nodes[s.Node], r.joints[s.Node]
 		v.u0, v.v0 = n.Start, n.StartRate
+		v.own = j.own
 		at := attached[s.Node]
 		if len(at) == 0 {
-			v.own = j.own
 			return v
 		}
 		first := at[0]

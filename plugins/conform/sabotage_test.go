@@ -23,23 +23,20 @@ func TestSabotage(t *testing.T) {
 		lines = 8
 	}
 	solvers := []solver.Solver{differences.New(), spectral.New(), characteristic.New()}
-	scores, err := trial.Study(context.Background(), solvers, lines, passages, 20, compare.Options{Agree: 0.005, Effort: scenario.Quick, LimitWork: 100_000_000})
+	scores, err := trial.Study(context.Background(), solvers, lines, passages, 20, compare.Options{Agree: 0.005, Effort: scenario.Quick, LimitWork: 60_000_000})
 	if err != nil {
 		t.Fatal(err)
 	}
 	for i, s := range scores {
 		t.Log(s)
+		coarse := strings.Contains(s.Name, "sign") || strings.Contains(s.Name, "free") || strings.Contains(s.Name, "swapped")
 		switch {
-		case i == 0:
-			if s.Raised > 0 {
-				t.Errorf("%d false alarms on %d healthy lines", s.Raised, s.Trials)
-			}
-		case strings.Contains(s.Name, "sign") || strings.Contains(s.Name, "free"):
-			if s.Raised < s.Trials {
-				t.Errorf("%s: %d of %d missed", s.Name, s.Trials-s.Raised, s.Trials)
-			}
+		case i == 0 && s.Raised > 0:
+			t.Errorf("%d false alarms on %d healthy lines", s.Raised, s.Trials)
+		case coarse && s.Raised < s.Trials:
+			t.Errorf("%s: %d of %d missed", s.Name, s.Trials-s.Raised, s.Trials)
 		}
-		if s.Misnamed > 0 {
+		if (i == 0 || coarse) && s.Misnamed > 0 {
 			t.Errorf("%s: a healthy solver was named %d times", s.Name, s.Misnamed)
 		}
 	}

@@ -485,7 +485,7 @@ func TestOddMeshes(t *testing.T) {
 	}
 	tame := func() float64 { return math.Exp(6 * rng.NormFloat64()) }
 	answered, refused := 0, 0
-	for i := 0; i < 400; i++ {
+	for i := 0; i < 240; i++ {
 		pick := tame
 		if i%3 == 0 {
 			pick = wild
@@ -511,7 +511,7 @@ func TestOddMeshes(t *testing.T) {
 		watchNode(m, scenario.Force, rng.IntN(len(m.Nodes)), rng.IntN(3))
 		watchAt(m, scenario.Acceleration, 0, m.Pieces[0].Length*rng.Float64(), rng.IntN(3))
 		plan, err := New().Plan(m, solver.Request{Effort: rng.IntN(3)})
-		if err == nil && plan.Work > 5e6 {
+		if err == nil && plan.Work > 1e6 {
 			continue
 		}
 		res, err := New().Solve(context.Background(), m, solver.Request{}, nil)
@@ -525,7 +525,7 @@ func TestOddMeshes(t *testing.T) {
 		}
 	}
 	t.Logf("%d answered, %d refused", answered, refused)
-	if answered < 40 || refused < 40 {
+	if answered < 30 || refused < 30 {
 		t.Errorf("%d answered, %d refused: the draw proves little", answered, refused)
 	}
 }

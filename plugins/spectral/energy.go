@@ -38,8 +38,9 @@ type meter struct {
 	c       [3][]float64 // loss force of velocity, acceleration and its derivative
 	f       [4][]float64
 	rd, rdd []float64
-	held    bool // end rates of the last substep serve as the next one's start
+	held    bool // end rates of the last window serve as the next one's start
 	lastL   rates
+	w0, l0  rates // at the start of the present window
 }
 
 func newMeter(s *system, op operator, ex *excitation) *meter {
@@ -84,7 +85,7 @@ func dot(a, b []float64) float64 {
 	return s
 }
 
-// acceleration fills m.a for the present substep at tau.
+// acceleration fills m.a for the present window at tau.
 func (m *meter) acceleration(st *state, tau, h float64) {
 	if !m.ex.total.active {
 		m.op.accel(m.a, st.x, st.v, st.r, nil)
@@ -94,7 +95,7 @@ func (m *meter) acceleration(st *state, tau, h float64) {
 	m.op.accel(m.a, st.x, st.v, st.r, m.f[0])
 }
 
-// powers is the work and loss power at tau of the present substep.
+// powers is the work and loss power at tau of the present window.
 func (m *meter) powers(st *state, tau, h float64) (work, loss rates) {
 	m.acceleration(st, tau, h)
 	active := m.ex.total.active
@@ -183,7 +184,7 @@ func (m *meter) moving(st *state, tau, h float64, work, loss *rates) {
 }
 
 // polyAt is the q-th time derivative at tau of a polynomial given by its
-// tau-derivatives at 0, over a substep h.
+// tau-derivatives at 0, over a window h.
 func polyAt(p *[loadDegree + 1]float64, tau, h float64, q int) float64 {
 	sum, c := 0.0, 1.0
 	for j := q; j <= loadDegree; j++ {
@@ -196,26 +197,32 @@ func polyAt(p *[loadDegree + 1]float64, tau, h float64, q int) float64 {
 	return sum
 }
 
-// step advances a state over one substep and books its work and losses. The loads
-// are set. quiet says that nothing acts now, as in the substep before.
-func (m *meter) step(st *state, h float64) {
-	quiet := !m.ex.total.active && len(m.ex.motions) == 0
-	if quiet && !m.lossy {
+// open books the powers at the start of a window, close those at its end.
+func (m *meter) open(st *state, h float64) {
+	if m.idle() {
 		m.held = false
-		m.op.step(st, h, &m.ex.total)
 		return
 	}
-	var w0, l0 rates
-	if quiet && m.held {
-		l0 = m.lastL
+	if quiet := m.quiet(); !quiet || !m.held {
+		m.w0, m.l0 = m.powers(st, 0, h)
 	} else {
-		w0, l0 = m.powers(st, 0, h)
+		m.w0, m.l0 = rates{}, m.lastL
 	}
-	m.op.step(st, h, &m.ex.total)
+}
+
+// quiet tells whether nothing acts in the present window, idle whether also nothing
+// is lost.
+func (m *meter) quiet() bool { return !m.ex.total.active && len(m.ex.motions) == 0 }
+func (m *meter) idle() bool  { return m.quiet() && !m.lossy }
+
+func (m *meter) close(st *state, h float64) {
+	if m.idle() {
+		return
+	}
 	w1, l1 := m.powers(st, 1, h)
-	m.acct.Work += hermite(w0, w1, h)
-	m.acct.Lost += hermite(l0, l1, h)
-	m.held, m.lastL = quiet, l1
+	m.acct.Work += hermite(m.w0, w1, h)
+	m.acct.Lost += hermite(m.l0, l1, h)
+	m.held, m.lastL = m.quiet(), l1
 }
 
 // stored is the energy held, prescribed nodes included.

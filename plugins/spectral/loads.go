@@ -326,7 +326,7 @@ func (x *excitation) addMotion(i int, m *mesh.Motion) {
 	}
 }
 
-// over sets the loads of the substep from t to t+h.
+// over sets the loads of the window from t to t+h.
 func (x *excitation) over(t, h float64) {
 	n := x.sys.size() + len(x.sys.watched)
 	reset := func(l *load) {
@@ -421,6 +421,48 @@ func (x *excitation) addField(f field, t, h float64) {
 			}
 		}
 	}
+}
+
+// cut writes the part of a window's load from tau on, of length share, into dst.
+func (l *load) cut(dst *load, tau, share float64) {
+	dst.active, dst.lo = l.active, l.lo
+	if !l.active {
+		return
+	}
+	scale := 1.0
+	for j := range dst.at {
+		out := dst.at[j]
+		clear(out[:l.lo])
+		c := scale
+		for i := j; i <= loadDegree; i++ {
+			src := l.at[i]
+			if i == j {
+				for k := l.lo; k < len(out); k++ {
+					out[k] = c * src[k]
+				}
+			} else {
+				for k := l.lo; k < len(out); k++ {
+					out[k] += c * src[k]
+				}
+			}
+			c *= tau / float64(i-j+1)
+		}
+		scale *= share
+	}
+}
+
+// cutPoly is the same for one polynomial.
+func cutPoly(p *[loadDegree + 1]float64, tau, share float64) (out [loadDegree + 1]float64) {
+	scale := 1.0
+	for j := range out {
+		c := scale
+		for i := j; i <= loadDegree; i++ {
+			out[j] += c * p[i]
+			c *= tau / float64(i-j+1)
+		}
+		scale *= share
+	}
+	return out
 }
 
 // value writes the load's q-th derivative in time at tau into dst.

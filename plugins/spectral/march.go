@@ -19,21 +19,36 @@ type walk struct {
 	b        basis
 	accel    bool // records read accelerations at the rows
 	next     int  // next break
-	last     float64
-	tau      float64 // of the present load polynomial at the present instant
+	end      int  // base step at whose end the account closes
+	win      window
+	part     load // the window's load over the present substep
+	pieces   [][loadDegree + 1]float64
 }
+
+// window is a time over which the loads are one polynomial and the energy account is
+// integrated in one piece: several base steps where they are short, one substep of
+// many where they are long.
+type window struct{ from, to float64 }
+
+func (w window) length() float64       { return w.to - w.from }
+func (w window) tau(t float64) float64 { return (t - w.from) / (w.to - w.from) }
 
 func newWalk(j *job, op operator, series [][][]float64) *walk {
 	w := &walk{job: j, op: op, ex: newExcitation(j.sys, op)}
 	w.meter = newMeter(j.sys, op, w.ex)
 	w.rec = recorder{taps: newTaps(j.sys, op, series), sub: j.sub, every: j.m.Timing.Every}
-	_, integrals, accel := w.rec.needs()
+	integrals, accel := w.rec.needs()
 	w.accel = accel
 	w.st = newState(op.size(), len(j.sys.brackets), integrals)
 	moved, watched := len(j.sys.moved), len(j.sys.watched)
 	w.from, w.to = newSnapshot(op.size(), moved, watched), newSnapshot(op.size(), moved, watched)
 	w.b = basis{h: j.base(), z: w.st.z, y: w.st.y, up0: make([]float64, moved), up1: make([]float64, moved),
 		share0: make([]float64, watched), shr1: make([]float64, watched)}
+	w.end = (j.m.Timing.Rows - 1) * j.sub
+	w.pieces = make([][loadDegree + 1]float64, moved)
+	for q := range w.part.at {
+		w.part.at[q] = make([]float64, op.size()+watched)
+	}
 	w.begin()
 	return w
 }
@@ -100,20 +115,21 @@ func (s *system) startElement(e *element, x, v, momentum []float64) {
 // march runs all base steps.
 func (w *walk) march(ctx context.Context, progress func(float64)) error {
 	h := w.base()
-	first := h
-	if w.steps == 0 {
-		first = 1e-6
+	first := math.Min(w.lay.loaded, w.firstBreak())
+	if w.steps > 0 {
+		first = math.Min(first, h)
 	}
-	w.ex.over(0, math.Min(first, math.Min(w.lay.loaded, w.firstBreak())))
-	w.look(w.from, 0, math.Min(first, w.lay.loaded))
+	w.win = window{0, math.Min(first, 1)}
+	w.ex.over(0, w.win.length())
+	w.look(w.from, 0)
+	w.win = window{-1, -1}
 	w.meter.acct.Start = w.meter.stored(w.st, w.from)
 	w.meter.acct.Most = w.meter.acct.Start
 	w.meter.acct.End = w.meter.acct.Start
 	w.motionWork(w.from, -1)
 	w.rec.start(w.from)
-	frozen := (w.m.Timing.Rows - 1) * w.sub
 	acct := w.meter.acct
-	if frozen == 0 {
+	if w.end == 0 {
 		w.motionWork(w.from, 1)
 		acct = w.meter.acct
 	}
@@ -126,9 +142,7 @@ func (w *walk) march(ctx context.Context, progress func(float64)) error {
 				progress(float64(k) / float64(w.steps))
 			}
 		}
-		if err := w.baseStep(k, h); err != nil {
-			return err
-		}
+		w.baseStep(k, h)
 		w.rec.step(k, &w.b, w.from, w.to)
 		w.from, w.to = w.to, w.from
 		stored := w.meter.stored(w.st, w.from)
@@ -137,7 +151,7 @@ func (w *walk) march(ctx context.Context, progress func(float64)) error {
 		if math.IsNaN(stored) || math.IsInf(stored, 0) {
 			return fault("the motion is no longer finite after %g s", h*float64(k+1))
 		}
-		if k+1 == frozen {
+		if k+1 == w.end {
 			w.motionWork(w.from, 1)
 			acct = w.meter.acct
 		}
@@ -168,7 +182,7 @@ func (w *walk) motionWork(s *snapshot, sign float64) {
 }
 
 // baseStep runs one base step: from break to break, in equal substeps.
-func (w *walk) baseStep(k int, h float64) error {
+func (w *walk) baseStep(k int, h float64) {
 	clearAll(w.st.z, w.st.y, w.b.up0, w.b.up1, w.b.share0, w.b.shr1)
 	t0, t1 := float64(k)*h, float64(k+1)*h
 	t := t0
@@ -177,47 +191,96 @@ func (w *walk) baseStep(k int, h float64) error {
 		for w.next < len(w.ex.breaks) && w.ex.breaks[w.next] <= t+tiny {
 			w.next++
 		}
-		end := t1
-		if w.next < len(w.ex.breaks) && w.ex.breaks[w.next] < t1-tiny {
-			end = w.ex.breaks[w.next]
-		}
-		length := end - t
-		if t == t0 && end == t1 {
+		end, length := t1, t1-t
+		if t == t0 {
 			length = h // the same number every time
 		}
-		w.stretch(t, t0, length)
+		if w.next < len(w.ex.breaks) && w.ex.breaks[w.next] < t1-tiny {
+			end = w.ex.breaks[w.next]
+			length = end - t
+		}
+		n := 1.0
+		if w.win.to < end-tiny {
+			n = w.openWindow(t, end, length, k, h)
+		}
+		d := length / n
+		for i := 0.0; i < n; i++ {
+			at := t + i*d
+			if i > 0 {
+				w.win = window{at, at + d}
+				w.ex.over(at, d)
+				w.meter.open(w.st, d)
+			}
+			w.substep(at, t0, d)
+			if w.win.to <= at+d+tiny {
+				w.meter.close(w.st, w.win.length())
+			}
+		}
 		t = end
 	}
-	w.look(w.to, 1, w.last)
+	w.look(w.to, t1)
 	if k%32 == 0 {
 		flush(w.st)
 	}
-	return nil
 }
 
-// stretch runs a time without breaks.
-func (w *walk) stretch(t, t0, length float64) {
-	limit := w.lay.loaded
-	w.ex.over(t, length)
-	if !w.ex.total.active {
-		limit = w.lay.quiet
-	}
-	n := math.Max(1, math.Ceil(length/limit-1e-9))
-	d := length / n
-	for i := 0.0; i < n; i++ {
-		at := t + i*d
-		if n > 1 {
-			w.ex.over(at, d)
+// openWindow opens a window at t, in the time without breaks up to end, of base step
+// k. It returns into how many substeps, each a window, that time is to be cut; a
+// window longer than it reaches on over whole base steps.
+func (w *walk) openWindow(t, end, length float64, k int, h float64) float64 {
+	for _, limit := range [2]float64{w.lay.quiet, w.lay.loaded} {
+		n := math.Max(1, math.Ceil(length/limit-1e-9))
+		to := t + length/n
+		if more := w.further(end, limit-length, k, h); n == 1 && more > 0 {
+			to = float64(k+1+more) * h
 		}
-		w.meter.step(w.st, d)
-		w.last = d
-		w.gather(at-t0, d)
+		w.win = window{t, to}
+		w.ex.over(t, w.win.length())
+		if !w.ex.total.active || limit == w.lay.loaded {
+			w.meter.open(w.st, w.win.length())
+			return n
+		}
 	}
+	return 1 // not reached: the last limit always returns
+}
+
+// further is how many whole base steps a window that reaches the end of base step k
+// may take in besides: within its limit, up to the next break and the end of the
+// account.
+func (w *walk) further(end, room float64, k int, h float64) int {
+	if w.next < len(w.ex.breaks) {
+		if w.ex.breaks[w.next] <= end {
+			return 0
+		}
+		room = math.Min(room, w.ex.breaks[w.next]-end)
+	}
+	last := w.steps
+	if k+1 <= w.end {
+		last = w.end
+	}
+	return int(math.Max(0, math.Min(math.Floor(room/h+1e-9), float64(last-k-1))))
+}
+
+// substep advances the state by d from time at, within the window; t0 is the start
+// of the base step.
+func (w *walk) substep(at, t0, d float64) {
+	ld := &w.ex.total
+	copy(w.pieces, w.ex.up)
+	if share := d / w.win.length(); share < 1-1e-9 {
+		tau := w.win.tau(at)
+		w.ex.total.cut(&w.part, tau, share)
+		ld = &w.part
+		for i := range w.pieces {
+			w.pieces[i] = cutPoly(&w.ex.up[i], tau, share)
+		}
+	}
+	w.op.step(w.st, d, ld)
+	w.gather(ld, at-t0, d)
 }
 
 // gather adds a substep's share to the integrals of prescribed displacements and
 // of the watched nodes' own loads; offset is its start within the base step.
-func (w *walk) gather(offset, d float64) {
+func (w *walk) gather(ld *load, offset, d float64) {
 	moments := func(p func(j int) float64) (i0, i1 float64) {
 		fact := 1.0
 		for j := 0; j <= loadDegree; j++ {
@@ -231,21 +294,22 @@ func (w *walk) gather(offset, d float64) {
 		return i0, i1 + offset*i0
 	}
 	for i := range w.b.up0 {
-		a, b := moments(func(j int) float64 { return w.ex.up[i][j] })
+		a, b := moments(func(j int) float64 { return w.pieces[i][j] })
 		w.b.up0[i], w.b.up1[i] = w.b.up0[i]+a, w.b.up1[i]+b
 	}
-	if !w.ex.total.active {
+	if !ld.active {
 		return
 	}
 	n := w.op.size()
 	for i := range w.b.share0 {
-		a, b := moments(func(j int) float64 { return w.ex.total.at[j][n+i] })
+		a, b := moments(func(j int) float64 { return ld.at[j][n+i] })
 		w.b.share0[i], w.b.shr1[i] = w.b.share0[i]+a, w.b.shr1[i]+b
 	}
 }
 
-// look takes a snapshot at tau of the present substep of length d.
-func (w *walk) look(s *snapshot, tau, d float64) {
+// look takes a snapshot at a time of the present window.
+func (w *walk) look(s *snapshot, t float64) {
+	tau, d := w.win.tau(t), w.win.length()
 	copy(s.x, w.st.x)
 	copy(s.v, w.st.v)
 	if w.accel {

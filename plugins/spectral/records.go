@@ -1,9 +1,5 @@
 package spectral
 
-import "math"
-
-func sqrt(x float64) float64 { return math.Sqrt(x) }
-
 // snapshot is all that a record can read at one instant.
 type snapshot struct {
 	x, v, a    []float64
@@ -146,13 +142,12 @@ func (r *recorder) step(k int, b *basis, from, to *snapshot) {
 	}
 }
 
-// needs says what the records ask for: base steps of half an interval, integral
-// states, accelerations at the rows, intervals past the last row.
-func (r *recorder) needs() (half, integrals, accelerations bool) {
+// needs says what the records ask for beyond displacement and velocity: integral
+// states, accelerations at the rows.
+func (r *recorder) needs() (integrals, accelerations bool) {
 	for _, t := range r.taps {
-		half = half || t.means == 1
 		integrals = integrals || t.means >= 1 && !t.f[0].empty() || t.means >= 2 && !t.f[1].empty()
 		accelerations = accelerations || t.means == 0 && !t.f[2].empty()
 	}
-	return half, integrals, accelerations
+	return integrals, accelerations
 }

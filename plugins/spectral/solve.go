@@ -274,6 +274,9 @@ func (Solver) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, progr
 	if j.capped {
 		res.Notes = append(res.Notes, "The excitations reach above the frequencies that the coarsest level resolves; further levels close the gap.")
 	}
+	if j.sys.above && !j.lay.modal {
+		res.Notes = append(res.Notes, "A very short stretch or a very stiff attachment has vibrations far above the line's; they are damped by the time step instead of followed.")
+	}
 	w := newWalk(j, op, res.Series)
 	if err := w.march(ctx, progress); err != nil {
 		return nil, err

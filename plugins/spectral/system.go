@@ -55,6 +55,7 @@ type system struct {
 	movedPF  [][]entry // [moved] terms to free end points
 	movedPP  [][]entry // [moved] terms among moved nodes
 	top      float64   // rad/s, highest frequency of note for the time step
+	above    bool      // some frequencies lie above top
 	watched  map[int]int
 	// watched numbers the mesh nodes whose line force is recorded: their own
 	// share of distributed loads rides along at coordinate size()+number.
@@ -256,6 +257,7 @@ func (s *system) highest() {
 		return
 	}
 	s.top = math.Min(all, 4*each[len(each)/2])
+	s.above = s.top < all
 }
 
 // watchNodes numbers the nodes at which the line's force on a fitting is recorded.

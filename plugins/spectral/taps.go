@@ -1,6 +1,8 @@
 package spectral
 
 import (
+	"math"
+
 	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/scenario"
 )
@@ -189,7 +191,7 @@ func (s *system) nodal(op operator, e *element, g []float64, scale float64) func
 
 func (s *system) addNodal(row []float64, f *functional, e *element, g []float64, scale float64) {
 	p := e.ref.p
-	root := scale / sqrt(e.mass)
+	root := scale / math.Sqrt(e.mass)
 	for i := 1; i < p; i++ {
 		if c := g[i] * root; c != 0 {
 			for k, v := range e.ref.v[(i-1)*(p-1) : i*(p-1)] {

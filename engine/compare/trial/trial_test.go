@@ -4,6 +4,7 @@ import (
 	"context"
 	"math/rand/v2"
 	"reflect"
+	"sync/atomic"
 	"testing"
 
 	"github.com/tautspan/tautspan/engine/compare"
@@ -15,7 +16,7 @@ import (
 // Its error falls as ratio^-order.
 type crude struct {
 	name  string
-	calls *int
+	calls *atomic.Int64
 }
 
 func (c crude) Name() string                { return c.name }
@@ -26,7 +27,7 @@ func (c crude) Plan(*mesh.Mesh, solver.Request) (solver.Plan, error) {
 }
 
 func (c crude) Solve(_ context.Context, m *mesh.Mesh, req solver.Request, _ func(float64)) (*solver.Result, error) {
-	*c.calls++
+	c.calls.Add(1)
 	sum := 0.0
 	for i, n := range m.Nodes {
 		sum += float64(i+1) * (n.Mass + n.Dashpot/100 + n.Spring/1e5)
@@ -47,7 +48,7 @@ func (c crude) Solve(_ context.Context, m *mesh.Mesh, req solver.Request, _ func
 }
 
 func TestStudy(t *testing.T) {
-	calls := 0
+	var calls atomic.Int64
 	solvers := []solver.Solver{crude{"a", &calls}, crude{"b", &calls}, crude{"c", &calls}}
 	scores, err := Study(context.Background(), solvers, 10, 2, 1, compare.Options{Agree: 1e-3, Workers: 1})
 	if err != nil {
@@ -63,8 +64,8 @@ func TestStudy(t *testing.T) {
 	}
 	// Three levels each of three healthy solvers and of one spoilt for each defect,
 	// a line; the healthy solutions are remembered.
-	if want := 10 * (9 + 3*len(Defects(3))); calls > 2*want {
-		t.Errorf("%d solutions, expected about %d", calls, want)
+	if want := 10 * (9 + 3*len(Defects(3))); calls.Load() > int64(2*want) {
+		t.Errorf("%d solutions, expected about %d", calls.Load(), want)
 	}
 	again, _ := Study(context.Background(), solvers, 10, 2, 1, compare.Options{Agree: 1e-3})
 	if !reflect.DeepEqual(scores, again) {
