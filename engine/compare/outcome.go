@@ -128,6 +128,10 @@ type Pair struct {
 	// solver: figures hang on few rows, whose changes from level to level may be
 	// small by chance, while a wrong solver is wrong in more than one row.
 	Unbacked bool
+	// Immaterial says that difference and bars together stay within a tenth of the
+	// share asked for: too little to call the solvers at odds, whatever the ratio.
+	// The reported bound covers it.
+	Immaterial bool
 }
 
 // Interval is a value that lies between Low and High; NaN as value where there
@@ -169,7 +173,7 @@ func (e *AllAbsentError) Error() string {
 func (r *runner) outcome() (*Outcome, error) {
 	out := &Outcome{Work: r.spent, Effort: r.effort, Notes: r.notes}
 	var reasons []string
-	any := false
+	answered := false
 	for _, v := range r.voices {
 		voice := Voice{Solver: v.solver, Name: v.solver.Name(), Version: v.solver.Version(), Absent: v.absent, Fault: v.fault, Exhausted: v.exhausted}
 		if n := len(v.runs); n > 0 {
@@ -185,13 +189,13 @@ func (r *runner) outcome() (*Outcome, error) {
 			voice.Absent = "was stopped before three levels were solved"
 		}
 		if v.usable() {
-			any = true
+			answered = true
 		} else {
 			reasons = append(reasons, fmt.Sprintf("%s: %s", voice.Name, voice.Reason()))
 		}
 		out.Voices = append(out.Voices, voice)
 	}
-	if !any {
+	if !answered {
 		return out, &AllAbsentError{Reasons: reasons}
 	}
 	judged := r.judge()
@@ -241,7 +245,7 @@ func (r *runner) channel(c int, obs []Observable) Channel {
 		out.Solvers = append(out.Solvers, f)
 	}
 	odd := -1
-	clear := true
+	sure := true
 	for k := range obs {
 		o := &obs[k]
 		if o.Governed {
@@ -251,11 +255,11 @@ func (r *runner) channel(c int, obs []Observable) Channel {
 			out.Verdict = Differ
 		}
 		if (o.Governed || o.Kind == Record) && o.Verdict == Differ {
-			clear = clear && o.OddOneOut >= 0 && (odd < 0 || odd == o.OddOneOut)
+			sure = sure && o.OddOneOut >= 0 && (odd < 0 || odd == o.OddOneOut)
 			odd = o.OddOneOut
 		}
 	}
-	if clear && odd >= 0 {
+	if sure && odd >= 0 {
 		out.OddOneOut = r.voices[odd].solver.Name()
 	}
 	for _, p := range obs[Record].Pairs {

@@ -233,11 +233,11 @@ const stepsMost = 2
 // wants says how many levels each voice should add. An empty answer ends the
 // comparison.
 func (r *runner) wants() map[int]int {
-	any := false
+	answered := false
 	for _, v := range r.voices {
-		any = any || v.usable()
+		answered = answered || v.usable()
 	}
-	if !any {
+	if !answered {
 		return nil
 	}
 	judged := r.judge()
@@ -295,7 +295,7 @@ func (r *runner) confirm(o *Observable, records []Pair, doubtful map[int]bool) {
 		return
 	}
 	for k, p := range o.Pairs {
-		if p.Ratio <= ratioAgree || records[k].Ratio > plainDifference {
+		if p.Ratio <= ratioAgree || p.Immaterial || records[k].Ratio > plainDifference {
 			continue
 		}
 		for _, i := range []int{p.A, p.B} {

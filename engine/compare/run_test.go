@@ -194,6 +194,27 @@ func TestWrongSolverIsNamed(t *testing.T) {
 	}
 }
 
+// A difference of a hundredth of what is asked is no finding, however sharp the
+// bars, and the reported bound covers it; ten times as much is one.
+func TestImmaterialDifference(t *testing.T) {
+	for _, c := range []struct {
+		off  float64
+		want Verdict
+	}{{1e-4, Agree}, {5e-3, Differ}} {
+		fakes := three()[:2]
+		for _, f := range fakes {
+			f.error1 = nil
+		}
+		right := fakes[0].truth
+		fakes[1].truth = func(c1 int, t float64) float64 { return (1 + c.off) * right(c1, t) }
+		out := run(t, plain(400, scenario.Displacement), fakes, Options{Agree: 0.01})
+		o := out.Channels[0].Observables[Peak]
+		if out.Verdict != c.want || math.Abs(o.Values[0]-o.Values[1]) > 1.0001*o.Numerical {
+			t.Errorf("%g off: %v, apart %g, bound %g", c.off, out.Verdict, math.Abs(o.Values[0]-o.Values[1]), o.Numerical)
+		}
+	}
+}
+
 func TestOneSolverAlone(t *testing.T) {
 	fakes := three()
 	fakes[1].refuses = []string{"does not take bending", "does not take stops"}

@@ -26,6 +26,7 @@ func TestRule(t *testing.T) {
 		{"two differ", 2, []Pair{{A: 0, B: 1, Difference: 1, Ratio: 2.1, Resolving: 0.008}}, 0.01, inf, Differ, -1, 0.008},
 		{"a figure apart while the records agree", 2, []Pair{{A: 0, B: 1, Ratio: 9, Resolving: 0.008, Unbacked: true}}, 0.01, inf, Unsettled, -1, 0.008},
 		{"the same, far within what is asked", 2, []Pair{{A: 0, B: 1, Ratio: 9, Resolving: 0.0008, Unbacked: true}}, 0.01, inf, Agree, -1, 0.008},
+		{"apart by next to nothing", 2, []Pair{{A: 0, B: 1, Ratio: 9, Resolving: 0.0001, Immaterial: true}}, 0.01, inf, Agree, -1, 0.001},
 		{"at the limits", 2, []Pair{{A: 0, B: 1, Difference: 1, Ratio: 1, Resolving: 0.01}}, 0.01, inf, Agree, -1, 0.01},
 		{"third odd", 3, []Pair{{A: 0, B: 1, Difference: 1, Ratio: 0.5, Resolving: 0.008}, {A: 0, B: 2, Difference: 1, Ratio: 4, Resolving: 0.009}, {A: 1, B: 2, Difference: 1, Ratio: 3, Resolving: 0.009}}, 0.01, inf, Differ, 2, 0.008},
 		{"one differing pair of three: either end may be odd", 3, []Pair{{A: 0, B: 1, Difference: 1, Ratio: 0.5, Resolving: 0.008}, {A: 0, B: 2, Difference: 1, Ratio: 4, Resolving: 0.009}, {A: 1, B: 2, Difference: 1, Ratio: 0.9, Resolving: 0.02}}, 0.01, inf, Differ, -1, 0.008},

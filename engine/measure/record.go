@@ -23,7 +23,10 @@ func (s *Session) reader(p *Point, l *leaf) (func(compare.Reading) compare.Inter
 	return nil, fmt.Errorf("measure: %s is not read from a record", m.Source)
 }
 
-var none = compare.Interval{Value: math.NaN(), Low: math.Inf(-1), High: math.Inf(1)}
+// unknown is a reading of which nothing can be said.
+func unknown() compare.Interval {
+	return compare.Interval{Value: math.NaN(), Low: math.Inf(-1), High: math.Inf(1)}
+}
 
 // TimeOfPeak is when the record's magnitude is largest, s, by rows; it lies
 // between the first and the last row that could be the largest within the band.
@@ -87,7 +90,7 @@ func Settle(r compare.Reading, share, after, static float64) compare.Interval {
 	n := len(r.Values)
 	first := int(math.Ceil(after/r.Every - 1e-9))
 	if !(after < math.Inf(1)) || first >= n || !(share >= 0) || math.IsNaN(static) {
-		return none
+		return unknown()
 	}
 	peak, least, most := 0.0, 0.0, 0.0
 	for i := first; i < n; i++ {

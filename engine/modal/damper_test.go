@@ -3,6 +3,7 @@ package modal
 import (
 	"math"
 	"math/cmplx"
+	"math/rand"
 	"strings"
 	"testing"
 
@@ -285,6 +286,72 @@ func TestMassBehindBracket(t *testing.T) {
 		f, f1 := m*s*(k+s*c)+k*c, m*k+2*m*c*s
 		if e := cmplx.Abs(f / f1 / s); e > 1e-13 {
 			t.Errorf("%s: %v off by %g", name, s, e)
+		}
+	}
+}
+
+// Equal damped lines joined at a hung mass: by symmetry each family in which the
+// mass stands still is a line with tie and dashpot to ground, n-1 times over, and
+// each of its roots is a root of the single line; none is defective.
+func TestEqualDampedLines(t *testing.T) {
+	const mass, tension, k, kd = 1.0, 100.0, 30.0, 0.3
+	for _, lines := range []int{2, 3, 4} {
+		for _, c := range []float64{0.1, 5, 15, 40} {
+			b := &build{}
+			var at []int
+			for l := 0; l < lines; l++ {
+				x, y, z := b.node(mesh.Node{Line: l, Fixed: true}), b.node(mesh.Node{Line: l, Dashpot: c}), b.node(mesh.Node{Line: l, Fixed: true})
+				b.piece(x, y, 3, mass, tension, 0)
+				b.piece(y, z, 7, mass, tension, 0)
+				at = append(at, y)
+			}
+			hung := b.node(mesh.Node{Line: -1, Mass: 2})
+			for _, y := range at {
+				b.link(y, hung, k, kd)
+			}
+			single := line(mass, tension, 0, []float64{0, 3, 10}, fixed, mesh.Node{Dashpot: c + kd, Spring: k}, fixed)
+			one := find(t, &single.m, Want{Count: 3}).Modes
+			res := find(t, &b.m, Want{Count: 5 * lines, Shapes: true})
+			if res.CompleteBelow == 0 {
+				t.Errorf("%d lines, c = %g: %v", lines, c, res.Notes)
+			}
+			for i, want := range one {
+				n := 0
+				for _, m := range res.Modes {
+					if cmplx.Abs(m.S-want.S) < 1e-9*cmplx.Abs(want.S) {
+						n++
+						if m.Multiplicity != lines-1 || m.Defective {
+							t.Errorf("%d lines, c = %g: %+v", lines, c, m)
+						}
+					}
+				}
+				if n != lines-1 {
+					t.Errorf("%d lines, c = %g: root %d of the single line is met %d times", lines, c, i+1, n)
+				}
+			}
+		}
+	}
+}
+
+// Two equal lines under weak ties and nearly equal dashpots, through where their
+// modes coincide: always complete.
+func TestNearlyEqualLines(t *testing.T) {
+	r := rand.New(rand.NewSource(9))
+	for trial := 0; trial < 100; trial++ {
+		b := &build{}
+		c := math.Pow(10, -3+5*r.Float64())
+		dc := c * math.Pow(10, -10*r.Float64())
+		var at [2]int
+		for l := range at {
+			x, y, z := b.node(mesh.Node{Line: l, Fixed: true}), b.node(mesh.Node{Line: l, Dashpot: c + dc*float64(l)}), b.node(mesh.Node{Line: l, Fixed: true})
+			b.piece(x, y, 4, 1, 100, 0)
+			b.piece(y, z, 6, 1, 100, 0)
+			at[l] = y
+		}
+		b.link(at[0], at[1], math.Pow(10, -10+14*r.Float64()), 0)
+		res := find(t, &b.m, Want{Count: 10})
+		if res.CompleteBelow == 0 || len(res.Modes) != 10 {
+			t.Errorf("c = %g, dc = %g: %d modes, %v", c, dc, len(res.Modes), res.Notes)
 		}
 	}
 }

@@ -270,8 +270,12 @@ func (w *network) name() string {
 	switch {
 	case w.line >= 0 && w.line < len(w.m.Lines):
 		return w.m.Lines[w.line].Name
+	case len(w.elements) > 0:
+		if first := w.m.Pieces[w.elements[0].piece].Line; first >= 0 && first < len(w.m.Lines) {
+			return w.m.Lines[first].Name + " with the lines tied to it"
+		}
 	case len(w.nodes) > 0:
-		return "what hangs together at " + w.m.Nodes[w.nodes[0]].Name
+		return w.m.Nodes[w.nodes[0]].Name
 	}
 	return "the network"
 }

@@ -253,11 +253,10 @@ func (l *list) merge(c complex128, afresh bool) bool {
 			return false
 		}
 	}
-	l.tried = append(l.tried, c)
 	abs := cmplx.Abs(c)
 	// The circle shrinks until it holds two, or as many as coincide.
-	for r := 1e-2 * abs; r > 3e-8*abs; r /= 3 {
-		near, clear := l.known(c, r)
+	for r := 1e-2 * abs; r > 3e-9*abs; r /= 3 {
+		near, sum, clear := l.known(c, r)
 		if !clear {
 			continue
 		}
@@ -266,19 +265,37 @@ func (l *list) merge(c complex128, afresh bool) bool {
 			continue
 		}
 		if n < near || n == near && !afresh {
-			return false
+			break
 		}
 		spread := cmplx.Abs(m[2]/complex(float64(n), 0) - m[1]*m[1]/complex(float64(n*n), 0))
-		if n <= 2 || spread < 1e-14*abs*abs {
+		if n <= 2 || spread < 1e-16*abs*abs {
 			return l.replace(c, r, n, m)
 		}
+		if n == near+1 && cmplx.Abs(m[0]-complex(float64(n), 0)) < 1e-10 { // the one that is missing makes up the sum
+			l.add(c + m[1] - sum)
+			return true
+		}
 	}
+	l.tried = append(l.tried, c)
 	return false
 }
 
-// known counts the known zeros within r of c, and says whether none is so near
-// the circle that the sum along it would not settle.
-func (l *list) known(c complex128, r float64) (n int, clear bool) {
+// add appends a root, made equal to one it cannot be told from.
+func (l *list) add(s complex128) {
+	s = upper(s)
+	for _, z := range l.roots {
+		if cmplx.Abs(z-s) < 1e-9*cmplx.Abs(s) {
+			s = z
+			break
+		}
+	}
+	l.roots = append(l.roots, s)
+}
+
+// known counts the known zeros within r of c and sums their distances from it;
+// clear says that none is so near the circle that the sums along it would not
+// settle.
+func (l *list) known(c complex128, r float64) (n int, sum complex128, clear bool) {
 	for _, z := range l.roots {
 		both := []complex128{z, cmplx.Conj(z)}
 		if imag(z) == 0 {
@@ -287,17 +304,20 @@ func (l *list) known(c complex128, r float64) (n int, clear bool) {
 		for _, y := range both {
 			d := cmplx.Abs(y - c)
 			if d > 0.5*r && d < 2*r {
-				return 0, false
+				return 0, 0, false
 			}
 			if d < r {
 				n++
+				sum += y - c
 			}
 		}
 	}
-	return n, true
+	return n, sum, true
 }
 
-// moments are the sums of (z-c)^k, k = 0, 1, 2, over the zeros within r of c.
+// moments are the sums of (z-c)^k, k = 0, 1, 2, over the zeros within r of c. The
+// first is an integer n; by how much it is not tells the error of all, and 1e-8
+// (of r^k) is refused: a zero is then too near the circle.
 func (l *list) moments(c complex128, r float64) (n int, m [3]complex128, ok bool) {
 	const points = 48 // 0.5^48 is below rounding
 	for k := 0; k < points; k++ {
@@ -313,7 +333,7 @@ func (l *list) moments(c complex128, r float64) (n int, m [3]complex128, ok bool
 		m[2] += f * d * d
 	}
 	n = int(math.Round(real(m[0])))
-	return n, m, cmplx.Abs(m[0]-complex(float64(n), 0)) < 0.02
+	return n, m, cmplx.Abs(m[0]-complex(float64(n), 0)) < 1e-8
 }
 
 // replace puts the n zeros that the moments around c tell in the place of the

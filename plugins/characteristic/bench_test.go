@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"math"
+	"math/cmplx"
 	"testing"
 
 	"github.com/tautspan/tautspan/engine/formula"
@@ -119,4 +120,90 @@ func tones() scenario.History {
 		p = formula.Add(p, formula.Apply(formula.OpSine, formula.Arg(formula.ArgT), formula.Const(5), formula.Const(f), formula.Const(0)))
 	}
 	return scenario.History{Value: p, Breaks: []float64{0}}
+}
+
+// longBench: L 50 m, 4 kg/m, 60 kN, 0.4 N s/m^2, forty tones at 13 m, watched
+// at 8.5, 17 and 31 m; 1 kHz.
+func longBench(rows int) *mesh.Mesh {
+	m := span(1e-3, rows, stretch{50, 60000, 4, 0.4})
+	m.Jump, m.Band = 2, 20.25
+	m.Pushes = []mesh.Push{{At: inside(0, 13), Force: tones()}}
+	look(m, scenario.Displacement, 0, inside(0, 8.5), inside(0, 17), inside(0, 31))
+	return m
+}
+
+// longReference is every nth sample of longBench in closed form: the exact wave
+// receptance sin(k x) sin(k (L-s))/(T k sin kL) of each tone, and the free modes
+// that start what the tones do not start with. Modes fall with their
+// cube: 400 leave some 1e-6, 3000 some 1e-8.
+func longReference(x float64, rows, nth, modes int) []float64 {
+	const L, T, mass, visc, xs = 50.0, 60000.0, 4.0, 0.4, 13.0
+	var om []float64
+	var amp []complex128
+	c, s := math.Sqrt(T/mass), visc/(2*mass)
+	for k := 1; k <= 40; k++ {
+		w := 2 * math.Pi * (0.25 + 0.5*(float64(k)-1+math.Mod(0.6180339887498949*float64(k), 1)))
+		kk := cmplx.Sqrt(complex(mass*w*w/T, -visc*w/T))
+		h := cmplx.Sin(kk*complex(min(x, xs), 0)) * cmplx.Sin(kk*complex(L-max(x, xs), 0)) / (T * kk * cmplx.Sin(kk*L))
+		om = append(om, w)
+		amp = append(amp, 5*h)
+	}
+	n := (rows-1)/nth + 1
+	out := make([]float64, n)
+	for i := range out {
+		t := float64(i*nth) * 1e-3
+		for k, w := range om {
+			out[i] += imag(amp[k] * cmplx.Exp(complex(0, w*t)))
+		}
+	}
+	for j := 1; j <= modes; j++ {
+		k := float64(j) * math.Pi / L
+		q, v := 0.0, 0.0
+		for _, w := range om {
+			a := complex(2/(mass*L)*5*math.Sin(k*xs)*math.Sin(k*x), 0) / complex(k*k*c*c-w*w, 2*s*w)
+			q -= imag(a)
+			v -= imag(a * complex(0, w))
+		}
+		d := math.Sqrt(k*k*c*c - s*s)
+		for i := range out {
+			t := float64(i*nth) * 1e-3
+			sin, cos := math.Sincos(d * t)
+			out[i] += math.Exp(-s*t) * (q*cos + (v+s*q)/d*sin)
+		}
+	}
+	return out
+}
+
+func every(v []float64, nth int) []float64 {
+	var out []float64
+	for i := 0; i < len(v); i += nth {
+		out = append(out, v[i])
+	}
+	return out
+}
+
+// Forty tones for 20 s against the closed form. Tolerances: a thousandth at level
+// 0 (chosen) and fourth order from there.
+func TestTones(t *testing.T) {
+	m := longBench(20001)
+	for level, tol := range []float64{1e-3, 6.3e-5, 4e-6} {
+		res := solve(t, m, level)
+		for k, x := range []float64{8.5, 17, 31} {
+			d := relative(every(res.Series[0][k], 50), longReference(x, 20001, 50, 3000))
+			if !(d < tol) {
+				t.Errorf("level %d, x = %g: relative error %.3g", level, x, d)
+			}
+			t.Logf("level %d, x = %g: relative error %.3g gap %.2g", level, x, d, res.Energy.Unaccounted()/res.Energy.Most)
+		}
+	}
+}
+
+// The same for a tenth of the full million samples.
+func BenchmarkTones(b *testing.B) {
+	m := longBench(100001)
+	ref := longReference(17, 100001, 1, 400)
+	m.Channels[0].Spots = []mesh.Spot{inside(0, 17), inside(0, 8.5), inside(0, 31)}
+	for level := 0; level < 3; level++ {
+		b.Run(fmt.Sprint(level), func(b *testing.B) { pairs(b, m, level, ref) })
+	}
 }

@@ -3,6 +3,7 @@ package characteristic
 import (
 	"context"
 	"errors"
+	"fmt"
 	"math"
 	"math/rand/v2"
 	"runtime"
@@ -246,4 +247,32 @@ func TestAnyMesh(t *testing.T) {
 		t.Errorf("solved %d, faults %d: the test has lost its reach", solved, faults)
 	}
 	t.Logf("solved %d, faults %d", solved, faults)
+}
+
+// A picture over x and t holds every stride-th row of what points record, and a
+// run leaves the mesh as it was and comes out the same again.
+func TestPictureAndRepeat(t *testing.T) {
+	m := threeBench(0.08)
+	m.Timing.Rows = 3001
+	m.Channels = nil
+	spots := []mesh.Spot{node(0), inside(0, 10), node(1), inside(1, 20), node(3)}
+	look(m, scenario.Velocity, 0, spots...)
+	look(m, scenario.Velocity, 0, spots...)
+	m.Channels[0].Along = true
+	rows, stride := m.FieldRows()
+	before := fmt.Sprintf("%+v", *m)
+	a, b := solve(t, m, 0), solve(t, m, 0)
+	if fmt.Sprintf("%+v", *m) != before {
+		t.Error("the mesh has changed")
+	}
+	if stride < 2 || len(a.Series[0][0]) != rows {
+		t.Fatalf("stride %d, %d rows", stride, len(a.Series[0][0]))
+	}
+	for k := range spots {
+		for i := range rows {
+			if a.Series[0][k][i] != a.Series[1][k][i*stride] || a.Series[0][k][i] != b.Series[0][k][i] {
+				t.Fatalf("spot %d, row %d: %g, %g, %g", k, i, a.Series[0][k][i], a.Series[1][k][i*stride], b.Series[0][k][i])
+			}
+		}
+	}
 }

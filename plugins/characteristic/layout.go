@@ -109,7 +109,7 @@ func plan(m *mesh.Mesh, req solver.Request) (Layout, bool) {
 		case pressed[i]:
 			lay.Cells[i] = max(3, int(tau/lay.Step))
 		case loss*loss > thin:
-			lay.Cells[i] = cellsOf(tau, loss, lay.Step, req.Level)
+			lay.Cells[i] = cellsOf(tau, loss, lay.Step, m.Jump, req.Level)
 		}
 	}
 	return lay, false
@@ -121,9 +121,13 @@ func plan(m *mesh.Mesh, req solver.Request) (Layout, bool) {
 // points to a decay. A faint one's error is far below the rest of the solution;
 // its lattice is refined by the root of two a level, since it costs the square.
 // No lattice step is shorter than the nodes'. Shares chosen.
-func cellsOf(tau, loss, step float64, level int) int {
-	const weakPer, faint = 4, 0.02
-	n := tau / (weakPer * step)
+func cellsOf(tau, loss, step float64, jump, level int) int {
+	const faint = 0.02
+	per := 4.0
+	if jump <= 2 {
+		per = 2 // what the loss takes of a kinked wave is summed up on these points
+	}
+	n := tau / (per * step)
 	if loss < faint {
 		n *= math.Pow(2, -0.5*float64(level))
 	}

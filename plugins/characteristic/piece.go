@@ -72,6 +72,9 @@ type source struct {
 	rate   float64 // m/s, mean of the last part
 	next   int     // next of load.breaks for the books
 	work   float64 // J
+	// Mean and slope (Legendre) of the load over the steps that end at sample k,
+	// at [k % len]; NaN for a step with a break inside.
+	moments [4 * ahead][2]float64
 }
 
 // ahead is the number of steps that sources lead: a stencil's reach and one.
@@ -83,7 +86,9 @@ func (s *source) advance() {
 	h := s.h
 	t0, phi := float64(h.newest)*h.delta, h.get(h.newest)
 	end := float64(h.newest+1) * h.delta
-	for t0 < end {
+	kept := &s.moments[(h.newest+1)%len(s.moments)]
+	kept[0] = math.NaN()
+	for whole := true; t0 < end; whole = false {
 		t1 := end
 		mark := false
 		if s.breaks < len(s.load.breaks) && s.load.breaks[s.breaks] < end+h.tol {
@@ -93,12 +98,11 @@ func (s *source) advance() {
 		}
 		if t1 > t0 {
 			dt := t1 - t0
-			sum := 0.0
-			places, weights := gauss()
-			for i, x := range places {
-				sum += weights[i] * math.Exp(-s.gamma*dt*(1-x)) * s.load.at(t0+x*dt)
-			}
+			mean, slope, sum := s.weigh(t0, dt)
 			phi = phi*math.Exp(-s.gamma*dt) + s.half*dt*sum
+			if whole && !mark {
+				*kept = [2]float64{mean, slope}
+			}
 		}
 		if mark {
 			if o := s.load.order(t1, h.delta); o <= rounded {
@@ -108,6 +112,22 @@ func (s *source) advance() {
 		t0 = t1
 	}
 	h.push(phi)
+}
+
+// weigh is the load's mean and slope over t .. t+dt, and its mean with weight
+// exp(-gamma (t+dt-s)).
+func (s *source) weigh(t, dt float64) (mean, slope, sum float64) {
+	places, weights := gauss()
+	for i, x := range places {
+		q := weights[i] * s.load.at(t+x*dt)
+		mean += q
+		slope += 3 * q * (2*x - 1)
+		if s.gamma > 0 {
+			q *= math.Exp(-s.gamma * dt * (1 - x))
+		}
+		sum += q
+	}
+	return mean, slope, sum
 }
 
 // book adds the work of the force up to time t, which the nodes have reached:
@@ -122,6 +142,17 @@ func (s *source) book(t float64) {
 	s.part(t)
 }
 
+// loaded is the load's mean and slope from upto to t, a step's if it is one.
+func (s *source) loaded(t, h float64) (mean, slope float64) {
+	k := int(math.Round(t * s.h.inv))
+	kept := &s.moments[k%len(s.moments)]
+	if !math.IsNaN(kept[0]) && math.Abs(h-s.h.delta) < s.h.tol && math.Abs(float64(k)*s.h.delta-t) < s.h.tol {
+		return kept[0], kept[1]
+	}
+	mean, slope, _ = s.weigh(s.upto, h)
+	return mean, slope
+}
+
 func (s *source) part(t float64) {
 	h := t - s.upto
 	if h <= s.h.tol {
@@ -129,13 +160,7 @@ func (s *source) part(t float64) {
 	}
 	f, g := s.p.waves(s.x, t, &s.taps, 0, -1)
 	v := (f + g - s.u) / h
-	places, weights := gauss()
-	var force, slope float64
-	for i, x := range places {
-		q := weights[i] * s.load.at(s.upto+x*h)
-		force += q
-		slope += 3 * q * (2*x - 1)
-	}
+	force, slope := s.loaded(t, h)
 	s.work += h * force * v
 	if dv := v - s.rate; !math.IsNaN(dv) {
 		s.work += h * slope * dv / 6

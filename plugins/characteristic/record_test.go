@@ -115,7 +115,7 @@ func TestForceOnAFitting(t *testing.T) {
 		worst = math.Max(worst, math.Abs(left-s[3][1][row]))
 		most = math.Max(most, math.Abs(s[3][0][row]))
 	}
-	// The acceleration is of fourth order at 32 steps to the shortest period: chosen; seen 2e-5.
+	// Accelerations are second differences of a cubic beside breaks: chosen.
 	if !(worst < 1e-4*most) {
 		t.Errorf("node law off by %g of %g", worst, most)
 	}

@@ -182,7 +182,7 @@ func (c *cluster) scatter(j *joint, t float64, order int, total float64) {
 			c.refused++
 		}
 	}
-	if j.own != nil && total > 0 {
+	if j.own != nil && order <= rounded && total*math.Pow(c.hrel, float64(order-1)) >= weak {
 		j.own.mark(breakpoint{t: t, left: j.before, right: j.u, weight: total, order: order})
 	}
 }

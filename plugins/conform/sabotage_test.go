@@ -32,7 +32,7 @@ func TestSabotage(t *testing.T) {
 		coarse := strings.Contains(s.Name, "sign") || strings.Contains(s.Name, "free") || strings.Contains(s.Name, "swapped")
 		switch {
 		case i == 0 && s.Raised > 0:
-			t.Errorf("%d false alarms on %d healthy lines", s.Raised, s.Trials)
+			t.Errorf("%d false alarms on %d healthy lines:\n%s", s.Raised, s.Trials, strings.Join(s.Alarms, "\n"))
 		case coarse && s.Raised < s.Trials:
 			t.Errorf("%s: %d of %d missed", s.Name, s.Trials-s.Raised, s.Trials)
 		}

@@ -1,6 +1,10 @@
 package spectral
 
-import "github.com/tautspan/tautspan/engine/solver"
+import (
+	"math"
+
+	"github.com/tautspan/tautspan/engine/solver"
+)
 
 // rates holds a power and its first three time derivatives, W, W/s, W/s^2, W/s^3.
 type rates [4]float64
@@ -24,6 +28,17 @@ func hermite(a, b rates, h float64) float64 {
 	return h/2*(a[0]+b[0]) + 3*h*h/28*(a[1]-b[1]) + h*h*h/84*(a[2]+b[2]) + h*h*h*h/1680*(a[3]-b[3])
 }
 
+// positive is hermite for a power that is nowhere negative. What the windows resolve
+// stays well inside 0 and 4 times the larger end value (a wave of 1.2 rad a window at
+// most 1.3 times); outside, derivatives of unresolved motion have taken over and the
+// trapezoidal rule is the better account.
+func positive(a, b rates, h float64) float64 {
+	if v := hermite(a, b, h); v >= 0 && v <= 4*h*math.Max(a[0], b[0]) {
+		return v
+	}
+	return h / 2 * (a[0] + b[0])
+}
+
 // meter keeps the energy account. Work and losses are integrated from powers, and
 // independently of the stored energy, so that the account's gap means something.
 type meter struct {
@@ -31,6 +46,7 @@ type meter struct {
 	op      operator
 	ex      *excitation
 	lossy   bool
+	stiff   *stiff // nil: no dashpot is too stiff for the quadrature
 	acct    solver.Energy
 	k, kc   []*source    // per prescribed node: minus its stiffness and loss columns
 	a, j    []float64    // acceleration and its derivative
@@ -105,30 +121,32 @@ func (m *meter) powers(st *state, tau, h float64) (work, loss rates) {
 		m.ex.total.value(f1, tau, h, 1)
 		m.ex.total.value(f2, tau, h, 2)
 	}
+	var f3 []float64
+	if active && m.stiff != nil {
+		f3 = m.f[3]
+		m.ex.total.value(f3, tau, h, 3)
+	}
 	in := m.sys.inner
 	for b := range m.sys.brackets {
 		k := &m.sys.brackets[b]
 		m.rd[b] = k.k / k.c * (st.x[in+k.end] - st.r[b])
 		m.rdd[b] = k.k / k.c * (st.v[in+k.end] - m.rd[b])
 	}
+	if m.stiff != nil {
+		m.stiff.settle(m.a, st.v, f1, h)
+	}
 	m.op.accel(m.j, st.v, m.a, m.rd, f1)
+	if m.stiff != nil {
+		m.stiff.settle(m.j, m.a, f2, h)
+	}
 	m.op.accel(m.i, m.a, m.j, m.rdd, f2)
+	if m.stiff != nil {
+		m.stiff.settle(m.i, m.j, f3, h)
+		m.stiff.correct(m.j, m.i, h)
+		m.stiff.correct(m.a, m.j, h)
+	}
 	if m.lossy {
-		for q, v := range [3][]float64{st.v, m.a, m.j} {
-			m.op.lossForce(m.c[q], v)
-		}
-		loss = rates{dot(st.v, m.c[0]), 2 * dot(m.a, m.c[0]), 2 * (dot(m.j, m.c[0]) + dot(m.a, m.c[1])),
-			2*dot(m.i, m.c[0]) + 6*dot(m.j, m.c[1])}
-		for b := range m.sys.brackets {
-			k := &m.sys.brackets[b]
-			i := in + k.end
-			var f rates
-			f[0] = k.k * (st.x[i] - st.r[b])
-			f[1] = k.k * (st.v[i] - m.rd[b])
-			f[2] = k.k * (m.a[i] - m.rdd[b])
-			f[3] = k.k * (m.j[i] - f[2]/k.c)
-			loss.product(f, rates{f[0] / k.c, f[1] / k.c, f[2] / k.c, f[3] / k.c})
-		}
+		loss = m.losses(st, h)
 	}
 	if m.ex.forces.active {
 		for q := range m.f {
@@ -144,6 +162,32 @@ func (m *meter) powers(st *state, tau, h float64) (work, loss rates) {
 		m.moving(st, tau, h, &work, &loss)
 	}
 	return work, loss
+}
+
+// losses is the power lost in line, dashpots and brackets. A bracket that follows at
+// once is the dashpot behind it, F = C (v - F'/K) to second order.
+func (m *meter) losses(st *state, h float64) rates {
+	for q, v := range [3][]float64{st.v, m.a, m.j} {
+		m.op.lossForce(m.c[q], v)
+	}
+	loss := rates{dot(st.v, m.c[0]), 2 * dot(m.a, m.c[0]), 2 * (dot(m.j, m.c[0]) + dot(m.a, m.c[1])),
+		2*dot(m.i, m.c[0]) + 6*dot(m.j, m.c[1])}
+	for b := range m.sys.brackets {
+		k := &m.sys.brackets[b]
+		i := m.sys.inner + k.end
+		var f rates
+		if k.k/k.c*h > stiffLimit {
+			e := k.c / k.k
+			f = rates{k.c * (st.v[i] - e*(m.a[i]-e*m.j[i])), k.c * (m.a[i] - e*(m.j[i]-e*m.i[i])), k.c * (m.j[i] - e*m.i[i]), k.c * m.i[i]}
+		} else {
+			f[0] = k.k * (st.x[i] - st.r[b])
+			f[1] = k.k * (st.v[i] - m.rd[b])
+			f[2] = k.k * (m.a[i] - m.rdd[b])
+			f[3] = k.k * (m.j[i] - f[2]/k.c)
+		}
+		loss.product(f, rates{f[0] / k.c, f[1] / k.c, f[2] / k.c, f[3] / k.c})
+	}
+	return loss
 }
 
 // moving adds what the prescribed nodes do: the force that the network opposes to
@@ -221,7 +265,7 @@ func (m *meter) close(st *state, h float64) {
 	}
 	w1, l1 := m.powers(st, 1, h)
 	m.acct.Work += hermite(m.w0, w1, h)
-	m.acct.Lost += hermite(m.l0, l1, h)
+	m.acct.Lost += positive(m.l0, l1, h)
 	m.held, m.lastL = m.quiet(), l1
 }
 

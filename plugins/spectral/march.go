@@ -36,6 +36,9 @@ func (w window) tau(t float64) float64 { return (t - w.from) / (w.to - w.from) }
 func newWalk(j *job, op operator, series [][][]float64) *walk {
 	w := &walk{job: j, op: op, ex: newExcitation(j.sys, op)}
 	w.meter = newMeter(j.sys, op, w.ex)
+	if !j.lay.modal {
+		w.meter.stiff = newStiff(j.sys, math.Max(j.lay.quiet, j.lay.loaded))
+	}
 	w.rec = recorder{taps: newTaps(j.sys, op, series), sub: j.sub, every: j.m.Timing.Every}
 	integrals, accel := w.rec.needs()
 	w.accel = accel

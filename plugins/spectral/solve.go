@@ -169,7 +169,7 @@ func (j *job) choose() {
 		lay.modal = proportional && s.size() <= modalMost && !j.hasFields()
 		scale := math.Pow(ratio, float64(lay.level))
 		reach := padeReach(padeMax, padeTol) / lay.hot
-		energy := energyPhase / math.Max(lay.omega, 2*math.Pi*j.m.Band)
+		energy := energyPhase / math.Max(j.sys.hung(8*lay.omega), math.Max(lay.omega, 2*math.Pi*j.m.Band))
 		if lay.modal {
 			reach = math.Inf(1)
 			if rate > 0 {

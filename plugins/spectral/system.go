@@ -260,6 +260,28 @@ func (s *system) highest() {
 	s.above = s.top < all
 }
 
+// hung is the highest own frequency of a mass that hangs by links alone, rad/s, but
+// no more than a limit: the energy account must follow it, whatever the line does.
+func (s *system) hung(limit float64) float64 {
+	attached := make([]bool, s.ends)
+	for i := range s.elements {
+		for _, end := range s.elements[i].end {
+			if end >= 0 {
+				attached[end] = true
+			}
+		}
+	}
+	w := 0.0
+	for i := range s.rows {
+		for _, t := range s.rows[i] {
+			if t.col == i && !attached[i] && t.k > 0 {
+				w = math.Max(w, math.Sqrt(t.k/s.mass[i]))
+			}
+		}
+	}
+	return math.Min(w, limit)
+}
+
 // watchNodes numbers the nodes at which the line's force on a fitting is recorded.
 func (s *system) watchNodes() {
 	s.watched = map[int]int{}

@@ -174,12 +174,13 @@ func (s *remembering) Solve(ctx context.Context, m *mesh.Mesh, req solver.Reques
 type Score struct {
 	Name     string
 	Trials   int
-	Raised   int     // the comparison said that solvers differ
-	Named    int     // and named the one that was spoilt, and no other
-	Misnamed int     // and named another
-	Settled  int     // the comparison said that they agree
-	Worst    float64 // largest ratio of a difference to its bars among the governed figures and records
-	Power    float64 // mean resolving power, share
+	Raised   int      // the comparison said that solvers differ
+	Named    int      // and named the one that was spoilt, and no other
+	Misnamed int      // and named another
+	Settled  int      // the comparison said that they agree
+	Worst    float64  // largest ratio of a difference to its bars among the governed figures and records
+	Power    float64  // mean resolving power, share
+	Alarms   []string // of the first few alarms, what differs
 }
 
 // Study tries so many random lines, first with healthy solvers (the first Score)
@@ -218,6 +219,9 @@ func Study(ctx context.Context, solvers []solver.Solver, lines int, passages flo
 	return scores, nil
 }
 
+// alarmsKept is how many lines of Score.Alarms are kept.
+const alarmsKept = 12
+
 func (s *Score) add(ctx context.Context, m *mesh.Mesh, solvers []solver.Solver, culprit string, options compare.Options) error {
 	out, err := compare.Run(ctx, m, solvers, options)
 	if err != nil {
@@ -239,6 +243,10 @@ func (s *Score) add(ctx context.Context, m *mesh.Mesh, solvers []solver.Solver, 
 			for _, p := range o.Pairs {
 				if o.Governed || o.Kind == compare.Record {
 					s.Worst = max(s.Worst, p.Ratio)
+				}
+				if o.Verdict == compare.Differ && p.Ratio > 2 && !p.Unbacked && !p.Immaterial && len(s.Alarms) < alarmsKept {
+					s.Alarms = append(s.Alarms, fmt.Sprintf("line %d (jump %d): %s %v, %s against %s: ratio %.3g, values %.9g and %.9g, bars %.2g and %.2g, levels to %d and %d",
+						s.Trials, m.Jump, ch.Name, o.Kind, out.Voices[p.A].Name, out.Voices[p.B].Name, p.Ratio, o.Values[p.A], o.Values[p.B], o.Bars[p.A], o.Bars[p.B], out.Voices[p.A].Levels[2], out.Voices[p.B].Levels[2]))
 				}
 			}
 		}
