@@ -53,6 +53,10 @@ type Contribution struct {
 	Curve  float64 // f(+) - 2 f(0) + f(-): 0 where the answer is straight in the input
 }
 
+// rounding is the share of a value below which a change is that of rounding, and
+// no input is named for it. Chosen: some thousand roundings.
+const rounding = 1e-12
+
 // Exact is a value without any doubt of its own.
 func Exact(value float64, unit string, exactInputs ...string) Number {
 	return Bounded(value, unit, 0, exactInputs...)
@@ -86,7 +90,7 @@ func Combine(value float64, unit string, numerical float64, parts []Contribution
 	n.InputU = math.Sqrt(squares)
 	if len(parts) > 0 {
 		n.Basis = FirstOrder
-		if n.Contributions[0].Change != 0 {
+		if math.Abs(n.Contributions[0].Change) > rounding*math.Abs(value) {
 			n.LeadingInput = n.Contributions[0].Input
 		}
 	}

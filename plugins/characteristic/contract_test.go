@@ -69,6 +69,9 @@ func TestBudget(t *testing.T) {
 	if _, err := New().Solve(context.Background(), m, solver.Request{Level: 30}, nil); !errors.Is(err, solver.ErrBudget) {
 		t.Errorf("solve: %v", err)
 	}
+	if _, err := New().Plan(m, solver.Request{Level: 5000}); !errors.Is(err, solver.ErrBudget) {
+		t.Errorf("plan: %v", err)
+	}
 	m.Timing.Rows = math.MaxInt / 2
 	if _, err := New().Solve(context.Background(), m, solver.Request{}, nil); !errors.Is(err, solver.ErrBudget) {
 		t.Errorf("rows: %v", err)

@@ -191,7 +191,7 @@ func (r *run) jerk(j *joint, t float64) int {
 		}
 		return j.motion.Displacement(t)
 	}
-	return jumps(at, t, r.step, size1(at, breaksOf(j.motion.Breaks, math.Inf(1), r.tol)))
+	return jumps(at, t, r.step, largest(at, breaksOf(j.motion.Breaks, math.Inf(1), r.tol)))
 }
 
 // addTies gives a cluster its links and brackets.

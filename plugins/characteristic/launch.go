@@ -84,7 +84,7 @@ func (r *run) launch(w *line, p *mesh.Piece) {
 		for k := 1; k <= n; k++ {
 			back := math.Min(float64(k)*h.delta, w.tau)
 			from, to := place(float64(k-1)*h.delta), place(back)
-			for _, x := range between2(cuts, from, to) {
+			for _, x := range passed(cuts, from, to) {
 				age := math.Abs(x-place(0)) / w.c
 				v := wave(x) * grow(age)
 				marks = append(marks, breakpoint{t: -age, left: v, right: v, weight: 1, order: 1})
@@ -100,9 +100,9 @@ func (r *run) launch(w *line, p *mesh.Piece) {
 	}
 }
 
-// between2 is the inner cuts from a (not counted) to b (counted), in the order
+// passed is the inner cuts from a (not counted) to b (counted), in the order
 // in which one meets them.
-func between2(cuts []float64, a, b float64) []float64 {
+func passed(cuts []float64, a, b float64) []float64 {
 	var out []float64
 	for _, x := range cuts[1 : len(cuts)-1] {
 		if a < b && x > a && x <= b || a > b && x < a && x >= b {

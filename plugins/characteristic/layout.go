@@ -96,7 +96,9 @@ func plan(m *mesh.Mesh, req solver.Request) (Layout, bool) {
 		n := math.Max(math.Ceil(courantGap*shortest/want), 3)
 		lay.Step = courantGap * shortest / n
 	}
-	lay.Step = math.Ldexp(lay.Step, -req.Level)
+	// Level 40 fits no machine; beyond it counts would not fit their types.
+	level := min(max(req.Level, 0), 40)
+	lay.Step = math.Ldexp(lay.Step, -level)
 	lay.substeps(m)
 	lay.Cells = make([]int, len(m.Pieces))
 	pressed := pressedPieces(m)
@@ -109,7 +111,7 @@ func plan(m *mesh.Mesh, req solver.Request) (Layout, bool) {
 		case pressed[i]:
 			lay.Cells[i] = max(3, int(tau/lay.Step))
 		case loss*loss > thin:
-			lay.Cells[i] = cellsOf(tau, loss, lay.Step, m.Jump, req.Level)
+			lay.Cells[i] = cellsOf(tau, loss, lay.Step, m.Jump, level)
 		}
 	}
 	return lay, false

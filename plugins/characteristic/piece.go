@@ -192,14 +192,14 @@ func (l *load) at(t float64) float64 {
 // with the load at t: one more than of the load.
 func (l *load) order(t, delta float64) int {
 	if l.size == 0 {
-		l.size = size1(l.at, l.breaks)
+		l.size = largest(l.at, l.breaks)
 	}
 	return 1 + jumps(l.at, t, delta, l.size)
 }
 
-// size1 is the largest magnitude of a function at eight points between every
+// largest is the largest magnitude of a function at eight points between every
 // two of its breaks and one last unit of time.
-func size1(at func(t float64) float64, breaks []float64) float64 {
+func largest(at func(t float64) float64, breaks []float64) float64 {
 	most := 0.0
 	for i, a := range breaks {
 		b := a + 1

@@ -197,7 +197,7 @@ func exactB5(x float64, rows, stride int) []float64 {
 }
 
 func BenchmarkB5(b *testing.B) {
-	const rows, stride = 100000, 500
+	const rows, stride = 1000000, 500
 	want := [3][]float64{}
 	for i, x := range []float64{8.5, 17, 31} {
 		want[i] = exactB5(x, rows, stride)

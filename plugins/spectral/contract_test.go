@@ -426,7 +426,7 @@ func TestOddMeshes(t *testing.T) {
 }
 
 // The account closes for a stay with a strong damper near its end, whose own node
-// forgets its velocity within microseconds: 1e-3 chosen, 1e-5 seen.
+// forgets its velocity within microseconds: 1e-3 chosen, 6e-5 seen.
 func TestStrongDamperAccount(t *testing.T) {
 	for name, change := range map[string]func(n *mesh.Node){
 		"rigid":     func(n *mesh.Node) { n.Dashpot = 150000 },

@@ -180,7 +180,7 @@ func (j *job) choose() {
 		if j.lossy() {
 			lay.quiet = math.Min(reach, energy)
 		}
-		lay.loaded = math.Min(reach, energy)
+		lay.loaded = math.Min(reach, energy/2) // a load's start shakes its own place faster
 		if j.m.Band > 0 {
 			lay.loaded = math.Min(lay.loaded, loadPhase/(2*math.Pi*j.m.Band*scale))
 		}
