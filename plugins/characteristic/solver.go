@@ -129,7 +129,9 @@ func (r *run) order() float64 {
 	switch {
 	case r.m.Jump <= 1:
 		return 1.5
-	case loss > lossy || len(r.m.Presses) > 0 && r.m.Jump <= 3:
+	case loss > lossy || len(r.m.Presses) > 0:
+		// A press is summed on a lattice whose fourth order shows only where the
+		// lattice is fine against it: manufactured cases fall by 2.3 to 3.1.
 		return 2
 	}
 	return 4

@@ -19,36 +19,36 @@ func Cases() []Case {
 		watchAll(c.Net)
 		out = append(out, c)
 	}
-	add("uniform, lossless", 1.5, func(k *maker) {
+	add("uniform, lossless", 0.8, func(k *maker) {
 		k.line([]scenario.Node{held(), held()}, segment("s", 20, 0.5, 2000, 0))
 		k.motions = []motion{{{shape(20, true), rise(9)}}}
 	})
-	add("uniform, viscous", 1.5, func(k *maker) {
+	add("uniform, viscous", 0.8, func(k *maker) {
 		k.line([]scenario.Node{held(), held()}, segment("s", 20, 0.5, 2000, 0.8))
 		k.motions = []motion{{{shape(20, true), rise(9)}}}
 	})
-	add("two segments, mass, dashpot and spring between them", 1.2, func(k *maker) {
+	add("two segments, mass, dashpot and spring between them", 0.7, func(k *maker) {
 		joint := scenario.Node{Mass: 3, Spring: 900, Dashpots: []scenario.DashpotOf[float64]{{C: 60}}}
 		k.line([]scenario.Node{held(), joint, held()}, segment("s", 7, 0.5, 3000, 0), segment("u", 13, 1.4, 3000, 0))
 		k.motions = []motion{{{shape(20, true), rise(11)}}}
 	})
-	add("the same with different losses", 1.2, func(k *maker) {
+	add("the same with different losses", 0.7, func(k *maker) {
 		joint := scenario.Node{Mass: 3, Spring: 900, Dashpots: []scenario.DashpotOf[float64]{{C: 60}}}
 		k.line([]scenario.Node{held(), joint, held()}, segment("s", 7, 0.5, 3000, 0.7), segment("u", 13, 1.4, 3000, 0.2))
 		k.motions = []motion{{{shape(20, true), rise(11)}}}
 	})
-	add("supports with mass, spring and dashpot", 1.2, func(k *maker) {
+	add("supports with mass, spring and dashpot", 0.7, func(k *maker) {
 		near := scenario.Node{Mass: 1.5, Spring: 2500}
 		far := scenario.Node{Mass: 4, Spring: 700, Dashpots: []scenario.DashpotOf[float64]{{C: 30}}}
 		k.line([]scenario.Node{near, far}, segment("s", 16, 0.8, 4000, 0))
 		wave := cosine(formula.ArgX, 1, 2.2/16, 0.4).plus(cosine(formula.ArgX, 0.3, 6/16.0, 1))
 		k.motions = []motion{{{wave, rise(10)}}}
 	})
-	add("free and absorbing ends", 1.2, func(k *maker) {
+	add("free and absorbing ends", 0.7, func(k *maker) {
 		k.line([]scenario.Node{{}, {Absorbing: true}}, segment("s", 16, 0.8, 4000, 0))
 		k.motions = []motion{{{cosine(formula.ArgX, 1, 2.2/16, 0.4), rise(10)}}}
 	})
-	add("a support that is moved", 1.2, func(k *maker) {
+	add("a support that is moved", 0.7, func(k *maker) {
 		k.line([]scenario.Node{held(), held()}, segment("s", 16, 0.8, 4000, 0.3))
 		wave := cosine(formula.ArgX, 1, 1.1/16, -1.1).plus(cosine(formula.ArgX, -0.5, 2.9/16, 0)) // moves both ends
 		k.motions = []motion{{{wave, rise(10)}}}
@@ -57,14 +57,14 @@ func Cases() []Case {
 			k.net.Moves = append(k.net.Moves, scenario.MoveOf[float64]{Name: "m", Node: node, Motion: scenario.History{Value: at}})
 		}
 	})
-	add("two motions at once, a change of tension held by a joint", 1.2, func(k *maker) {
+	add("two motions at once, a change of tension held by a joint", 0.7, func(k *maker) {
 		joint := scenario.Node{Holds: true, Mass: 1}
 		k.line([]scenario.Node{held(), joint, held()}, segment("s", 9, 0.6, 5000, 0), segment("u", 11, 0.9, 3500, 0))
 		k.motions = []motion{{{shape(20, true), rise(8)}, {cosine(formula.ArgX, 0.5, 5*math.Pi/20, -math.Pi/2), rise(13)}}}
 		// sin(5 pi x/20) does not vanish at 20 m by itself; an even multiple does
 		k.motions[0][1].shape = cosine(formula.ArgX, 0.5, 4*math.Pi/20, -math.Pi/2)
 	})
-	add("two lines and a tie with spring, dashpot and mass", 1.2, func(k *maker) {
+	add("two lines and a tie with spring, dashpot and mass", 0.7, func(k *maker) {
 		k.line([]scenario.Node{held(), held()}, segment("s", 20, 0.5, 2000, 0.2))
 		k.line([]scenario.Node{held(), {Spring: 3000}}, segment("s", 14, 0.7, 2600, 0))
 		k.motions = []motion{{{shape(20, true), rise(9)}}, {{shape(14, false), rise(12)}}}
@@ -89,7 +89,7 @@ func bracketCase() Case {
 		return formula.Add(q[i], formula.Mul(formula.Const(C/K), derivative(11, i+1)))
 	})
 	k.motions = []motion{{{shape(length, true), course}}}
-	c := k.finish("a dashpot behind a bracket", 1.2)
+	c := k.finish("a dashpot behind a bracket", 0.7)
 	// finish has pushed the joint for its mass, spring and rigid dashpots; add the bracket.
 	here := substitute(k.motions[0][0].shape[0], formula.ArgX, formula.Const(at))
 	k.push("bracket", scenario.Place{Node: 1}, formula.Mul(formula.Const(C), formula.Mul(here, q[1])))
@@ -122,7 +122,7 @@ func tunedCase() Case {
 		return formula.Add(own, formula.Mul(formula.Const(M/K), derivative(7, i+2)))
 	})
 	k.motions = []motion{{{shape(length, true), course}}}
-	c := k.finish("a mass hung on a spring", 1.2)
+	c := k.finish("a mass hung on a spring", 0.7)
 	here := substitute(k.motions[0][0].shape[0], formula.ArgX, formula.Const(at))
 	k.push("hung", scenario.Place{Node: 1}, formula.Mul(formula.Const(M), formula.Mul(here, derivative(7, 2))))
 	watchAll(c.Net)

@@ -31,11 +31,12 @@ func knocked(hit, read mesh.Spot, f scenario.History) *mesh.Mesh {
 
 // Reciprocity: hitting and reading swapped gives the same record, and superposition:
 // two loads give the sum. Both hold for the semi-discrete system and the propagation
-// exactly, to rounding: 1e-11 chosen, 2e-13 seen.
+// exactly, to rounding: 1e-11 chosen, 2e-14 seen.
 func TestReciprocityAndSuperposition(t *testing.T) {
 	a, b := inside(0, 2.5), inside(1, 4)
 	one := solve(t, knocked(a, b, halfSine(100, 0.03)), 0).Series[0][0]
 	other := solve(t, knocked(b, a, halfSine(100, 0.03)), 0).Series[0][0]
+	t.Logf("reciprocity %.2g", apart(one, other))
 	if d := apart(one, other); d > 1e-11 {
 		t.Errorf("not reciprocal: %g", d)
 	}
@@ -48,6 +49,7 @@ func TestReciprocityAndSuperposition(t *testing.T) {
 	for i := range sum {
 		sum[i] += one[i]
 	}
+	t.Logf("superposition %.2g", apart(both, sum))
 	if d := apart(both, sum); d > 1e-11 {
 		t.Errorf("no superposition: %g", d)
 	}
@@ -75,9 +77,12 @@ func TestModesAgainstApproximant(t *testing.T) {
 	if !modes.Layout.(*layout).modal || pade.Layout.(*layout).modal {
 		t.Fatal("methods not as meant")
 	}
+	worst := 0.0
+	defer func() { t.Logf("worst %.2g", worst) }()
 	for c := range modes.Series {
-		// Chosen; seen 2e-11 in displacements and 5e-10 in sampled accelerations.
-		if d := apart(pade.Series[c][0], modes.Series[c][0]); d > 1e-8 {
+		worst = math.Max(worst, apart(pade.Series[c][0], modes.Series[c][0]))
+		// Chosen; 4e-12 seen.
+		if d := apart(pade.Series[c][0], modes.Series[c][0]); d > 1e-9 {
 			t.Errorf("channel %d: apart by %g", c, d)
 		}
 	}
@@ -119,6 +124,8 @@ func TestMeans(t *testing.T) {
 		return r
 	}
 	got, sampled := run(m), run(f)
+	worst := 0.0
+	defer func() { t.Logf("worst %.2g", worst) }()
 	for p := range probes {
 		q := sampled.Series[p][0]
 		scale := 0.0
@@ -140,9 +147,9 @@ func TestMeans(t *testing.T) {
 					twice += v / fine * (1 - math.Abs(float64(k+s))/fine)
 				}
 			}
-			// Simpson on 64 cells of signals with up to 2 rad a fine cell at the stiffest
-			// bracket: 1e-5 chosen, 2e-6 seen.
-			if math.Abs(got.Series[2*p][0][i]-once) > 1e-5*scale || math.Abs(got.Series[2*p+1][0][i]-twice) > 1e-5*scale {
+			worst = math.Max(worst, math.Max(math.Abs(got.Series[2*p][0][i]-once), math.Abs(got.Series[2*p+1][0][i]-twice))/scale)
+			// Simpson's rule on cells of 1/64 interval; 1e-6 chosen, 6e-9 seen.
+			if math.Abs(got.Series[2*p][0][i]-once) > 1e-6*scale || math.Abs(got.Series[2*p+1][0][i]-twice) > 1e-6*scale {
 				t.Errorf("probe %d row %d: means %g, %g, want %g, %g (scale %g)", p, i,
 					got.Series[2*p][0][i], got.Series[2*p+1][0][i], once, twice, scale)
 				break
@@ -152,7 +159,8 @@ func TestMeans(t *testing.T) {
 }
 
 // A mean velocity is a difference of displacements, and a twice-averaged acceleration
-// a second one, at t = 0 with u(-t) = u(0) - t v(0). Exact: 1e-12 of the scale.
+// a second one, at t = 0 with u(-t) = u(0) - t v(0). Exact but for rounding of u divided
+// by w and w^2: 1e-11 m/s and 1e-8 m/s^2 chosen for u of 0.01 m.
 func TestMeansAreDifferences(t *testing.T) {
 	const w = 0.004
 	m, _ := mixed(w, 40)
@@ -251,13 +259,14 @@ func TestFreezeIsSmooth(t *testing.T) {
 	}
 	// Second over first differences are proportional to h where the function is smooth.
 	a, b := second(1e-3), second(1e-4)
+	t.Logf("%.4g %.4g", a, b)
 	if math.Abs(a/b-10) > 0.5 {
 		t.Errorf("second over first differences %g at 1e-3, %g at 1e-4", a, b)
 	}
 }
 
 // A bare splice and the walking order must not matter: the cut line has other
-// elements, so that only the level's own error may show.
+// elements, so that only the level's own error may show: 1e-8 chosen, 2e-11 seen.
 func TestSpliceAndOrder(t *testing.T) {
 	build := func(segs ...seg) *mesh.Mesh {
 		m := chain(0.01, 100, segs...)
@@ -277,6 +286,7 @@ func TestSpliceAndOrder(t *testing.T) {
 	back.Pieces[0].Start = func(s float64) float64 { return bump(20 - s) }
 	watch(back, scenario.Displacement, 0, inside(0, 5))
 	a := solve(t, one, 1).Series[0][0]
+	t.Logf("cut %.2g, reversed %.2g", apart(solve(t, two, 1).Series[0][0], a), apart(solve(t, back, 1).Series[0][0], a))
 	if d := apart(solve(t, two, 1).Series[0][0], a); d > 1e-8 {
 		t.Errorf("cut: %g", d)
 	}
@@ -426,7 +436,7 @@ func TestOddMeshes(t *testing.T) {
 }
 
 // The account closes for a stay with a strong damper near its end, whose own node
-// forgets its velocity within microseconds: 1e-3 chosen, 6e-5 seen.
+// forgets its velocity within microseconds: 1e-3 chosen, 7e-5 seen.
 func TestStrongDamperAccount(t *testing.T) {
 	for name, change := range map[string]func(n *mesh.Node){
 		"rigid":     func(n *mesh.Node) { n.Dashpot = 150000 },

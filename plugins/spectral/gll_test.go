@@ -43,7 +43,7 @@ func TestQuadratureDegrees(t *testing.T) {
 			if d%2 == 0 {
 				want = 2 / float64(d+1)
 			}
-			// Rounding of at most 60 terms of size 1: 1e-13 chosen, 2e-15 seen.
+			// Rounding of at most 60 terms of size 1: 1e-13 chosen.
 			if math.Abs(sum-want) > 1e-13 {
 				t.Errorf("%s with %d points, x^%d: error %g", what, len(x), d, sum-want)
 			}
@@ -75,7 +75,7 @@ func TestReferenceElement(t *testing.T) {
 				u += l[i] * math.Pow(r.x[i], float64(d))
 				du += ls[i] * math.Pow(r.x[i], float64(d))
 			}
-			// Chosen; seen 4e-14 in the slope at p = 31.
+			// Chosen: rounding grows as p^2 in the slope.
 			if math.Abs(u-math.Pow(x, float64(d))) > 1e-13 || math.Abs(du-float64(d)*math.Pow(x, float64(d-1))) > 1e-11 {
 				t.Errorf("p=%d x=%g: %g, %g", p, x, u, du)
 			}

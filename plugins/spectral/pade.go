@@ -9,7 +9,7 @@ import (
 
 // factor is one factor of the approximant of exp z: for a pair of poles
 //
-//	nu + 2 Re-pair [ res/(z-pole) + conj ],
+//	nu + res/(z-pole) + conj(res)/(z-conj(pole)),
 //
 // for the single real pole res/(z-pole) alone, with nu = 0.
 type factor struct {
