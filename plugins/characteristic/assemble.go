@@ -29,7 +29,7 @@ type run struct {
 	coarsest   float64 // s, largest lattice step
 	series     [][][]float64
 	watches    []watch
-	row, field int // rows recorded
+	row        int // rows recorded
 	notes      []string
 	start      float64 // J, stored at t = 0
 	most       float64
@@ -235,15 +235,6 @@ func (r *run) makeLattices(lay *Layout, lag float64) {
 			w.advance()
 		}
 	}
-}
-
-// refused counts breaks that had to be left to the interpolation.
-func (r *run) refused() int {
-	n := 0
-	for _, c := range r.clusters {
-		n += c.refused
-	}
-	return n
 }
 
 // note adds a remark once.

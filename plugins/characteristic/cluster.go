@@ -84,7 +84,6 @@ type cluster struct {
 	rateQ   []float64
 	last    float64 // s, length of the last part step if nothing broke in it, else 0
 	account energy
-	refused int // breaks that found no room
 }
 
 // build sets up the matrices; false where a node has nothing to resist a force.

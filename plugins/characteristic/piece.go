@@ -38,7 +38,7 @@ func (p *line) carried(x, t float64, side, d int) (f, g float64) {
 	s = (p.length - x) / p.c
 	g = p.decay(s) * p.sent[1].at(t-s, side, d)
 	for _, src := range p.sources {
-		if lag := (x - src.x) / p.c; lag > 0 {
+		if lag := (x - src.x) / p.c; lag >= 0 { // at the source itself: the side after it
 			f += p.decay(lag) * src.h.at(t-lag, side, d)
 		} else {
 			g += p.decay(-lag) * src.h.at(t+lag, side, d)

@@ -178,9 +178,7 @@ func (c *cluster) scatter(j *joint, t float64, order int, total float64) {
 		if o > rounded || strength < weak {
 			continue
 		}
-		if !q.out.mark(b) {
-			c.refused++
-		}
+		q.out.mark(b) // where there is no room, the interpolation copes
 	}
 	if j.own != nil && order <= rounded && total*math.Pow(c.hrel, float64(order-1)) >= weak {
 		j.own.mark(breakpoint{t: t, left: j.before, right: j.u, weight: total, order: order})

@@ -23,7 +23,6 @@ type Case struct {
 type maker struct {
 	net     *scenario.Network
 	motions []motion
-	fixed   scenario.Node
 }
 
 // segment is one segment of the kit's own invented stock.

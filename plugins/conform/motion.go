@@ -59,9 +59,6 @@ func (m motion) at(dx, dt int) formula.Program {
 	return sum
 }
 
-// value is the displacement at x and t.
-func (m motion) value(x, t float64) float64 { return m.at(0, 0).At(t, x) }
-
 // substitute replaces argument arg of a program by another program.
 func substitute(p formula.Program, arg int, by formula.Program) formula.Program {
 	var stack []formula.Program

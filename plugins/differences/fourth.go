@@ -137,8 +137,6 @@ type fourthRun struct {
 	loads  []fourthLoad
 	tapes  []*tape
 	energy solver.Energy
-	work   float64   // W at a stage
-	lost   float64   // W at a stage
 	onEnd  []float64 // N, load on the ends' shares of the strands
 }
 

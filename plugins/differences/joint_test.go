@@ -147,9 +147,11 @@ func TestOrderAtJoints(t *testing.T) {
 				force: sample(m, func(s float64) float64 { return 2*z1*in(20, s) - (z1+z2)*read(v, s) }),
 			}
 			for _, order := range []int{2, 4} {
-				layout, notes := layoutOf(m, 1, 2)
+				layout, _ := layoutOf(m, 1, 2)
 				if order == 4 {
-					if layout, notes = newLayout(m, 1); layout.Order != 4 {
+					fourth, notes := newLayout(m, 1)
+					layout = fourth
+					if layout.Order != 4 {
 						t.Log(notes)
 						continue
 					}

@@ -34,7 +34,6 @@ type oracle struct {
 	elements []element
 	M        []float64
 	K, C     *mat.Dense
-	moved    []int // mesh nodes, appended after the free unknowns
 }
 
 func newOracle(m *mesh.Mesh, s *system) *oracle {
