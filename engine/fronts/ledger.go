@@ -3,6 +3,7 @@ package fronts
 import (
 	"fmt"
 	"math"
+	"strings"
 
 	"github.com/tautspan/tautspan/engine/mesh"
 )
@@ -133,6 +134,9 @@ func Trace(m *mesh.Mesh, opt Options) (*Ledger, error) {
 	}
 	if opt.StartName == "" {
 		opt.StartName = "start"
+	}
+	if beyond := m.Unknown(0); len(beyond) > 0 {
+		return nil, fmt.Errorf("the pulse ledger %s", strings.Join(beyond, "; "))
 	}
 	switch {
 	case !(opt.End >= 0) || math.IsInf(opt.End, 0):

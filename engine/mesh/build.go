@@ -20,6 +20,7 @@ func Build(net *scenario.Network) (*Mesh, error) {
 	b.cut()
 	b.fittings()
 	b.links()
+	b.sags()
 	b.starts()
 	if err := b.loads(); err != nil {
 		return nil, err
@@ -127,7 +128,8 @@ func (b *builder) pieces(line int, ends []float64) {
 		p := Piece{
 			Line: line, Segment: seg, From: len(b.m.Nodes) - 2, To: len(b.m.Nodes) - 1,
 			X0: from, S0: from - ends[seg], Length: x - from,
-			MassPerLength: s.MassPerLength, Tension: s.Tension, Viscous: s.Viscous,
+			MassPerLength: s.MassPerLength, Tension: s.Tension + s.TensionRise*(from-ends[seg]), Viscous: s.Viscous,
+			TensionRise: s.TensionRise, Bending: s.Bending, Internal: s.Internal,
 		}
 		if from == ends[seg] && x == ends[seg+1] {
 			p.Length = s.Length // as given, not as the difference of two sums
@@ -171,6 +173,7 @@ func (b *builder) fittings() {
 				n.Name = "line." + line.Name + "." + line.Segments[k-1].Name + "|" + line.Segments[k].Name
 			}
 			n.Fixed = from.Fixed
+			n.Clamped, n.Rotary = from.Clamped, n.Rotary+from.Rotary
 			n.Mass += from.Mass
 			n.Spring += from.Spring
 			for _, d := range from.Dashpots {

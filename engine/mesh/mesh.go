@@ -57,6 +57,8 @@ type Node struct {
 	Start     float64 // m, displacement at t = 0
 	StartRate float64 // m/s, velocity at t = 0 (of the pieces that meet there)
 	Support   bool
+	Clamped   bool    // does not turn; only where a piece that meets here has bending
+	Rotary    float64 // N m/rad, to ground, against turning; likewise
 }
 
 // Maxwell is a spring and a dashpot in series, to ground: a dashpot behind a
@@ -84,6 +86,9 @@ type Piece struct {
 	MassPerLength float64 // kg/m
 	Tension       float64 // N
 	Viscous       float64 // N s/m^2
+	TensionRise   float64 // N/m, dT/dx; Tension is that at the piece's start
+	Bending       float64 // EI, N m^2
+	Internal      float64 // s, Kelvin-Voigt loss of the bending
 	// Start is the displacement at t = 0 and StartRate the velocity, as
 	// functions of the distance from the piece's start, m; nil means 0.
 	Start     func(s float64) float64
@@ -172,6 +177,25 @@ type Line struct {
 	Name   string
 	Pieces []int // in walking order
 	Length float64
+	Sag    *Sag // nil: none
+}
+
+// Sag is the shallow-cable term: the line's own stretch between its ends makes
+// an extra tension
+//
+//	h = G (sum over pieces of w_p * integral of u dx + sum over nodes of w_j u_j),
+//
+// the same along the line, which pulls back by w_p h per length and w_j h at
+// nodes; G = 1/(sum of Le/EA over the segments), w_p = m g cos(incline)/H,
+// w_j = M g cos(incline)/H. Stored energy h^2/(2G). For a uniform line
+// G w^2 = kappa = (EA/Le)(m g/H)^2 and lambda^2 = kappa L^3/H.
+//
+// Source: Irvine, Caughey, Proc. R. Soc. Lond. A 341 (1974) 299-315 (from
+// memory); several segments and masses derived by the same equilibrium.
+type Sag struct {
+	Stiffness float64         // G, N/m
+	Pieces    []float64       // w_p, 1/m, in the order of Line.Pieces
+	Nodes     map[int]float64 // w_j by node, 1
 }
 
 // Channel is one recorded quantity: at one spot, or along a line at several.

@@ -147,7 +147,7 @@ func (t *Template) Bind(values []float64) (*Network, error) {
 }
 
 func (b *binder) line(l *LineOf[formula.Program]) Line {
-	out := Line{Name: l.Name, Nodes: make([]Node, len(l.Nodes)), Segments: make([]Segment, len(l.Segments))}
+	out := Line{Name: l.Name, Sag: l.Sag, Incline: b.num(l.Incline, "line."+l.Name+".incline"), Nodes: make([]Node, len(l.Nodes)), Segments: make([]Segment, len(l.Segments))}
 	base := "line." + l.Name + "."
 	for i := range l.Nodes { // in walking order, so that the first fault is the first in the text
 		out.Nodes[i] = b.node(&l.Nodes[i], base)
@@ -160,14 +160,42 @@ func (b *binder) line(l *LineOf[formula.Program]) Line {
 
 func (b *binder) segment(s *SegmentOf[formula.Program], base string) Segment {
 	path := base + s.Name + "."
-	return Segment{
+	out := Segment{
 		Name: s.Name, Stock: s.Stock,
 		Length:        b.pos(s.Length, path+"length"),
 		MassPerLength: b.pos(s.MassPerLength, path+"mass"),
-		Tension:       b.pos(s.Tension, path+"tension"),
+		Tension:       b.num(s.Tension, path+"tension"),
+		TensionRise:   b.num(s.TensionRise, path+"tension"),
+		Bending:       b.nonneg(s.Bending, path+"bending"),
+		Internal:      b.nonneg(s.Internal, path+"loss"),
 		Axial:         b.nonneg(s.Axial, path+"axial"),
 		Viscous:       b.nonneg(s.Viscous, path+"loss"),
 		Strength:      b.nonneg(s.Strength, path+"strength"),
+	}
+	b.tension(&out, path+"tension")
+	return out
+}
+
+// tension checks that the tension is a pull all along a segment. An inclined
+// line may come down to none at an end (a rope that hangs free), which rounding
+// must not turn into a push.
+func (b *binder) tension(s *Segment, path string) {
+	start, end := s.Tension, s.Tension+s.TensionRise*s.Length
+	if s.TensionRise == 0 {
+		if start <= 0 {
+			b.fail(path, fmt.Sprintf("must be greater than zero, and is %g", start))
+		}
+		return
+	}
+	none := placeSlack * math.Max(math.Abs(start), math.Abs(end))
+	if math.Abs(start) <= none {
+		s.Tension = 0
+	}
+	switch {
+	case start < -none:
+		b.fail(path, fmt.Sprintf("must be greater than zero all along, and is %g at the segment's start", start))
+	case end < -none:
+		b.fail(path, fmt.Sprintf("must be greater than zero all along, and is %g at the segment's end", end))
 	}
 }
 
@@ -176,6 +204,7 @@ func (b *binder) node(n *NodeOf[formula.Program], base string) Node {
 	out := Node{
 		Name: n.Name, Kind: n.Kind, Fixed: n.Fixed, Absorbing: n.Absorbing, Holds: n.Holds,
 		Mass: b.nonneg(n.Mass, path+"mass"), Spring: b.nonneg(n.Spring, path+"spring"),
+		Clamped: n.Clamped, Rotary: b.nonneg(n.Rotary, path+"rotary"),
 	}
 	for _, d := range n.Dashpots {
 		bound := DashpotOf[float64]{C: b.nonneg(d.C, path+"dashpot"), Bracket: d.Bracket}

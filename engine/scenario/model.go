@@ -22,6 +22,8 @@ type LineOf[V any] struct {
 	Name     string
 	Nodes    []NodeOf[V]
 	Segments []SegmentOf[V]
+	Incline  V    // rad, positive where the line rises in walking order
+	Sag      bool // with the shallow-cable term of Irvine and Caughey, vertical plane
 }
 
 // NodeKind says what stands at a node.
@@ -47,6 +49,10 @@ type NodeOf[V any] struct {
 	Spring    V    // N/m
 	Dashpots  []DashpotOf[V]
 	Tuned     []TunedOf[V]
+	// On a line with bending a node also says how it turns: freely, not at all
+	// (Clamped), or against a rotary spring to ground.
+	Clamped bool
+	Rotary  V // N m/rad
 }
 
 // DashpotOf is a dashpot to ground, perhaps through a bracket that gives.
@@ -69,7 +75,10 @@ type SegmentOf[V any] struct {
 	Stock         string
 	Length        V // m
 	MassPerLength V // kg/m
-	Tension       V // N
+	Tension       V // N; where it rises along the segment, that at its start
+	TensionRise   V // N/m, dT/dx of an inclined line: m g sin(incline)
+	Bending       V // EI, N m^2; 0: an ideal string
+	Internal      V // s, Kelvin-Voigt: bending moment EI (u'' + Internal u''_t)
 	Axial         V // EA, N; 0 where not said
 	Viscous       V // N s/m^2: force per length and velocity
 	Strength      V // N; 0 where not said

@@ -11,7 +11,8 @@ import (
 func TravelTime(line *scenario.Line) float64 {
 	t := 0.0
 	for _, s := range line.Segments {
-		t += s.Length * math.Sqrt(s.MassPerLength/s.Tension)
+		// 2 L sqrt(m)/(sqrt(T0)+sqrt(T1)) where the tension rises evenly
+		t += 2 * s.Length * math.Sqrt(s.MassPerLength) / (math.Sqrt(s.Tension) + math.Sqrt(EndTension(&s)))
 	}
 	return t
 }
@@ -34,7 +35,8 @@ func StoredEnergy(line *scenario.Line) float64 {
 		if s.Axial <= 0 {
 			return math.NaN()
 		}
-		e += s.Tension * s.Tension * s.Length / (2 * s.Axial)
+		t0, t1 := s.Tension, EndTension(&s)
+		e += (t0*t0 + t0*t1 + t1*t1) / 3 * s.Length / (2 * s.Axial)
 	}
 	return e
 }
@@ -43,18 +45,26 @@ func StoredEnergy(line *scenario.Line) float64 {
 func MeanTension(line *scenario.Line) float64 {
 	sum := 0.0
 	for _, s := range line.Segments {
-		sum += s.Tension * s.Length
+		sum += (s.Tension + EndTension(&s)) / 2 * s.Length
 	}
 	return sum / Length(line)
+}
+
+// EndTension is the tension at the end of a segment, N.
+func EndTension(s *scenario.Segment) float64 {
+	return math.Max(0, s.Tension+s.TensionRise*s.Length)
 }
 
 // TensionAt is the tension at a place, N; at a node where it changes, that of
 // the segment after it.
 func TensionAt(net *scenario.Network, p scenario.Place) float64 {
 	segs := net.Lines[p.Line].Segments
-	i := p.Segment
-	if p.Node >= 0 {
-		i = min(p.Node, len(segs)-1)
+	if p.Node < 0 {
+		s := &segs[p.Segment]
+		return s.Tension + s.TensionRise*p.Offset
 	}
-	return segs[i].Tension
+	if p.Node == len(segs) {
+		return EndTension(&segs[p.Node-1])
+	}
+	return segs[p.Node].Tension
 }

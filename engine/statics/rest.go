@@ -60,6 +60,9 @@ func Hold(net *scenario.Network) (*Rest, error) {
 	if len(net.Plucks) == 0 {
 		return rest, nil
 	}
+	if at := curved(net); at != "" {
+		return nil, &scenario.PathError{Path: "excite." + net.Plucks[0].Name, What: "the static shape of a line with bending stiffness, sag or varying tension (" + at + ") cannot be computed by this version yet; start it by a push"}
+	}
 	g := newGrid(net)
 	if !g.factor() {
 		return nil, &scenario.PathError{Path: "excite." + net.Plucks[0].Name, What: "nothing holds the line sideways, so it has no static shape to be drawn into; hold a support or give it a spring"}
@@ -90,6 +93,18 @@ func Hold(net *scenario.Network) (*Rest, error) {
 		rest.lines[i] = profile{x: g.x[i], u: total[first : first+len(g.x[i])]}
 	}
 	return rest, nil
+}
+
+// curved names a line whose static shape is not made of straight parts, or "".
+func curved(net *scenario.Network) string {
+	for i := range net.Lines {
+		for _, s := range net.Lines[i].Segments {
+			if s.Bending > 0 || s.TensionRise != 0 || net.Lines[i].Sag {
+				return net.Lines[i].Name
+			}
+		}
+	}
+	return ""
 }
 
 // grid is the static network: every node, pluck place and tie end of every

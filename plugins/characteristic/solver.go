@@ -35,6 +35,9 @@ func (tracker) Version() string { return version }
 
 // Refuses lists what characteristics cannot represent of the mesh.
 func (tracker) Refuses(m *mesh.Mesh) []string {
+	if beyond := m.Unknown(0); len(beyond) > 0 {
+		return beyond
+	}
 	var out []string
 	if err := sound(m); err != nil {
 		return []string{err.Error()}

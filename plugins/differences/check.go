@@ -9,6 +9,9 @@ import (
 
 // refuses lists what keeps a mesh from being solved: numbers that no line has.
 func refuses(m *mesh.Mesh) []string {
+	if beyond := m.Unknown(0); len(beyond) > 0 {
+		return beyond
+	}
 	var out []string
 	say := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
 	if !(m.Timing.Every > 0) || math.IsInf(m.Timing.Every, 0) || m.Timing.Rows < 1 {

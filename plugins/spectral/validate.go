@@ -119,6 +119,9 @@ func validateActions(m *mesh.Mesh) error {
 
 // refuses lists what has no equation of motion here.
 func refuses(m *mesh.Mesh) []string {
+	if beyond := m.Unknown(0); len(beyond) > 0 {
+		return beyond
+	}
 	var out []string
 	attached := m.Attached()
 	for i := range m.Nodes {
