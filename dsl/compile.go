@@ -23,6 +23,7 @@ type Compiled struct {
 	PathSpans   resolve.Paths     // the text behind a path such as line.stay.lower.length
 	Sources     []resolve.Source  // the scenario first, then used files
 	Lets        []resolve.LetInfo // in the order of the text
+	Stocks      []resolve.StockInfo
 	set         map[string]string
 }
 
@@ -30,7 +31,7 @@ type Compiled struct {
 // everything that it uses. Nothing above the root of fsys is read.
 func Compile(fsys fs.FS, name string, opts Options) *Compiled {
 	res := resolve.Resolve(fsys, name, opts)
-	c := &Compiled{Template: res.Template, Diagnostics: res.Diags, PathSpans: res.Paths, Sources: res.Sources, Lets: res.Lets, set: opts.Set}
+	c := &Compiled{Template: res.Template, Diagnostics: res.Diags, PathSpans: res.Paths, Sources: res.Sources, Lets: res.Lets, Stocks: res.Stocks, set: opts.Set}
 	if !c.Diagnostics.HasErrors() {
 		c.bindOnce()
 	}

@@ -19,7 +19,7 @@ What the language says and this version cannot do yet is refused with the code n
 	"not-yet": `
 The language can say this, and this version cannot compute it. It is refused rather than left out, because an answer without it would be an answer to another question.
 
-The hint names a way around it where there is one. For bending stiffness, "bending 0 N*m^2" says that you treat the line knowingly as an ideal string; a line with xi = L*sqrt(T/EI) below some hundreds then comes out too low in frequency.`,
+The hint names a way around it where there is one.`,
 	"not-answered-yet": `
 The statement is read and checked for names and dimensions. No command of this version answers it; the message names the one that will. It changes nothing in the answers of other commands.`,
 	"unknown-name": `
@@ -153,7 +153,23 @@ The tension would stretch the line by more than 1 %; the axial stiffness, the ar
 	"unlikely-agree": `
 Solvers in double precision do not agree so closely on anything that takes many steps.`,
 	"sag-matters": `
-The line sags enough for its first frequency in the vertical plane to be higher than that of a straight string. lambda squared, (m g L/T)^2 L EA/(T Le), measures it; above 0.1 the first vertical mode is remarked on. Other modes, and everything sideways, are not changed. The number is for a level line; an inclined one has less.`,
+The line sags enough for its first frequency in the vertical plane to be higher than that of a straight string. lambda squared, (m g L cos(incline)/T)^2 L EA/(T Le), measures it; above 0.1 the first vertical mode is remarked on. "sag included" takes it in. Other modes, and everything sideways ("plane sideways"), are hardly changed.`,
+	"bending-matters": `
+The line is computed as an ideal string, although what is known of its metal allows a bending stiffness that would show. xi = L*sqrt(T/EI) measures it, here with EI of a solid bar of the same metal area, the most that there can be; clamped ends raise the first frequency by about 2/xi and a tension worked out from it by 4/xi, which is 1 % at 400. The true EI of wires lies between that of wires that slide on one another and that of the bar, often a factor of ten to a hundred apart. Say it with "bending", as a doubtful let if need be.`,
+	"bending-unsaid": `
+A solid round bar has the bending stiffness E pi d^4/64. What is made of wires, or is not solid, has one between two bounds that lie far apart: the sum of its wires if they slide on one another, and a solid bar of the same metal area if they do not. Which of them holds depends on tension and amplitude, so it is not guessed. Say "bending", perhaps by a doubtful let such as "between 40 N*m^2 and 300 N*m^2", or "bending 0 N*m^2" to treat the line knowingly as an ideal string.`,
+	"unlikely-bending": `
+The bending stiffness lies more than a factor of two outside the bounds that follow from the metal: wires that slide on one another, and a solid bar of the same area. A unit, the modulus or the area is likely to be wrong.`,
+	"turning-unsaid": `
+On a line with bending stiffness an end that is held must say how it turns, because the answers hang on it: "pinned" turns freely, "clamped" does not turn, "fixed, rotary KR" turns against a rotary spring. "fixed, turning" is the same as pinned, "fixed, guided" the same as clamped. Where the bending stiffness is a let, this is asked for whatever its value.`,
+	"turning-assumed": `
+This support gives across the line and does not say how it turns; nothing that was said holds it from turning, so it is taken to turn freely. Say "turning" to confirm, "guided" if it does not turn, or "rotary KR".`,
+	"absorbs-partly": `
+An absorbing end is a dashpot of the impedance sqrt(T m) that turns freely. That takes in every wave of an ideal string. On a line with bending it takes in long waves, and part of the short ones comes back.`,
+	"tension-place": `
+The tension of an inclined line grows uphill by its own weight, m g sin(incline) a metre, and by the weight of its joints. A tension therefore holds at one place, which is said: "tension 412 kN at deck" (a support, a joint, or a place in a segment), or "at mean" for the mean over the length.`,
+	"stock-unseen": `
+This stock comes from the built-in list, and its mass per length was not read from the source named there but is remembered or worked out from remembered numbers. "tautspan stock NAME" shows where each value comes from. Hold it against the certificate of the line, and say a stock of your own where they differ.`,
 	"missing-version": `
 A file begins with "tautspan 1", the version of the language that it is written in.`,
 	"unknown-version": `

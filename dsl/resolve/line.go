@@ -25,9 +25,12 @@ type lineEntry struct {
 	index    int
 	bad      bool
 	sideways bool
-	sagSaid  bool             // sag or an incline was asked for, and refused
-	tension  *formula.Program // of the whole line
-	at       *syntax.Spot     // of `tension T at PLACE`
+	sag      diag.Span         // of `sag included`, zero where it is not said
+	weighted bool              // an end keeps the tension constant
+	incline  *formula.Program  // nil for a level line
+	nodes    map[int]nodeWords // what each support and joint says, by node
+	tension  *formula.Program  // of the whole line
+	at       *syntax.Spot      // of `tension T at PLACE`
 	tensAt   diag.Span
 	parts    []part // by segment
 	own      map[string]element
@@ -57,6 +60,7 @@ func (r *resolver) resolveLines() {
 	for i, e := range r.lineOrder {
 		e.index = i
 		e.own = map[string]element{}
+		e.nodes = map[int]nodeWords{}
 		r.tmpl.Model.Lines = append(r.tmpl.Model.Lines, scenario.LineOf[formula.Program]{Name: e.name})
 		r.path("line."+e.name, e.stmt.Name.Span)
 		r.lineProperties(e)
@@ -70,7 +74,7 @@ func (r *resolver) resolveLines() {
 		}
 	}
 	for _, e := range r.lineOrder {
-		r.lineTensionPlace(e)
+		r.lineTension(e)
 		r.lineChecks(e)
 	}
 }
@@ -98,14 +102,9 @@ func (r *resolver) lineProperties(e *lineEntry) {
 			e.tension = &v.prog
 			e.bad = e.bad || v.bad
 		case "incline":
-			v := r.want(p.Value, plain, unit.Angle, "incline")
-			if x, isConst := v.prog.IsConst(); !v.bad && !(isConst && x == 0) {
-				e.sagSaid = true
-				r.notYet(p.Span, "an inclined line, whose tension varies along it,", "")
-			}
+			r.lineIncline(e, p)
 		case "sag":
-			e.sagSaid = true
-			r.notYet(p.Span, "sag", "leave it out: every mode but the first in the vertical plane stays right")
+			e.sag = p.Span
 		case "stretch":
 			r.notYet(p.Span, "tension that grows with amplitude", "")
 		case "plane":
@@ -248,18 +247,23 @@ func (r *resolver) addSegment(e *lineEntry, line *scenario.LineOf[formula.Progra
 	p.stock = r.segmentStock(s)
 	if p.stock != nil {
 		out.Stock = p.stock.stmt.Name.Text
-		out.MassPerLength, out.Axial, out.Strength, out.Viscous = p.stock.mass, p.stock.axial, p.stock.strength, p.stock.viscous
+		out.MassPerLength, out.Axial, out.Strength, out.Bending = p.stock.mass, p.stock.axial, p.stock.strength, p.stock.bending
+		out.Viscous, out.Internal = p.stock.loss.viscous, p.stock.loss.internal
 		r.path(path+".mass", p.stock.massAt)
 		r.path(path+".axial", p.stock.axialAt)
 		r.path(path+".strength", p.stock.strongAt)
+		r.path(path+".bending", p.stock.bendAt)
 	}
 	p.sound = p.sound && p.stock != nil && !p.stock.bad
 	r.segmentTension(e, s, &out, &p, path)
 	if len(s.Losses) > 0 {
-		out.Viscous, _ = r.losses(s.Losses, out.MassPerLength, p.stock == nil || p.stock.bad)
+		unsure := p.stock == nil || p.stock.bad
+		loss := r.losses(s.Losses, out.MassPerLength, unsure)
+		r.internalWantsBending(loss, out.Bending, unsure)
+		out.Viscous, out.Internal = loss.viscous, loss.internal
 		r.path(path+".loss", s.Losses[0].Span)
 	} else if p.stock != nil {
-		r.path(path+".loss", p.stock.lossAt)
+		r.path(path+".loss", p.stock.loss.at)
 	}
 	for _, every := range s.Every {
 		r.notYet(every.Span, "a row of like joints by `every`", "write each as a joint")
@@ -282,17 +286,27 @@ func (r *resolver) segmentStock(s *syntax.Segment) *stockEntry {
 	if r.broken[name] {
 		return nil
 	}
+	if e := r.builtinStock(name, s.Stock.Span); e != nil {
+		return e
+	}
 	if other, ok := r.top[name]; ok {
 		r.errorAt(s.Stock.Span, "unknown-name", fmt.Sprintf("%s is %s, not a stock", name, article(other.kind)), "", "", related(other.span, "said here"))
 		return nil
 	}
-	r.errorAt(s.Stock.Span, "unknown-name", "no stock is called "+name, "", nearest(r, name, r.stocks))
+	hint := nearest(r, name, r.stocks)
+	if hint == "" && len(name) > 3 {
+		hint = nearest(r, name, builtinNames())
+	}
+	r.errorAt(s.Stock.Span, "unknown-name", "no stock is called "+name, "", hint)
 	return nil
 }
 
 // segmentTension takes the segment's own tension, or the line's.
 func (r *resolver) segmentTension(e *lineEntry, s *syntax.Segment, out *scenario.SegmentOf[formula.Program], p *part, path string) {
 	switch {
+	case s.Tension != nil && e.incline != nil:
+		r.errorAt(s.Tension.Place(), "contradiction", "the tension of an inclined line is said once, at one place of it", "along the line it follows from the weight", "")
+		p.sound = false
 	case s.Tension != nil:
 		v := r.inRange(r.want(s.Tension, plain, unit.Force, "tension"), s.Tension, positive, "tension")
 		out.Tension = v.prog
@@ -309,22 +323,6 @@ func (r *resolver) segmentTension(e *lineEntry, s *syntax.Segment, out *scenario
 		p.sound = false
 	}
 	r.path(path+".tension", p.tensAt)
-}
-
-// lineTensionPlace checks the place of `tension T at PLACE`, which matters only
-// where the tension varies.
-func (r *resolver) lineTensionPlace(e *lineEntry) {
-	if e.at == nil {
-		return
-	}
-	if name, ok := e.at.Name.Plain(); ok && e.at.Offset == nil {
-		if _, own := e.own[name]; own || name == "mean" {
-			return
-		}
-	}
-	if p, ok := r.place(e.at, "tension"); ok && p.Line != e.index {
-		r.errorAt(e.at.Span, "wrong-place", "the tension of a line is said at a place of that line", "", "")
-	}
 }
 
 // lineChecks judges a line as a whole.
@@ -345,6 +343,8 @@ func (r *resolver) lineChecks(e *lineEntry) {
 			r.tensionChange(e, line, i)
 		}
 	}
+	r.turns(e, line)
+	r.lineSag(e, line)
 	r.unlikelyLine(e, line)
 }
 
@@ -355,6 +355,10 @@ func (r *resolver) tensionChange(e *lineEntry, line *scenario.LineOf[formula.Pro
 	changes := math.Abs(a-b) > 1e-12*math.Max(a, b)
 	node := &line.Nodes[i]
 	switch {
+	case e.incline != nil:
+		if node.Holds {
+			r.warnAt(e.own[node.Name].span, "no-effect", "the joint "+node.Name+" holds nothing", "the tension of an inclined line changes by weight alone", "")
+		}
 	case changes && !node.Holds:
 		where := "a bare splice"
 		if node.Kind == scenario.Joint {

@@ -111,8 +111,8 @@ func (r *resolver) resolveWatch(w *syntax.Watch) {
 			r.errorAt(q.Span, "said-twice", "this watch records "+q.Text+" already", "", "")
 			ok = false
 		default:
-			if quantity == scenario.Moment {
-				r.warnAt(q.Span, "no-effect", "the moment is zero everywhere", "this line has no bending stiffness", "")
+			if quantity == scenario.Moment && !r.watchedBends(&out) {
+				r.warnAt(q.Span, "no-effect", "the moment is zero everywhere", "there is no bending stiffness", "")
 			}
 			said[q.Text] = true
 			out.Quantities = append(out.Quantities, quantity)
@@ -131,6 +131,30 @@ func (r *resolver) resolveWatch(w *syntax.Watch) {
 	} else {
 		r.watches[w.Name.Text] = faultyWatch
 	}
+}
+
+// watchedBends tells whether a watched place or stretch has bending, or is not
+// known well enough to say.
+func (r *resolver) watchedBends(w *scenario.WatchOf[formula.Program]) bool {
+	line, from, to := w.At.Line, w.At.Segment, w.At.Segment
+	if w.Along {
+		line, from, to = w.Span.Line, w.Span.Segment, w.Span.Segment
+	} else if w.At.Node >= 0 {
+		from, to = w.At.Node-1, w.At.Node
+	}
+	if line < 0 || line >= len(r.tmpl.Model.Lines) || r.lineOrder[line].bad {
+		return true
+	}
+	segments := r.tmpl.Model.Lines[line].Segments
+	if w.Along && w.Span.Segment < 0 {
+		from, to = 0, len(segments)-1
+	}
+	for i := max(from, 0); i <= to && i < len(segments); i++ {
+		if mayBend(segments[i].Bending) {
+			return true
+		}
+	}
+	return false
 }
 
 // faultyWatch marks a watch whose mistake has been reported.

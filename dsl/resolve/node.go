@@ -16,7 +16,8 @@ func (r *resolver) nodeProperties(e *lineEntry, node *scenario.NodeOf[formula.Pr
 	path := "line." + e.name + "." + name.Text
 	r.path(path, name.Span)
 	said := map[string]diag.Span{}
-	n := nodeReader{r: r, node: node, path: path, support: support, said: said, name: name}
+	n := nodeReader{r: r, line: e, node: node, path: path, support: support, said: said, name: name}
+	e.nodes[len(r.tmpl.Model.Lines[e.index].Nodes)] = nodeWords{name, said}
 	for i := range list {
 		p := &list[i]
 		word := p.Word.Text
@@ -35,6 +36,7 @@ func (r *resolver) nodeProperties(e *lineEntry, node *scenario.NodeOf[formula.Pr
 // nodeReader compiles the properties of one node.
 type nodeReader struct {
 	r       *resolver
+	line    *lineEntry
 	node    *scenario.NodeOf[formula.Program]
 	name    syntax.Label
 	path    string
@@ -49,12 +51,12 @@ func (n *nodeReader) property(p *syntax.Property) {
 	case "fixed", "pinned":
 		n.node.Fixed = true
 	case "clamped":
-		n.node.Fixed = true
-		if r.bent {
-			break // the line is refused for its bending, which gives clamped its meaning
-		}
-		r.warnAt(p.Word.Span, "no-effect", "clamped is the same as fixed here", "this line has no bending stiffness, so nothing is held from turning", "fixed")
-	case "free":
+		n.node.Fixed, n.node.Clamped = true, true
+	case "guided":
+		n.node.Clamped = true
+	case "rotary":
+		n.node.Rotary = r.quantity(p.Value, unit.Rotary, notNegative, "rotary", n.path+".rotary")
+	case "free", "turning":
 	case "absorbing":
 		n.node.Absorbing = true
 	case "holds":
@@ -73,9 +75,16 @@ func (n *nodeReader) property(p *syntax.Property) {
 		n.tuned(p)
 	case "axial":
 		r.quantity(p.Value, unit.Spring, positive, "axial", "")
-		r.warnAt(p.Span, "no-effect", "the give of an end along the line has no effect here", "the line is a string without sag", "")
+		if !n.line.sag.IsZero() && !n.line.sideways {
+			r.notYet(p.Span, "sag with an end that gives along the line", "")
+		} else {
+			r.warnAt(p.Span, "no-effect", "the give of an end along the line has no effect here", "without `sag included` the tension stays as it is", "")
+		}
 	case "weighted":
-		r.warnAt(p.Span, "no-effect", "weighted has no effect here", "the line is a string without sag, whose tension is constant anyway", "")
+		n.line.weighted = true
+		if n.line.sag.IsZero() {
+			r.warnAt(p.Span, "no-effect", "weighted has no effect here", "without `sag included` the tension stays as it is anyway", "")
+		}
 	default:
 		n.refused(p)
 	}
@@ -85,14 +94,11 @@ func (n *nodeReader) property(p *syntax.Property) {
 func (n *nodeReader) refused(p *syntax.Property) {
 	r := n.r
 	switch p.Word.Text {
-	case "rotary":
-		r.want(p.Value, plain, unit.Rotary, "rotary")
-		r.notYet(p.Span, "a rotary spring", "")
 	case "inertia":
 		r.want(p.Value, plain, unit.Inertia, "inertia")
 		r.notYet(p.Span, "an inertia against turning", "")
-	case "turning", "guided", "hinge":
-		r.notYet(p.Span, "how a line with bending turns ("+p.Word.Text+")", "")
+	case "hinge":
+		r.notYet(p.Span, "a hinge within a line", "")
 	case "stop":
 		r.want(p.Value, plain, unit.Length, "the gap of a stop")
 		r.want(p.Stiffness, plain, unit.Spring, "the spring of a stop")
@@ -147,7 +153,7 @@ func (n *nodeReader) conflicts() {
 	alone := func(word string) {
 		if at, ok := n.said[word]; ok && len(n.said) > 1 {
 			for other := range n.said {
-				if other != word && other != "axial" && other != "weighted" && other != "holds" {
+				if other != word && other != "axial" && other != "weighted" && other != "holds" && !contains(turnWords, other) {
 					r.errorAt(at, "contradiction", word+" stands alone at a support", "other properties stand beside it", "")
 					return
 				}
@@ -161,6 +167,7 @@ func (n *nodeReader) conflicts() {
 	} else if held != "" && len(loads) > 0 {
 		r.errorAt(n.said[loads[0]], "contradiction", fmt.Sprintf("what is %s does not move, so its %s does nothing", held, loads[0]), "", "")
 	}
+	n.turnConflicts()
 	if n.support && n.node.Holds {
 		r.errorAt(n.said["holds"], "misplaced", "holds stands at a joint; a support holds the line anyway", "", "")
 	}

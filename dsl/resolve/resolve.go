@@ -50,6 +50,19 @@ type Result struct {
 	Paths    Paths
 	Sources  []Source // the scenario first, then used files in the order of their first use
 	Lets     []LetInfo
+	Stocks   []StockInfo // of the text in its order, then built-in ones by name
+}
+
+// StockInfo is what is known of a stock's bending stiffness at the nominal
+// values, SI. The bounds follow from matter: wires that slide on one another,
+// and a solid bar of the same metal area; 0 where not known.
+type StockInfo struct {
+	Name        string
+	Builtin     bool
+	Bending     float64 // N m^2, as taken; 0: an ideal string
+	BendingLow  float64 // N m^2
+	BendingHigh float64 // N m^2
+	Span        diag.Span
 }
 
 // Paths maps a path of the template, such as line.stay.lower.length, to the
@@ -79,7 +92,7 @@ func Resolve(fsys fs.FS, name string, opts Options) Result {
 	}
 	r := &resolver{
 		fsys: fsys, opts: opts, tmpl: &scenario.Template{}, paths: Paths{},
-		top: map[string]symbol{}, lets: map[string]*letEntry{}, stocks: map[string]*stockEntry{}, lines: map[string]*lineEntry{},
+		top: map[string]symbol{}, lets: map[string]*letEntry{}, stocks: map[string]*stockEntry{}, builtin: map[string]*stockEntry{}, lines: map[string]*lineEntry{},
 		elements: map[string][]element{}, watches: map[string]int{}, units: map[string]unitRead{}, tables: map[string]*csvFile{}, typed: map[*diag.File]*diag.File{}, broken: map[string]bool{}, parts: map[string]string{},
 	}
 	r.load(name)
@@ -104,7 +117,7 @@ func (r *resolver) finish() Result {
 	}
 	r.diags.Sort()
 	r.diags = r.diags.OnePerLine()
-	return Result{Template: r.tmpl, Diags: r.diags, Paths: r.paths, Sources: r.sources, Lets: r.letInfo()}
+	return Result{Template: r.tmpl, Diags: r.diags, Paths: r.paths, Sources: r.sources, Lets: r.letInfo(), Stocks: r.stockInfo()}
 }
 
 // resolver holds the state of one call of Resolve.
@@ -127,6 +140,7 @@ type resolver struct {
 	values   []float64   // nominal, in the template's order
 
 	stocks     map[string]*stockEntry
+	builtin    map[string]*stockEntry // built-in ones that were used
 	stockOrder []*stockEntry
 	lines      map[string]*lineEntry
 	lineOrder  []*lineEntry
@@ -138,9 +152,9 @@ type resolver struct {
 	typed  map[*diag.File]*diag.File // files made of values from outside, and what was typed
 	depth  int                       // of the expression being compiled
 	wanted *unit.Dim                 // of the number that is being read, nil where nothing is known
-	bent   bool                      // some stock has a bending stiffness
 	// partsUnsure: a line could not be read whole, so that a part may exist unseen.
 	partsUnsure bool
+	weighed     int  // instructions in the tensions of inclined lines
 	searched    int  // words looked through for hints
 	incomplete  bool // some statement could not be read: absences prove nothing
 }

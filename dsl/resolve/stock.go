@@ -1,6 +1,7 @@
 package resolve
 
 import (
+	"fmt"
 	"math"
 
 	"github.com/tautspan/tautspan/dsl/diag"
@@ -19,10 +20,22 @@ type stockEntry struct {
 	axialAt  diag.Span
 	strength formula.Program
 	strongAt diag.Span
-	viscous  formula.Program
-	lossAt   diag.Span
+	bending  formula.Program // EI; the number 0 where nothing is said
+	bendAt   diag.Span
+	loss     lossSum
 	area     *formula.Program
 	young    *formula.Program
+	// What EI can be from matter: wires that slide on one another, and one solid
+	// bar of the same metal area; nil where not known.
+	bendLow, bendHigh *formula.Program
+}
+
+// lossSum is what the losses of one stock or segment come to.
+type lossSum struct {
+	viscous  formula.Program // N s/m^2
+	internal formula.Program // s, Kelvin-Voigt
+	at       diag.Span       // of the first, zero where there is none
+	inside   diag.Span       // of the internal one
 }
 
 // properties are the values of a stock by their word.
@@ -77,7 +90,8 @@ func (r *resolver) resolveStock(e *stockEntry) {
 	if p, ok := said["strength"]; ok {
 		e.strongAt = p.Value.Place()
 	}
-	e.viscous, e.lossAt = r.losses(losses, e.mass, e.bad)
+	e.loss = r.losses(losses, e.mass, e.bad)
+	r.internalWantsBending(e.loss, e.bending, e.bad)
 	r.unlikelyStock(e, said, got)
 }
 
@@ -164,7 +178,7 @@ func (r *resolver) stockMass(e *stockEntry, said properties, got map[string]form
 	}
 }
 
-// stockStiffness takes EA and refuses EI.
+// stockStiffness takes EA and EI as said, or from matter.
 func (r *resolver) stockStiffness(e *stockEntry, said properties, got map[string]formula.Program) {
 	young, hasYoung := got["young"]
 	if hasYoung {
@@ -178,33 +192,80 @@ func (r *resolver) stockStiffness(e *stockEntry, said properties, got map[string
 		r.errorAt(said["young"].Word.Span, "missing-property", "a modulus wants the area, the diameter or the wires of the stock", "", "")
 		e.bad = true
 	}
-	const hint = "write `bending 0 N*m^2` to treat it knowingly as an ideal string"
-	if b, ok := got["bending"]; ok {
-		if r.num(b) > 0 {
-			r.bent = true
-			r.notYet(said["bending"].Span, "a line with bending stiffness", hint)
-			e.bad = true
-		}
-		return
-	}
-	if said["bending"] != nil || !hasYoung {
-		return
-	}
-	for _, word := range []string{"diameter", "wires"} {
-		if p := said[word]; p != nil {
-			r.bent = true
-			r.notYet(p.Span, "the bending stiffness that follows from young and "+word, hint)
-			e.bad = true
-			return
+	if hasYoung && e.area != nil {
+		// E A^2/(4 pi) is E pi d^4/64 of a round bar of the area A, and N times the
+		// sum over N wires E pi D^4/64.
+		solid := formula.Mul(formula.Const(1/(4*math.Pi)), formula.Mul(young, formula.Mul(*e.area, *e.area)))
+		e.bendHigh = &solid
+		if n, ok := got["wires"]; ok && said["area"] == nil {
+			loose := formula.Div(solid, n)
+			e.bendLow = &loose
 		}
 	}
+	r.stockBending(e, said, got)
 }
 
-// losses adds up the viscous coefficient of several losses of one stock or
-// segment. The mass is that per length.
-func (r *resolver) losses(list []*syntax.Loss, mass formula.Program, massBad bool) (formula.Program, diag.Span) {
-	var sum formula.Program
-	var span diag.Span
+// roundSlack is the share by which the area of a solid round bar may differ
+// from that of its circle. Chosen: both are rounded in lists; a strand of seven
+// wires, the fullest, misses its circle by 22 %.
+const roundSlack = 0.02
+
+// stockBending takes EI as said or, of a solid round bar, from matter. That of
+// wires lies between two bounds far apart, and is not guessed.
+func (r *resolver) stockBending(e *stockEntry, said properties, got map[string]formula.Program) {
+	if b, ok := got["bending"]; ok {
+		e.bending, e.bendAt = b, said["bending"].Value.Place()
+		return
+	}
+	if said["bending"] != nil || e.bendHigh == nil || e.bad {
+		return
+	}
+	if p := said["wires"]; p != nil {
+		hint := fmt.Sprintf("write `bending B` with B up to %s (a solid bar)", r.shownBending(*e.bendHigh))
+		if e.bendLow != nil {
+			hint = fmt.Sprintf("write `bending B` with B from %s (wires that slide) to %s (a solid bar)", r.shownBending(*e.bendLow), r.shownBending(*e.bendHigh))
+		}
+		r.errorAt(p.Span, "bending-unsaid", "the bending stiffness of wires is not known from their size", "it lies between two bounds", hint+", or `bending 0 N*m^2` for an ideal string")
+		e.bad = true
+		return
+	}
+	d, ok := got["diameter"]
+	if !ok {
+		return
+	}
+	if circle := math.Pi / 4 * math.Pow(r.num(d), 2); math.Abs(r.num(*e.area)-circle) > roundSlack*circle {
+		r.errorAt(said["diameter"].Span, "bending-unsaid", "the bending stiffness of what is no solid round bar is not known from its size", "the area is not that of this diameter",
+			fmt.Sprintf("write `bending B` with B up to %s (a solid bar), or `bending 0 N*m^2` for an ideal string", r.shownBending(*e.bendHigh)))
+		e.bad = true
+		return
+	}
+	e.bending, e.bendAt = *e.bendHigh, said["young"].Value.Place()
+}
+
+// shownBending is a bending stiffness for people.
+func (r *resolver) shownBending(p formula.Program) string {
+	return unit.Format(r.num(p), unit.Bending.Dim, unit.SI, 3)
+}
+
+// mayBend tells whether a bending stiffness is there, or could be for other
+// values of the lets.
+func mayBend(p formula.Program) bool {
+	x, constant := p.IsConst()
+	return !constant || x > 0
+}
+
+// internalWantsBending refuses an internal loss that has nothing to act on.
+func (r *resolver) internalWantsBending(l lossSum, bending formula.Program, bad bool) {
+	if bad || l.inside.IsZero() || mayBend(bending) {
+		return
+	}
+	r.errorAt(l.inside, "missing-property", "an internal loss acts on bending, and there is none here", "the stock is an ideal string", "bending 10 kN*m^2")
+}
+
+// losses adds up several losses of one stock or segment. The mass is that per
+// length.
+func (r *resolver) losses(list []*syntax.Loss, mass formula.Program, massBad bool) lossSum {
+	var sum lossSum
 	said := map[string]diag.Span{}
 	for _, l := range list {
 		kind := l.Kind.Text
@@ -213,20 +274,27 @@ func (r *resolver) losses(list []*syntax.Loss, mass formula.Program, massBad boo
 			continue
 		}
 		said[kind] = l.Span
-		p, ok := r.loss(l, mass, massBad)
-		if !ok {
-			continue
-		}
-		if span.IsZero() {
-			sum, span = p, l.Span
+		if kind == "internal" {
+			v := r.inRange(r.want(l.Value, plain, unit.Time, "loss internal"), l.Value, notNegative, "loss internal")
+			if v.bad {
+				continue
+			}
+			sum.internal, sum.inside = v.prog, l.Span
 		} else {
-			sum = formula.Add(sum, p)
+			p, ok := r.loss(l, mass, massBad)
+			if !ok {
+				continue
+			}
+			sum.viscous = formula.Add(sum.viscous, p)
+		}
+		if sum.at.IsZero() {
+			sum.at = l.Span
 		}
 	}
-	return sum, span
+	return sum
 }
 
-// loss is the viscous coefficient of one loss, N s/m^2.
+// loss is the viscous coefficient of one loss that has one, N s/m^2.
 func (r *resolver) loss(l *syntax.Loss, mass formula.Program, massBad bool) (formula.Program, bool) {
 	none := formula.Program{}
 	switch l.Kind.Text {
@@ -253,9 +321,6 @@ func (r *resolver) loss(l *syntax.Loss, mass formula.Program, massBad bool) (for
 		}
 		// zeta = d/(2 m omega) of a line with viscous loss d per length, so d = 2 m zeta 2 pi F.
 		return formula.Mul(formula.Mul(formula.Const(4*math.Pi), mass), formula.Mul(z.prog, f.prog)), true
-	case "internal":
-		r.inRange(r.want(l.Value, plain, unit.Time, "loss internal"), l.Value, notNegative, "loss internal")
-		r.notYet(l.Span, "an internal loss", "")
 	case "hysteretic":
 		r.inRange(r.want(l.Value, plain, unit.Share, "loss hysteretic"), l.Value, notNegative, "loss hysteretic")
 		r.notYet(l.Span, "a hysteretic loss", "")
@@ -265,4 +330,29 @@ func (r *resolver) loss(l *syntax.Loss, mass formula.Program, massBad bool) (for
 		r.notYet(l.Span, "this loss", "")
 	}
 	return none, false
+}
+
+// stockInfo lists what is known of the stocks that could be read.
+func (r *resolver) stockInfo() []StockInfo {
+	var out []StockInfo
+	add := func(e *stockEntry, builtin bool) {
+		if e.bad {
+			return
+		}
+		info := StockInfo{Name: e.stmt.Name.Text, Builtin: builtin, Bending: r.num(e.bending), Span: r.asTyped(e.stmt.Name.Span)}
+		if e.bendLow != nil {
+			info.BendingLow = r.num(*e.bendLow)
+		}
+		if e.bendHigh != nil {
+			info.BendingHigh = r.num(*e.bendHigh)
+		}
+		out = append(out, info)
+	}
+	for _, e := range r.stockOrder {
+		add(e, false)
+	}
+	for _, name := range known(r.builtin) {
+		add(r.builtin[name], true)
+	}
+	return out
 }

@@ -38,6 +38,10 @@ type figures struct {
 	spot [kindCount]int     // and their spot
 }
 
+// peakNoise is the share by which a later row must be larger to be the peak, so
+// that rounding on a plateau (a line held aside) does not choose the time.
+const peakNoise = 1e-6
+
 // newFigures reads a channel's records, one a spot. All rows count alike.
 func newFigures(spots [][]float64) figures {
 	var f figures
@@ -47,7 +51,7 @@ func newFigures(spots [][]float64) figures {
 		squares := 0.0
 		for i, v := range record {
 			squares += v * v
-			if a := math.Abs(v); a > f.of[Peak] {
+			if a := math.Abs(v); a > f.of[Peak]*(1+peakNoise) || a > 0 && f.of[Peak] == 0 {
 				f.of[Peak], f.at[Peak], f.spot[Peak] = a, i, k
 			}
 			if v > f.of[Highest] {

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"sort"
+	"strings"
 
 	"github.com/tautspan/tautspan/engine/mesh"
 )
@@ -161,6 +162,9 @@ func newMode(s complex128) Mode {
 
 // check refuses numbers outside the method's validity.
 func check(m *mesh.Mesh, want Want) error {
+	if beyond := m.Unknown(0); len(beyond) > 0 {
+		return fmt.Errorf("natural vibrations: this version %s", strings.Join(beyond, "; "))
+	}
 	if want.Count < 0 || want.Count > mostModes {
 		return fmt.Errorf("modal: %d modes asked for; the limit is %d", want.Count, mostModes)
 	}

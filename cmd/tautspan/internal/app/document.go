@@ -246,6 +246,7 @@ type RequirementRow struct {
 	Limit   *float64     `json:"limit"`
 	Upper   *float64     `json:"upper"`
 	Unit    string       `json:"unit"`
+	Shown   string       `json:"shown_unit"` // as the limit is written; "": none
 	Verdict string       `json:"verdict"`
 	Margin  *float64     `json:"margin"`
 	Settle  string       `json:"settle"`

@@ -122,7 +122,7 @@ func (r *runner) picture(c int, ch *compare.Channel) {
 
 func requirementRow(q *requirement) RequirementRow {
 	row := RequirementRow{
-		Text: q.Of.Source, Clause: q.Of.Clause, Remark: q.Of.Text, Value: q.Value, Limit: finite(q.Limit.Value), Unit: q.Of.Unit,
+		Text: q.Of.Source, Clause: q.Of.Clause, Remark: q.Of.Text, Value: q.Value, Limit: finite(q.Limit.Value), Unit: q.Of.Unit, Shown: q.Of.Shown,
 		Verdict: string(q.Verdict), Margin: finite(q.Judgement.Margin), Settle: q.Settles,
 	}
 	if q.Of.Relation == scenario.Within || q.Of.Relation == scenario.Outside {

@@ -42,6 +42,7 @@ type grammar struct {
 	Modes     modesCmd     `cmd:"" help:"Natural vibrations: frequency, damping, decay, shape; exact and counted."`
 	Arrivals  arrivalsCmd  `cmd:"" help:"The pulse ledger: which front reaches which watch, when, by which path, how strong."`
 	Run       runCmd       `cmd:"" help:"Solve with every solver that can, hold them against one another, judge the requirements."`
+	Stock     stockCmd     `cmd:"" help:"The built-in stock with its sources."`
 	Why       whyCmd       `cmd:"" help:"Explain a diagnostic by its code; 'why scope' says what this program does not answer."`
 	Scenarios scenariosCmd `cmd:"" help:"List the shipped scenarios, or write one out to start from."`
 }

@@ -55,12 +55,18 @@ func (r reader) withBar(v, bar float64, si string) string {
 	if word != "" {
 		word = " " + word
 	}
-	v, bar = v*factor, math.Abs(bar*factor)
+	return barText(v*factor, bar*factor) + word
+}
+
+// barText writes a value and its bar, the value to the digit that the bar's
+// second figure has.
+func barText(v, bar float64) string {
+	bar = math.Abs(bar)
 	if bar == 0 || math.IsNaN(bar) || math.IsInf(bar, 0) {
-		return trimNumber(v, 6) + word
+		return trimNumber(v, 6)
 	}
 	places := barPlaces(v, bar)
-	return strconv.FormatFloat(v, 'f', places, 64) + " ± " + strconv.FormatFloat(roundUp(bar, places), 'f', places, 64) + word
+	return strconv.FormatFloat(v, 'f', places, 64) + " ± " + strconv.FormatFloat(roundUp(bar, places), 'f', places, 64)
 }
 
 // barPlaces is the number of decimals at which the bar has one or two figures.

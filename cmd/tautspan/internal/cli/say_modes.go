@@ -6,6 +6,7 @@ import (
 	"strings"
 
 	"github.com/tautspan/tautspan/cmd/tautspan/internal/app"
+	"github.com/tautspan/tautspan/dsl/unit"
 	"github.com/tautspan/tautspan/engine/doubt"
 )
 
@@ -55,6 +56,17 @@ func (p *printer) doubtful(n *doubt.Number) string {
 		return p.show(n.Value, n.Unit, 6)
 	}
 	return p.withBar(n.Value, half, n.Unit)
+}
+
+// inUnit is a number with its half-width in the unit that the user wrote, or as
+// doubtful has it where that is none of its kind.
+func (p *printer) inUnit(n *doubt.Number, shown string) string {
+	u, err := unit.Parse(shown)
+	half := n.Numerical + doubt.TwoSided*n.InputU
+	if shown == "" || err != nil || u.Dim != dimOf(n.Unit) || n.Unit == "rad" || math.IsNaN(half) {
+		return p.doubtful(n)
+	}
+	return barText(n.Value/u.Factor(), half/u.Factor()) + " " + shown
 }
 
 func (p *printer) ratio(m *app.ModeRow) string {

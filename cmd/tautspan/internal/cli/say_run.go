@@ -60,12 +60,11 @@ func (p *printer) sayRequirements(list []app.RequirementRow) {
 	var more []string
 	for i := range list {
 		r := &list[i]
-		limit := ""
 		remark := r.Remark
 		if r.Clause != "" {
 			remark = strings.TrimSpace(remark + " [" + r.Clause + "]")
 		}
-		t.add(r.Verdict, r.Text, p.doubtful(&r.Value)+limit, remark)
+		t.add(r.Verdict, r.Text, p.inUnit(&r.Value, r.Shown), remark)
 		if r.Verdict != "met" && r.Settle != "" {
 			more = append(more, r.Text+": "+r.Settle)
 		}
