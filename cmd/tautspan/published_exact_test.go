@@ -328,7 +328,7 @@ func TestPublishedArrivals(t *testing.T) {
 		name := fmt.Sprintf("t%d", i+1)
 		c.exact(t, name, rows[i].Time)
 		c.exact(t, name, measured.exactly(t, i))
-		if rows[i].Sign != sign || math.Abs(rows[i].Amplitude/rows[0].Amplitude-1) > 1e-12 {
+		if rows[i].Sign != sign || math.Abs(math.Abs(rows[i].Amplitude/rows[0].Amplitude)-1) > 1e-12 {
 			t.Errorf("front %d: %+v, sign %d expected", i+1, rows[i], sign)
 		}
 	}
