@@ -62,10 +62,10 @@ func recordsOf(t *testing.T, text string) (runDoc, records) {
 	return doc, r
 }
 
-// holds checks every solver's displacement of a watch at a time against an
-// expected value. The band is a bound of the best solver's error and covers the
-// spread of the others about it, so that any solver lies within twice the band
-// of the truth; the class of the published value comes on top.
+// holds checks the displacement of a watch at a time against an expected value.
+// The band is the error band of the record that the run reports, which is that
+// of its two sharpest solvers: these two must lie within it of the published
+// value, whose class comes on top. A blunter third has a bar of its own.
 func (c published) holds(t *testing.T, r records, watch string, at float64, name string, scale float64) {
 	t.Helper()
 	row := -1
@@ -81,18 +81,20 @@ func (c published) holds(t *testing.T, r records, watch string, at float64, name
 	if band[row] > 0.02*scale {
 		t.Errorf("%s %s: a band of %.2g of the case's scale says nothing", c.ID, name, band[row]/scale)
 	}
-	want, solvers := c.want(name), 0
+	want, within := c.want(name), 0
+	var found []string
 	for column, values := range r.columns {
 		if !strings.HasPrefix(column, watch+".displacement.") || strings.Contains(column, ".band ") {
 			continue
 		}
-		solvers++
-		if off := math.Abs(values[row] - want); !(off <= 2*band[row]+c.slack(t, name, scale)) {
-			t.Errorf("%s %s by %s: %.12g, published %.12g, off by %.2g with a band of %.2g", c.ID, name, column, values[row], want, off, band[row])
+		off := math.Abs(values[row] - want)
+		if off <= band[row]+c.slack(t, name, scale) {
+			within++
 		}
+		found = append(found, fmt.Sprintf("%s: %.12g, off by %.2g", column, values[row], off))
 	}
-	if solvers != 3 {
-		t.Errorf("%s: %d solvers gave a record of %s", c.ID, solvers, watch)
+	if len(found) != 3 || within < 2 {
+		t.Errorf("%s %s: published %.12g, band %.2g; %s", c.ID, name, want, band[row], strings.Join(found, "; "))
 	}
 }
 
@@ -101,8 +103,10 @@ func (c published) points(t *testing.T, prefix string) map[string][2]float64 {
 	t.Helper()
 	out := map[string][2]float64{}
 	for name := range c.Expected {
-		var x, at float64
-		if n, _ := fmt.Sscanf(name, prefix+"_x%g_t%g", &x, &at); n == 2 {
+		place, after, found := strings.Cut(strings.TrimPrefix(name, prefix+"_x"), "_t")
+		x, err1 := strconv.ParseFloat(place, 64)
+		at, err2 := strconv.ParseFloat(after, 64)
+		if found && err1 == nil && err2 == nil {
 			out[name] = [2]float64{x, at}
 		}
 	}
@@ -177,19 +181,29 @@ func TestPublishedCrossing(t *testing.T) {
 		"excite p roll along l at "+q(c.in("v"), "m/s")+" load "+q(c.in("P"), "N")+" from a", runFor(1.2, 0.01, 0.005)), c.points(t, "y"), math.Abs(c.want("y_x30_t0.6")))
 }
 
-// The energy of a pluck is F h/2, in every solver's account. A mesh's own energy
-// of a kinked shape is off by a share of the order of a cell to the span, which
-// at the levels of a run is below a thousandth; the check leaves twice that.
+// The energy of a pluck is F h/2, in every solver's account. A mesh that has no
+// point at the kink cuts its top off: with N cells in the span that is a share of
+// up to L^2/(4 a (L-a) N) of the energy, 1.25e-2 for the 290 cells or more that a
+// pluck is given here.
 func TestPublishedPluckEnergy(t *testing.T) {
 	c := caseOf(t, "C16-01")
 	doc, _ := recordsOf(t, taut(stockOf("w", 18.4, 0), plain(c.in("T"), c.in("L"), "fixed", "fixed"),
 		"excite p pluck at s "+q(c.in("a"), "m")+" by "+q(c.in("h"), "m"), "watch m at s 50 % displacement", runFor(3, 0.01, 0.01)))
+	sharp := 0
 	for _, e := range doc.Energy {
-		if e.Start == nil || math.Abs(*e.Start-c.want("E")) > 2e-3*c.want("E") {
-			t.Errorf("%s starts with %v J, published %g J", e.Solver, e.Start, c.want("E"))
+		if e.Start == nil {
+			t.Errorf("%s has no energy account", e.Solver)
+			continue
+		}
+		off := math.Abs(*e.Start/c.want("E") - 1)
+		if off > 1.25e-2 {
+			t.Errorf("%s starts with %g J, published %g J", e.Solver, *e.Start, c.want("E"))
+		}
+		if off < 1e-9 {
+			sharp++
 		}
 	}
-	if len(doc.Energy) != 3 {
-		t.Errorf("%d energy accounts", len(doc.Energy))
+	if len(doc.Energy) != 3 || sharp == 0 {
+		t.Errorf("%d energy accounts, of which %d have a point at the kink and meet the class", len(doc.Energy), sharp)
 	}
 }
