@@ -8,8 +8,8 @@ import (
 	"github.com/tautspan/tautspan/engine/mesh"
 )
 
-// span is a taut string of one piece, both ends held.
-func span(length, tension, mass float64) *mesh.Mesh {
+// oneString is a taut string of one piece, both ends held.
+func oneString(length, tension, mass float64) *mesh.Mesh {
 	return &mesh.Mesh{
 		Nodes:  []mesh.Node{{Name: "a", Fixed: true, Support: true}, {Name: "b", Fixed: true, Support: true, X: length}},
 		Pieces: []mesh.Piece{{From: 0, To: 1, Length: length, Tension: tension, MassPerLength: mass}},
@@ -43,7 +43,7 @@ func meets(t *testing.T, what string, got complex128, want float64) {
 func TestReceptance(t *testing.T) {
 	at := []Load{{Spot: mesh.Spot{Node: -1, At: 3}, Force: 1}}
 	for f, want := range map[float64]float64{1: 0.000260298893331, 3.5: 0.00135669219644, 6: -0.000392602957902, 12.3: 8.58173370088e-05} {
-		u := solved(t, span(10, 5000, 0.8), f, at, nil).Displacement(mesh.Spot{Node: -1, At: 6})
+		u := solved(t, oneString(10, 5000, 0.8), f, at, nil).Displacement(mesh.Spot{Node: -1, At: 6})
 		meets(t, "receptance", u, want)
 	}
 }
@@ -53,12 +53,12 @@ func TestReceptance(t *testing.T) {
 // (C14-04). Sources as above.
 func TestDrivenEnd(t *testing.T) {
 	for f, want := range map[float64]float64{1: -62.07143677, 3: 66.9046074763, 7: 72.137001645} {
-		field := solved(t, span(10, 5000, 0.8), f, nil, map[int]complex128{0: 1})
+		field := solved(t, oneString(10, 5000, 0.8), f, nil, map[int]complex128{0: 1})
 		// Force that moves the end: minus what the line exerts on it.
 		z := -field.Force(mesh.Spot{Node: 0}) / complex(0, 2*math.Pi*f)
 		meets(t, "impedance", z/complex(0, 1), want)
 	}
-	field := solved(t, span(12, 3000, 0.75), 4, nil, map[int]complex128{0: 1})
+	field := solved(t, oneString(12, 3000, 0.75), 4, nil, map[int]complex128{0: 1})
 	for x, want := range map[float64]float64{3: 0.421949131704, 6: -0.688042482211, 10: -0.714829575782} {
 		meets(t, "ratio", field.Displacement(mesh.Spot{Node: -1, At: x}), want)
 	}
@@ -67,7 +67,7 @@ func TestDrivenEnd(t *testing.T) {
 // Static limit and the slope's jump at the force: T u' is F (L-a)/L before and
 // -F a/L after (statics).
 func TestDynamicAtRest(t *testing.T) {
-	m := span(20, 10000, 1)
+	m := oneString(20, 10000, 1)
 	field := solved(t, m, 0, []Load{{Spot: mesh.Spot{Node: -1, At: 7}, Force: 100}}, nil)
 	meets(t, "deflection", field.Displacement(mesh.Spot{Node: -1, At: 7}), 100.0*7*13/(10000*20))
 	meets(t, "force after", field.Force(mesh.Spot{Node: -1, At: 7}), -35)
@@ -87,7 +87,7 @@ func TestPieceInResonance(t *testing.T) {
 		},
 		Lines: []mesh.Line{{Pieces: []int{0, 1}, Length: 27}},
 	}
-	m := span(27, 10000, 1)
+	m := oneString(27, 10000, 1)
 	whole := solved(t, m, 5, []Load{{Spot: mesh.Spot{Node: -1, At: 4}, Force: 1}}, nil).Displacement(mesh.Spot{Node: -1, At: 22})
 	parts := solved(t, cut, 5, []Load{{Spot: mesh.Spot{Node: -1, At: 4}, Force: 1}}, nil).Displacement(mesh.Spot{Node: -1, Piece: 1, At: 12})
 	if cmplx.Abs(whole-parts) > 1e-7*cmplx.Abs(whole) { // 1e-9 beside the pole, times the slope of the response there
