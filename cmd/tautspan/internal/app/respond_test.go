@@ -44,8 +44,8 @@ func TestRespondAtOneFrequency(t *testing.T) {
 	if a := doc.Responses[0].Amplitude[0]; a == nil || math.Abs(*a-0.00135669219644434) > 1e-10*0.00136 {
 		t.Errorf("amplitude %v", a)
 	}
-	if p := doc.Responses[0].Phase[0]; p == nil || *p != 0 {
-		t.Errorf("phase %v, want 0: below resonance without loss", p)
+	if p := doc.Responses[0].Phase[0]; p == nil || math.Abs(*p) > 1e-10 { // rounding; 1e-16 seen
+		t.Errorf("phase %v, want 0: without loss all moves in step", p)
 	}
 	if len(doc.Notes) != 1 || !strings.Contains(doc.Notes[0], "pluck") {
 		t.Errorf("notes %v", doc.Notes)

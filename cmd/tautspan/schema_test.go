@@ -1,0 +1,107 @@
+package main
+
+import (
+	"bytes"
+	"encoding/json"
+	"io"
+	"os"
+	"path/filepath"
+	"strings"
+	"testing"
+
+	"github.com/santhosh-tekuri/jsonschema/v6"
+
+	"github.com/tautspan/tautspan/cmd/tautspan/internal/cli"
+)
+
+// printed runs a command in this process and holds what it prints against the
+// command's schema: one document, nothing else.
+func printed(t *testing.T, want int, args ...string) map[string]any {
+	t.Helper()
+	var out, errs bytes.Buffer
+	code := cli.Main(args, cli.Streams{In: strings.NewReader(""), Out: &out, Err: &errs})
+	what := strings.Join(args, " ")
+	if code != want {
+		t.Errorf("%s: exit %d, expected %d\n%s", what, code, want, errs.String())
+	}
+	schema, err := jsonschema.NewCompiler().Compile(filepath.Join("testdata", "schema", args[0]+".json"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	dec := json.NewDecoder(bytes.NewReader(out.Bytes()))
+	dec.UseNumber()
+	var doc map[string]any
+	if err := dec.Decode(&doc); err != nil {
+		t.Fatalf("%s prints no document: %v\n%s", what, err, out.String())
+	}
+	if _, err := dec.Token(); err != io.EOF {
+		t.Errorf("%s prints more than one document", what)
+	}
+	plain, err := jsonschema.UnmarshalJSON(bytes.NewReader(out.Bytes()))
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := schema.Validate(plain); err != nil {
+		t.Errorf("%s: %v", what, err)
+	}
+	list, _ := doc["errors"].([]any)
+	if (code == 2) != (len(list) > 0) && code != 3 {
+		t.Errorf("%s: exit %d with %d errors", what, code, len(list))
+	}
+	return doc
+}
+
+// Every document that a command prints, in good and in bad cases, is one that
+// its schema describes.
+func TestDocumentsFollowTheirSchemas(t *testing.T) {
+	shipped := func(name string) string { return filepath.Join("..", "..", "scenarios", name+".taut") }
+	dir := t.TempDir()
+	bad := filepath.Join(dir, "bad.taut")
+	if err := os.WriteFile(bad, []byte("tautspan 1\nlet a = 3 m + 2 s\nstok w {\n    mass 1 kg/m\n}\n"), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	short := filepath.Join(dir, "short.taut")
+	text := "tautspan 1\nlet pull = 12 kN +- 2 %\nstock w {\n    mass 1.2 kg/m\n    axial 12 MN\n}\nline l {\n    tension pull\n    support a fixed\n    segment s w 20 m\n    joint j mass 2 kg, dashpot 40 N*s/m\n    segment u w 30 m\n    support b spring 40 kN/m\n}\n" +
+		"excite tap push at s 6 m with half_sine(300 N, 20 ms)\nwatch mid at u 12 m displacement, velocity\nwatch all along l displacement\nrun {\n    for 1 s\n    every 5 ms\n}\nrequire peak(mid.displacement) within 1 mm .. 60 mm\nrequire frequency(1) > 9 Hz\ncollect damping(1..2), rms(mid.velocity)\n"
+	if err := os.WriteFile(short, []byte(text), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	for _, name := range []string{"first-hanger", "stay-release", "guy-pulse", "crosstie", "wire-splice"} {
+		printed(t, 0, "check", "--json", shipped(name))
+		printed(t, 0, "modes", "--json", "--count", "3", "--shapes", shipped(name))
+		printed(t, 0, "arrivals", "--json", shipped(name))
+	}
+	printed(t, 0, "run", "--json", "--out", "none", shipped("first-hanger"))
+	doc := printed(t, 1, "run", "--json", "--out", "none", short)
+	if v := doc["verdict"]; v != "not met" {
+		t.Errorf("verdict %v, expected not met: 9 Hz is far above the first vibration", v)
+	}
+	printed(t, 0, "tidy", "--json", short)
+	printed(t, 0, "why", "--json", "scope")
+	printed(t, 0, "scenarios", "--json")
+	for _, command := range []string{"check", "modes", "arrivals", "run"} {
+		printed(t, 2, command, "--json", bad)
+		printed(t, 2, command, "--json", filepath.Join(dir, "missing.taut"))
+	}
+	printed(t, 2, "tidy", "--json", bad)
+	printed(t, 2, "why", "--json", "no-such-code")
+	printed(t, 2, "scenarios", "--json", "no-such-scenario")
+	printed(t, 2, "run", "--json", "--solver", "nobody", "--out", "none", short)
+}
+
+// The schemas themselves must be able to refuse.
+func TestSchemasRefuse(t *testing.T) {
+	schema, err := jsonschema.NewCompiler().Compile(filepath.Join("testdata", "schema", "run.json"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, text := range []string{`{}`, `{"format":1}`, `{"format":2,"command":"run"}`} {
+		doc, err := jsonschema.UnmarshalJSON(strings.NewReader(text))
+		if err != nil {
+			t.Fatal(err)
+		}
+		if schema.Validate(doc) == nil {
+			t.Errorf("%s was taken for the document of a run", text)
+		}
+	}
+}
