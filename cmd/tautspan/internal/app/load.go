@@ -39,6 +39,16 @@ type loaded struct {
 	mesh     *mesh.Mesh
 }
 
+// Several is the one document of a command that took several files.
+func Several(command string, documents []any) any {
+	return struct {
+		Format    int    `json:"format"`
+		Version   string `json:"tautspan"`
+		Command   string `json:"command"`
+		Documents []any  `json:"documents"`
+	}{Format, Version, command, documents}
+}
+
 // UsageHead is the document of a command line that cannot be read.
 func UsageHead(command, message string) any {
 	return Head{

@@ -23,12 +23,17 @@ type checkCmd struct {
 // Run checks each file; the gravest outcome is the command's.
 func (c *checkCmd) Run(s *session) error {
 	worst := exitDone
+	var documents []any
 	for i, file := range c.Files {
 		doc, status, err := s.app.Check(s.input(file))
 		if err != nil {
 			return err
 		}
 		worst = max(worst, int(status))
+		if s.JSON && len(c.Files) > 1 {
+			documents = append(documents, doc)
+			continue
+		}
 		if i > 0 && !s.JSON {
 			fmt.Fprintln(s.Out)
 		}
@@ -39,6 +44,17 @@ func (c *checkCmd) Run(s *session) error {
 			}
 		}
 		if err := s.deliver(&doc.Head, doc, int(status), say); err != nil && len(c.Files) == 1 {
+			return err
+		}
+	}
+	return s.finish("check", documents, worst)
+}
+
+// finish ends a command that took several files: as JSON their documents stand
+// in one.
+func (s *session) finish(command string, documents []any, worst int) error {
+	if len(documents) > 0 {
+		if err := writeJSON(s.Out, app.Several(command, documents)); err != nil {
 			return err
 		}
 	}
@@ -58,6 +74,7 @@ type tidyCmd struct {
 // Run tidies each file.
 func (c *tidyCmd) Run(s *session) error {
 	worst := exitDone
+	var documents []any
 	for _, file := range c.Files {
 		doc, status, err := s.app.Tidy(s.input(file))
 		if err != nil {
@@ -73,6 +90,10 @@ func (c *tidyCmd) Run(s *session) error {
 			status = app.NotAsAsked
 		}
 		worst = max(worst, int(status))
+		if s.JSON && len(c.Files) > 1 {
+			documents = append(documents, doc)
+			continue
+		}
 		say := func(p *printer) {
 			switch {
 			case c.Diff:
@@ -85,10 +106,7 @@ func (c *tidyCmd) Run(s *session) error {
 			return err
 		}
 	}
-	if worst != exitDone {
-		return exitError(worst)
-	}
-	return nil
+	return s.finish("tidy", documents, worst)
 }
 
 // replaceFile writes beside the file and renames, so that nothing is half written.
