@@ -70,6 +70,7 @@ func TestDocumentsFollowTheirSchemas(t *testing.T) {
 		printed(t, 0, "check", "--json", shipped(name))
 		printed(t, 0, "modes", "--json", "--count", "3", "--shapes", shipped(name))
 		printed(t, 0, "arrivals", "--json", shipped(name))
+		printed(t, 0, "respond", "--json", "--points", "5", shipped(name))
 	}
 	printed(t, 0, "run", "--json", "--out", "none", shipped("first-hanger"))
 	doc := printed(t, 1, "run", "--json", "--out", "none", short)
@@ -79,7 +80,7 @@ func TestDocumentsFollowTheirSchemas(t *testing.T) {
 	printed(t, 0, "tidy", "--json", short)
 	printed(t, 0, "why", "--json", "scope")
 	printed(t, 0, "scenarios", "--json")
-	for _, command := range []string{"check", "modes", "arrivals", "run"} {
+	for _, command := range []string{"check", "modes", "respond", "arrivals", "run"} {
 		printed(t, 2, command, "--json", bad)
 		printed(t, 2, command, "--json", filepath.Join(dir, "missing.taut"))
 	}

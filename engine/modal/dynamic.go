@@ -85,30 +85,28 @@ func (p steady) green(x, y float64) complex128 {
 	if cmplx.Abs(p.a)*p.length < 1e-6 {
 		return complex(lo*(p.length-hi)/(p.tension*p.length), 0)
 	}
-	return p.ratio(lo) * p.sinh(p.length-hi) / (complex(p.tension, 0) * p.a)
-}
-
-// sinh is sinh(a y) scaled by nothing; only used where ratio of the other side
-// keeps the product bounded.
-func (p steady) sinh(y float64) complex128 {
-	w := p.a * complex(y, 0)
-	return (cmplx.Exp(w) - cmplx.Exp(-w)) / 2
+	return p.product(lo, p.length-hi, -1) / p.a
 }
 
 // greenRate is the derivative of green with respect to x; at x = y that after it.
 func (p steady) greenRate(x, y float64) complex128 {
-	if x < y {
-		return p.rate(x) * p.overTa(p.length-y)
+	if cmplx.Abs(p.a)*p.length < 1e-6 {
+		if x < y {
+			return complex((p.length-y)/(p.tension*p.length), 0)
+		}
+		return complex(-y/(p.tension*p.length), 0)
 	}
-	return -p.rate(p.length-x) * p.overTa(y)
+	if x < y {
+		return p.product(x, p.length-y, 1)
+	}
+	return -p.product(p.length-x, y, 1)
 }
 
-// overTa is sinh(a y)/(T a), y/T at a = 0.
-func (p steady) overTa(y float64) complex128 {
-	if cmplx.Abs(p.a)*p.length < 1e-6 {
-		return complex(y/p.tension, 0)
-	}
-	return p.sinh(y) / (complex(p.tension, 0) * p.a)
+// product is sinh(a u) sinh(a v)/(T sinh(aL)) for sign -1 and
+// cosh(a u) sinh(a v)/(T sinh(aL)) for sign 1, u + v <= L, without overflow.
+func (p steady) product(u, v float64, sign complex128) complex128 {
+	w, r, z := p.a*complex(u, 0), p.a*complex(v, 0), p.a*complex(p.length, 0)
+	return cmplx.Exp(w+r-z) * (1 + sign*cmplx.Exp(-2*w)) * (1 - cmplx.Exp(-2*r)) / (complex(2*p.tension, 0) * (1 - cmplx.Exp(-2*z)))
 }
 
 // Solve is the steady motion at s under loads and prescribed node displacements.

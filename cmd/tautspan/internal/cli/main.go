@@ -40,6 +40,7 @@ type grammar struct {
 	Check     checkCmd     `cmd:"" help:"Read and judge scenarios without running: what is wrong, what is known at once, which solver can."`
 	Tidy      tidyCmd      `cmd:"" help:"Print scenarios in their one canonical layout."`
 	Modes     modesCmd     `cmd:"" help:"Natural vibrations: frequency, damping, decay, shape; exact and counted."`
+	Respond   respondCmd   `cmd:"" help:"Steady vibration against frequency; shares of a wave reflected, passed, absorbed at joints and taken at ends."`
 	Arrivals  arrivalsCmd  `cmd:"" help:"The pulse ledger: which front reaches which watch, when, by which path, how strong."`
 	Run       runCmd       `cmd:"" help:"Solve with every solver that can, hold them against one another, judge the requirements."`
 	Stock     stockCmd     `cmd:"" help:"The built-in stock with its sources."`

@@ -2,6 +2,7 @@ package cli
 
 import (
 	"fmt"
+	"strconv"
 	"strings"
 
 	"github.com/tautspan/tautspan/cmd/tautspan/internal/app"
@@ -45,8 +46,8 @@ func bound(text string) (*float64, error) {
 	if text == "" {
 		return nil, nil
 	}
-	if number, _, _ := strings.Cut(text, " "); strings.Trim(number, "0.") == "" && strings.Contains(number, "0") {
-		zero := 0.0
+	number := strings.TrimRight(text, " Hz")
+	if zero, err := strconv.ParseFloat(number, 64); err == nil && zero == 0 {
 		return &zero, nil
 	}
 	hz, err := frequency(text)

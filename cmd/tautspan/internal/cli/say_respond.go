@@ -3,6 +3,7 @@ package cli
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"github.com/tautspan/tautspan/cmd/tautspan/internal/app"
@@ -143,6 +144,10 @@ func (p *printer) sayResponses(d *app.RespondDoc, pictures bool) {
 			if a != nil {
 				values[k] = *a
 			}
+		}
+		if !slices.ContainsFunc(values, func(v float64) bool { return v != 0 }) {
+			p.line("  zero at every frequency")
+			continue
 		}
 		if pictures && len(values) > 1 {
 			p.curve(d.Frequency, values)
