@@ -56,7 +56,7 @@ func (s *Session) exactFigure(p *Point, l *leaf) (figure, error) {
 		return figure{value: statics.MeanTension(&p.Network.Lines[m.Line])}, nil
 	case scenario.WaveSpeed:
 		seg := &p.Network.Lines[m.Line].Segments[m.Segment]
-		return figure{value: math.Sqrt(seg.Tension / seg.MassPerLength)}, nil
+		return figure{value: statics.WaveSpeed(seg)}, nil
 	case scenario.StoredEnergy:
 		return figure{value: statics.StoredEnergy(&p.Network.Lines[m.Line])}, nil
 	case scenario.Arrival:

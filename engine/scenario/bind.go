@@ -335,7 +335,8 @@ func defaultDuration(net *Network) float64 {
 	for i := range net.Lines {
 		travel := 0.0
 		for _, s := range net.Lines[i].Segments {
-			travel += s.Length * math.Sqrt(s.MassPerLength/s.Tension)
+			end := math.Max(0, s.Tension+s.TensionRise*s.Length)
+			travel += 2 * s.Length * math.Sqrt(s.MassPerLength) / (math.Sqrt(s.Tension) + math.Sqrt(end))
 		}
 		longest = math.Max(longest, travel)
 	}

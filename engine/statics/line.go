@@ -11,8 +11,7 @@ import (
 func TravelTime(line *scenario.Line) float64 {
 	t := 0.0
 	for _, s := range line.Segments {
-		// 2 L sqrt(m)/(sqrt(T0)+sqrt(T1)) where the tension rises evenly
-		t += 2 * s.Length * math.Sqrt(s.MassPerLength) / (math.Sqrt(s.Tension) + math.Sqrt(EndTension(&s)))
+		t += s.Length / WaveSpeed(&s)
 	}
 	return t
 }
@@ -48,6 +47,12 @@ func MeanTension(line *scenario.Line) float64 {
 		sum += (s.Tension + EndTension(&s)) / 2 * s.Length
 	}
 	return sum / Length(line)
+}
+
+// WaveSpeed is the speed of a small kink over a segment, m/s: its length by its
+// travel time, (sqrt(T0) + sqrt(T1))/(2 sqrt(m)).
+func WaveSpeed(s *scenario.Segment) float64 {
+	return (math.Sqrt(s.Tension) + math.Sqrt(EndTension(s))) / (2 * math.Sqrt(s.MassPerLength))
 }
 
 // EndTension is the tension at the end of a segment, N.

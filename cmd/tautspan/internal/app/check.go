@@ -58,20 +58,21 @@ func lineFacts(line *scenario.Line, frequencies []float64) LineFacts {
 	f := LineFacts{
 		Name: line.Name, Length: statics.Length(line), TravelTime: statics.TravelTime(line),
 		StoredEnergy: finite(statics.StoredEnergy(line)), Frequencies: frequencies, Holds: []HoldFacts{},
-		StartTension: line.Segments[0].Tension, EndTension: line.Segments[len(line.Segments)-1].Tension,
-		Lambda2: sagParameter(line), Strength: shareOfStrength(line),
+		StartTension: line.Segments[0].Tension, EndTension: statics.EndTension(&line.Segments[len(line.Segments)-1]),
+		Lambda2: sagParameter(line), Xi: bendingParameter(line), Strength: shareOfStrength(line),
 	}
-	for i, s := range line.Segments {
+	for i := range line.Segments {
+		s := &line.Segments[i]
 		seg := SegmentFacts{
 			Name: s.Name, Length: s.Length, MassPerLength: s.MassPerLength, Tension: s.Tension,
-			WaveSpeed: math.Sqrt(s.Tension / s.MassPerLength), Impedance: math.Sqrt(s.Tension * s.MassPerLength),
+			WaveSpeed: statics.WaveSpeed(s), Impedance: s.MassPerLength * statics.WaveSpeed(s), Bending: s.Bending,
 		}
 		if s.Axial > 0 {
 			seg.Axial = finite(s.Axial)
 		}
 		f.Segments = append(f.Segments, seg)
-		if i > 0 && s.Tension != line.Segments[i-1].Tension {
-			f.Holds = append(f.Holds, HoldFacts{Joint: line.Nodes[i].Name, Force: s.Tension - line.Segments[i-1].Tension})
+		if i > 0 && line.Nodes[i].Holds {
+			f.Holds = append(f.Holds, HoldFacts{Joint: line.Nodes[i].Name, Force: s.Tension - statics.EndTension(&line.Segments[i-1])})
 		}
 	}
 	return f
@@ -91,15 +92,29 @@ func sagParameter(line *scenario.Line) *float64 {
 		give += s.Length / s.Axial
 	}
 	tension := statics.MeanTension(line)
-	slope := mass * gravity * length / tension
+	slope := mass * gravity * length * math.Cos(line.Incline) / tension
 	return finite(slope * slope * length / give * length / (tension * length * (1 + slope*slope/8)))
+}
+
+// bendingParameter is xi = L sqrt(T/EI) by the mean tension and the largest
+// bending stiffness of the line, nil on a string.
+func bendingParameter(line *scenario.Line) *float64 {
+	stiffest := 0.0
+	for _, s := range line.Segments {
+		stiffest = math.Max(stiffest, s.Bending)
+	}
+	if stiffest == 0 {
+		return nil
+	}
+	return finite(statics.Length(line) * math.Sqrt(statics.MeanTension(line)/stiffest))
 }
 
 func shareOfStrength(line *scenario.Line) *float64 {
 	worst := 0.0
-	for _, s := range line.Segments {
+	for i := range line.Segments {
+		s := &line.Segments[i]
 		if s.Strength > 0 {
-			worst = math.Max(worst, s.Tension/s.Strength)
+			worst = math.Max(worst, math.Max(s.Tension, statics.EndTension(s))/s.Strength)
 		}
 	}
 	if worst == 0 {

@@ -86,12 +86,12 @@ type WhyDoc struct {
 func (a *App) Why(code string) (*WhyDoc, Status) {
 	head := Head{Format: Format, Version: Version, Command: "why", Engine: engineOf(), Errors: diag.List{}, Warnings: diag.List{}}
 	if code == "" {
-		return &WhyDoc{Head: head, Text: "Codes that can be explained:\n" + strings.Join(dsl.Codes(), "\n")}, Done
+		return &WhyDoc{Head: head, Text: "Codes that can be explained:\n" + strings.Join(codes(), "\n")}, Done
 	}
-	text, ok := dsl.Explain(code)
+	text, ok := explain(code)
 	if !ok {
 		hint := ""
-		if near := diag.Nearest(code, dsl.Codes()); near != "" {
+		if near := diag.Nearest(code, codes()); near != "" {
 			hint = near
 		}
 		head.Errors = append(head.Errors, diag.Diagnostic{Code: "unknown-code", Span: diag.Span{File: diag.NewFile("command line", code)}, Summary: fmt.Sprintf("no diagnostic has the code %q", code), Hint: hint})

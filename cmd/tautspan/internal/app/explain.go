@@ -1,0 +1,49 @@
+package app
+
+import (
+	"sort"
+
+	"github.com/tautspan/tautspan/dsl"
+)
+
+// explanations are the texts of the diagnostics that commands raise themselves;
+// those of the language stand with the language.
+func explanations() map[string]string {
+	return map[string]string{
+		"doubt-not-carried": `The doubt of the inputs could not be carried to these answers: at one standard uncertainty from its value a let leads to a scenario that cannot be solved.
+
+The answers stand as if their inputs were exact. Make the doubt smaller, or see what the scenario says at the moved value with --set.`,
+		"failed":    `Something outside the scenario failed: a file that cannot be read or written, a limit on memory or work, no solver that can answer. The message says what.`,
+		"no-fronts": `The pulse ledger follows fronts on taut strings only. The message names what it cannot follow.`,
+		"no-line": `There is no line in the scenario, so there is nothing to answer for. A line begins and ends with a support:
+
+line NAME { tension ...; support ...; segment ...; support ... }`,
+		"no-modes":         `The natural vibrations of this scenario cannot be given; the message says why.`,
+		"no-response":      `The steady response at the watches cannot be given; the message says why. Shares at joints and ends, which need no more than what stands there, are given all the same.`,
+		"no-frequencies":   `The range of frequencies is empty or cannot be: give --from and --to in Hz, the second above the first.`,
+		"too-many-points":  `So many frequencies would make a document that nobody can read or hold. Ask for fewer points, or for a narrower range.`,
+		"unknown-code":     `Diagnostics carry a word in square brackets at their end; 'tautspan why WORD' explains it. 'tautspan why' lists them all.`,
+		"unknown-scenario": `No shipped scenario has that name. 'tautspan scenarios' lists them.`,
+		"unknown-solver":   `The solvers are differences (finite differences), spectral (Gauss-Lobatto-Legendre elements) and characteristic (travelling waves followed along their characteristics).`,
+		"usage":            `The command line cannot be read: an unknown command or flag, or a value that a flag cannot take. 'tautspan COMMAND --help' says what it takes.`,
+	}
+}
+
+// explain is the text for a code, of the language or of a command.
+func explain(code string) (string, bool) {
+	if text, ok := dsl.Explain(code); ok {
+		return text, true
+	}
+	text, ok := explanations()[code]
+	return text, ok
+}
+
+// codes lists every code that can be explained.
+func codes() []string {
+	list := append([]string(nil), dsl.Codes()...)
+	for code := range explanations() {
+		list = append(list, code)
+	}
+	sort.Strings(list)
+	return list
+}
