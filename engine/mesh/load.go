@@ -1,6 +1,7 @@
 package mesh
 
 import (
+	"fmt"
 	"math"
 
 	"github.com/tautspan/tautspan/engine/formula"
@@ -9,6 +10,9 @@ import (
 
 // loads carries over everything that acts after t = 0.
 func (b *builder) loads() error {
+	if err := b.finiteHistories(); err != nil {
+		return err
+	}
 	for i, p := range b.net.Plucks {
 		if p.Until <= 0 {
 			continue
@@ -31,6 +35,42 @@ func (b *builder) loads() error {
 		b.m.Rolls = append(b.m.Rolls, Roll{Name: r.Name, Line: r.Line, Speed: r.Speed, Force: r.Force, From: from, Starting: r.Starting})
 	}
 	return b.moves()
+}
+
+// finiteHistories refuses a history that has no finite value somewhere in the
+// run, as far as a few thousand looks can tell.
+func (b *builder) finiteHistories() error {
+	const looks = 4000
+	end := b.m.Timing.End()
+	check := func(name string, h scenario.History, x float64) error {
+		for i := 0; i <= looks; i++ {
+			t := end * float64(i) / looks
+			if v := h.At(t, x); math.IsNaN(v) || math.IsInf(v, 0) {
+				return &scenario.PathError{Path: "excite." + name + ".with", What: fmt.Sprintf("has no finite value at t = %.4g s", t)}
+			}
+		}
+		return nil
+	}
+	for _, p := range b.net.Pushes {
+		if err := check(p.Name, p.Force, 0); err != nil {
+			return err
+		}
+	}
+	for _, p := range b.net.Presses {
+		parts := b.along(p.Along)
+		last := parts[len(parts)-1]
+		for _, x := range []float64{0, (last.Origin + b.m.Pieces[last.Piece].Length) / 2} {
+			if err := check(p.Name, p.Force, x); err != nil {
+				return err
+			}
+		}
+	}
+	for _, mv := range b.net.Moves {
+		if err := check(mv.Name, mv.Motion, 0); err != nil {
+			return err
+		}
+	}
+	return nil
 }
 
 func (b *builder) push(name string, at scenario.Place, force scenario.History) {

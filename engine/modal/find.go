@@ -17,6 +17,10 @@ type Want struct {
 	Shapes bool    // also the shapes
 }
 
+// mostCounted bounds the dense count of a network: each takes the cube of its
+// nodes, some 0.05 s for so many, and a vibration some forty counts.
+const mostCounted = 600
+
 // Most modes of one group that a call gives: thousands need seconds.
 const mostModes = 20000
 
@@ -170,6 +174,9 @@ func check(m *mesh.Mesh, want Want) error {
 	}
 	if !(want.Below >= 0) || math.IsInf(want.Below, 0) {
 		return fmt.Errorf("modal: modes below %g Hz asked for", want.Below)
+	}
+	if len(m.Nodes) > mostCounted {
+		return fmt.Errorf("natural vibrations are counted for %d nodes at most, and the network has %d; leave out splices that change nothing", mostCounted, len(m.Nodes))
 	}
 	finite := func(least float64, v ...float64) bool {
 		for _, x := range v {

@@ -130,6 +130,11 @@ func (t *Template) Bind(values []float64) (*Network, error) {
 			Spring: b.nonneg(tie.Spring, path+".spring"), Dashpot: b.nonneg(tie.Dashpot, path+".dashpot"), Mass: b.nonneg(tie.Mass, path+".mass"),
 		})
 	}
+	for i := range net.Ties {
+		if tie := &net.Ties[i]; b.err == nil && tie.From == tie.To {
+			b.fail("tie."+tie.Name, "joins a place to itself")
+		}
+	}
 	b.excitations(net, &t.Model)
 	for i := range t.Model.Watches {
 		w := &t.Model.Watches[i]

@@ -31,9 +31,16 @@ func (Solver) Name() string { return name }
 // Version changes whenever answers may change.
 func (Solver) Version() string { return version }
 
+// mostNodes is where the dense system of the element ends would take minutes;
+// chosen at about a second for its factors.
+const mostNodes = 1200
+
 // Refuses lists what the solver cannot represent: nothing of a taut string but a
 // free mass of no mass.
 func (Solver) Refuses(m *mesh.Mesh) []string {
+	if len(m.Nodes) > mostNodes {
+		return []string{fmt.Sprintf("joins its elements by a dense system and takes %d nodes at most; there are %d", mostNodes, len(m.Nodes))}
+	}
 	for i := range m.Pieces {
 		if !within(m.Pieces[i].From, m.Nodes) || !within(m.Pieces[i].To, m.Nodes) {
 			return []string{fmt.Sprintf("piece %d has no nodes", i)}

@@ -132,6 +132,7 @@ func (l *loaded) firstFrequencies(count int) [][]float64 {
 	}
 	res, err := modal.Find(l.mesh, modal.Want{Count: count})
 	if err != nil {
+		l.warn("no-modes", err.Error())
 		return out
 	}
 	for _, m := range res.Modes {

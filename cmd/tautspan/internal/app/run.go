@@ -114,11 +114,20 @@ func (r *runner) prepare() error {
 	r.asked = len(t.Collects)
 	t.Collects = append(append([]scenario.Collect(nil), t.Collects...), watchFigures(&t)...)
 	var err error
+	if r.still() {
+		r.warn("nothing-happens", "nothing happens to the line, so every record is zero; say an excitation")
+	}
 	r.session, err = measure.New(&t, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples, RunSamples: noSamples})
 	if err != nil {
 		r.refuse(err)
 	}
 	return nil
+}
+
+// still tells whether records are asked for and nothing moves the line.
+func (r *runner) still() bool {
+	n := r.net
+	return len(n.Watches) > 0 && len(n.Plucks)+len(n.Starts)+len(n.Pushes)+len(n.Presses)+len(n.Moves)+len(n.Rolls) == 0
 }
 
 // noSamples keeps records from being drawn over the doubtful inputs: a run for
@@ -198,7 +207,7 @@ func (r *runner) stopped(ctx context.Context, err error) (status Status, stop bo
 	case r.outcome == nil && ctx.Err() != nil:
 		return Interrupted, true, errInterrupted
 	case r.outcome == nil:
-		return Outside, true, fmt.Errorf("the limit on time ended the run before any solver had finished three levels: %w", err)
+		return Outside, true, fmt.Errorf("the limit on time ended the run before any solver had finished three levels")
 	}
 	return Done, false, nil // cut, but with something to show
 }
