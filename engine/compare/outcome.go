@@ -172,6 +172,9 @@ func (e *AllAbsentError) Error() string {
 // outcome collects what the runner holds.
 func (r *runner) outcome() (*Outcome, error) {
 	out := &Outcome{Work: r.spent, Effort: r.effort, Notes: r.notes}
+	if r.mesh.BandCut {
+		out.Notes = append(out.Notes, "the excitation is shorter than the solvers are asked to resolve; a difference between them counts as unsettled")
+	}
 	var reasons []string
 	answered := false
 	for _, v := range r.voices {
@@ -261,6 +264,10 @@ func (r *runner) channel(c int, obs []Observable) Channel {
 	}
 	if sure && odd >= 0 {
 		out.OddOneOut = r.voices[odd].solver.Name()
+	}
+	if out.Verdict == Differ && r.mesh.BandCut {
+		// What no level resolves says nothing against any solver.
+		out.Verdict, out.OddOneOut = Unsettled, ""
 	}
 	for _, p := range obs[Record].Pairs {
 		out.Difference = math.Max(out.Difference, share(p.Difference, obs[Record].Scale))

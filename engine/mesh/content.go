@@ -177,6 +177,7 @@ func (b *builder) band() float64 {
 		}
 		travel = math.Max(travel, t)
 	}
+	b.m.BandCut = f > maxWaves/travel
 	return math.Min(f, maxWaves/travel)
 }
 

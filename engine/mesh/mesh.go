@@ -25,6 +25,9 @@ type Mesh struct {
 	// Band is an estimate of the highest frequency of note that the
 	// excitations feed in, Hz; 0 where they have none of their own (a pluck).
 	Band float64
+	// BandCut tells that the excitations reach above Band: they are shorter than
+	// level 0 is asked to resolve.
+	BandCut bool
 }
 
 // SmoothJump is the value of Mesh.Jump for data without jumps.
