@@ -15,6 +15,9 @@ type counter struct {
 }
 
 func newCounter(w *network) *counter {
+	if w.sys != nil {
+		return &counter{w: w}
+	}
 	n := len(w.nodes) + len(w.elements)
 	return &counter{w: w, keep: make([]kept, len(w.elements)), a: make([]float64, n*n)}
 }
@@ -96,6 +99,10 @@ func (c *counter) negative(omega float64) (int, float64) {
 // Source: Wittrick, Williams, A general algorithm for computing natural
 // frequencies of elastic structures, Q. J. Mech. Appl. Math. 24 (1971).
 func (c *counter) below(omega float64) int {
+	if c.w.sys != nil {
+		n, _ := c.w.sys.below(omega)
+		return n
+	}
 	inner := c.choose(omega)
 	neg, _ := c.negative(omega)
 	return inner + neg
@@ -240,10 +247,15 @@ func (c *counter) roots(all span) []float64 {
 // alone finds the one root in a span from the change of sign of det; false where
 // rounding at an end hides the change.
 func (c *counter) alone(s span) (float64, bool) {
-	c.choose(0.5 * (s.lo + s.hi))
+	value := c.negative
+	if c.w.sys != nil {
+		value = c.w.sys.below // the sign of Delta is that of (-1)^J
+	} else {
+		c.choose(0.5 * (s.lo + s.hi))
+	}
 	ref := math.Inf(-1)
 	det := func(omega float64) float64 {
-		n, log := c.negative(omega)
+		n, log := value(omega)
 		if math.IsInf(ref, -1) {
 			ref = log
 		}

@@ -138,17 +138,37 @@ func (l *list) prove(top, gamma float64) (edge, left float64, short, proved bool
 			}
 		}
 	}
+	lefts, limited := w.reachLeft(lefts, top, gamma)
 	for i := range lefts {
 		left = lefts[i]
 		edge = l.edge(top)
 		r := region{x0: -left, x1: right, y0: 0, y1: edge}
 		l.work = 400 + 4*int(edge*w.travel) // cuts; a network needs some tens, or a few a root
 		if l.complete(r) {
-			return edge, left, i > 1, true
+			return edge, left, i > 1 || limited, true
 		}
 		top *= 1.01
 	}
 	return edge, left, false, false
+}
+
+// reachLeft limits how far left a general group is searched: internal loss has
+// infinitely many motions that creep at about 1/tau, where bending stiffness
+// vanishes, and a piece of varying tension costs more the further left.
+func (w *network) reachLeft(lefts []float64, top, gamma float64) ([]float64, bool) {
+	most := math.Inf(1)
+	if w.loss > 0 {
+		most = 0.4 / w.loss
+	}
+	for _, el := range w.elements {
+		if w.sys != nil && w.m.Pieces[el.piece].TensionRise != 0 {
+			most = math.Min(most, 10*top+4*gamma)
+		}
+	}
+	if most >= lefts[0] {
+		return lefts, false
+	}
+	return []float64{most, 0.93 * most, 0.5 * most, 0.2 * most}, true
 }
 
 // edge is the middle of the widest gap between the damped frequencies known just

@@ -4,13 +4,13 @@ import (
 	"fmt"
 	"math"
 	"math/cmplx"
-	"strings"
 
 	"github.com/tautspan/tautspan/engine/mesh"
 )
 
-// Dynamic answers for the steady motion u(x) e^{st} of a network of taut
-// strings, exactly: every piece by its transcendental stiffness
+// Dynamic answers for the steady motion u(x) e^{st} of a network exactly: every
+// piece by its transcendental stiffness (with bending, sag and varying tension
+// see stiff.go), a uniform string's being
 //
 //	T a/sinh(aL) [[cosh aL, -1], [-1, cosh aL]],  a = sqrt((m s^2 + c s)/T),
 //
@@ -20,6 +20,7 @@ import (
 type Dynamic struct {
 	m        *mesh.Mesh
 	attached [][]mesh.Attachment
+	general  bool // more than uniform strings; see system
 }
 
 // Load is a point force e^{st}, N.
@@ -33,13 +34,13 @@ const mostNodes = 2000
 
 // NewDynamic prepares a mesh. It fails for what is not represented.
 func NewDynamic(m *mesh.Mesh) (*Dynamic, error) {
-	if beyond := m.Unknown(0); len(beyond) > 0 {
-		return nil, fmt.Errorf("the exact steady response %s", strings.Join(beyond, "; "))
+	if err := represents(m); err != nil {
+		return nil, err
 	}
 	if len(m.Nodes) > mostNodes {
 		return nil, fmt.Errorf("the exact steady response takes %d nodes at most, and the network has %d", mostNodes, len(m.Nodes))
 	}
-	return &Dynamic{m: m, attached: m.Attached()}, nil
+	return &Dynamic{m: m, attached: m.Attached(), general: m.Features() != 0}, nil
 }
 
 // Field is one steady motion.
@@ -48,6 +49,8 @@ type Field struct {
 	u     []complex128 // m, by node
 	arcs  []steady     // by piece
 	loads []Load       // inside pieces
+
+	motion *motion // in place of the rest on more than uniform strings
 }
 
 // steady is a piece at one s.
@@ -112,6 +115,9 @@ func (p steady) product(u, v float64, sign complex128) complex128 {
 // Solve is the steady motion at s under loads and prescribed node displacements.
 // It fails where the motion does not exist: at an undamped natural frequency.
 func (d *Dynamic) Solve(s complex128, loads []Load, moves map[int]complex128) (*Field, error) {
+	if d.general {
+		return d.solve(s, loads, moves)
+	}
 	f := &Field{d: d, u: make([]complex128, len(d.m.Nodes)), arcs: make([]steady, len(d.m.Pieces))}
 	var resonant []int
 	for i := range d.m.Pieces {
@@ -169,6 +175,33 @@ func (d *Dynamic) Solve(s complex128, loads []Load, moves map[int]complex128) (*
 		}
 	}
 	return f, nil
+}
+
+// solve is Solve on more than uniform strings.
+func (d *Dynamic) solve(s complex128, loads []Load, moves map[int]complex128) (*Field, error) {
+	if s == 0 { // the load of sag divides by s; a period of a thousand years is at rest
+		s = 1e-9
+	}
+	for _, l := range loads {
+		for i := range d.m.Pieces {
+			p := &d.m.Pieces[i]
+			start, end := slackEnds(p)
+			if start && onEnd(l.Spot, i, p.From, 0, p) || end && onEnd(l.Spot, i, p.To, p.Length, p) {
+				return nil, fmt.Errorf("a force on the end of %s that has no tension moves it without bound", lineName(d.m, p.Line))
+			}
+		}
+	}
+	y := newSystem(d.m, func(int) bool { return true })
+	y.moves, y.cuts = moves, map[int][]float64{}
+	motion, ok := y.solve(s, loads)
+	if !ok {
+		return nil, noMotion(s)
+	}
+	return &Field{d: d, motion: motion}, nil
+}
+
+func onEnd(at mesh.Spot, piece, node int, x float64, p *mesh.Piece) bool {
+	return at.Node == node || at.Node < 0 && at.Piece == piece && math.Abs(at.At-x) <= 1e-12*p.Length
 }
 
 func noMotion(s complex128) error {
@@ -269,6 +302,9 @@ func solveComplex(a, b []complex128, n int) bool {
 
 // Displacement is the complex displacement at a spot, m.
 func (f *Field) Displacement(at mesh.Spot) complex128 {
+	if f.motion != nil {
+		return f.motion.displacement(at)
+	}
 	if at.Node >= 0 {
 		return f.u[at.Node]
 	}
@@ -284,6 +320,9 @@ func (f *Field) Displacement(at mesh.Spot) complex128 {
 
 // slope is du/dx in a piece; at a load that after it.
 func (f *Field) slope(piece int, x float64) complex128 {
+	if f.motion != nil {
+		return f.motion.slope(piece, x)
+	}
 	p, arc := &f.d.m.Pieces[piece], f.arcs[piece]
 	v := f.u[p.To]*arc.rate(x) - f.u[p.From]*arc.rate(p.Length-x)
 	for _, l := range f.loads {
@@ -327,11 +366,27 @@ func (f *Field) Slope(at mesh.Spot) complex128 {
 	return 0
 }
 
-// Force is T du/dx, N; at a support or a node that carries something what the
+// across is the transverse force T u' - EI u”' in a piece; at a load that after it.
+func (f *Field) across(piece int, x float64) complex128 {
+	if f.motion != nil {
+		return f.motion.at(piece, x).force
+	}
+	return complex(f.d.m.Pieces[piece].Tension, 0) * f.slope(piece, x)
+}
+
+// acrossEnd is that at an attachment's end of its piece.
+func (f *Field) acrossEnd(a mesh.Attachment) complex128 {
+	if a.End {
+		return f.across(a.Piece, f.d.m.Pieces[a.Piece].Length)
+	}
+	return f.across(a.Piece, 0)
+}
+
+// Force is T du/dx - EI d3u/dx3, N; at a support or a node that carries something what the
 // line exerts on it.
 func (f *Field) Force(at mesh.Spot) complex128 {
 	if at.Node < 0 {
-		return complex(f.d.m.Pieces[at.Piece].Tension, 0) * f.slope(at.Piece, at.At)
+		return f.across(at.Piece, at.At)
 	}
 	node := &f.d.m.Nodes[at.Node]
 	if !node.Support && !node.Fitting {
@@ -339,11 +394,11 @@ func (f *Field) Force(at mesh.Spot) complex128 {
 		if !ok {
 			return 0
 		}
-		return complex(f.d.m.Pieces[a.Piece].Tension, 0) * f.end(a)
+		return f.acrossEnd(a)
 	}
 	var sum complex128
 	for _, a := range f.d.attached[at.Node] {
-		t := complex(f.d.m.Pieces[a.Piece].Tension, 0) * f.end(a)
+		t := f.acrossEnd(a)
 		if a.End {
 			t = -t
 		}
@@ -352,5 +407,21 @@ func (f *Field) Force(at mesh.Spot) complex128 {
 	return sum
 }
 
-// Moment is the bending moment, N m: none on a string.
-func (f *Field) Moment(mesh.Spot) complex128 { return 0 }
+// Moment is the bending moment EI (1 + s tau) d2u/dx2, N m, at a node that of the
+// piece after it: none on a string.
+func (f *Field) Moment(at mesh.Spot) complex128 {
+	if f.motion == nil {
+		return 0
+	}
+	if at.Node < 0 {
+		return f.motion.at(at.Piece, at.At).moment
+	}
+	a, ok := f.after(at.Node)
+	switch {
+	case !ok:
+		return 0
+	case a.End:
+		return f.motion.at(a.Piece, f.d.m.Pieces[a.Piece].Length).moment
+	}
+	return f.motion.at(a.Piece, 0).moment
+}

@@ -29,7 +29,9 @@ type network struct {
 	rigid   int // motions without restoring force
 	zeros   int // order of the zero of Delta at s = 0
 	notes   []string
-	order   []int // of the unknowns, for a narrow band
+	order   []int   // of the unknowns, for a narrow band
+	sys     *system // not nil: more than uniform strings
+	loss    float64 // s, largest internal loss
 }
 
 // element is a uniform piece between unknowns i and j; -1 is held.
@@ -153,9 +155,31 @@ func newNetwork(m *mesh.Mesh, in func(node int) bool) *network {
 		}
 	}
 	w.freedom()
+	if w.general(in) {
+		w.sys = newSystem(m, in)
+		w.remarks()
+		return w
+	}
 	w.matched()
 	w.arrange()
 	return w
+}
+
+// general tells whether the group has more than uniform strings.
+func (w *network) general(in func(node int) bool) bool {
+	for _, e := range w.elements {
+		p := &w.m.Pieces[e.piece]
+		if p.Bending > 0 || p.TensionRise != 0 {
+			return true
+		}
+	}
+	for i := range w.m.Lines {
+		l := &w.m.Lines[i]
+		if l.Sag != nil && len(l.Pieces) > 0 && in(w.m.Pieces[l.Pieces[0]].From) {
+			return true
+		}
+	}
+	return false
 }
 
 func (w *network) addNode(i int, n *mesh.Node) {
@@ -176,11 +200,25 @@ func (w *network) addNode(i int, n *mesh.Node) {
 func (w *network) addPiece(i int, p *mesh.Piece, a, b int) {
 	e := element{piece: i, i: a, j: b, t: p.Tension, m: p.MassPerLength, c: p.Viscous,
 		len: p.Length, tau: p.TravelTime(), z: p.Impedance()}
+	if p.Bending > 0 || p.TensionRise != 0 {
+		e.tau = slowest(p)
+		w.damped = w.damped || p.Bending*p.Internal > 0
+		w.loss = math.Max(w.loss, p.Internal)
+	}
 	w.elements = append(w.elements, e)
 	w.travel += e.tau
 	w.longest = math.Max(w.longest, e.tau)
 	w.briefst = math.Min(w.briefst, e.tau)
 	w.damped = w.damped || e.c > 0
+}
+
+// slowest is the travel time that spaces the slowest vibrations of a piece: pi
+// over the first frequency with hinged ends, where tension varies with that of
+// each place, L = integral of sqrt(m/(T + EI pi^2/L^2)) dx.
+func slowest(p *mesh.Piece) float64 {
+	stiff := p.Bending * math.Pi * math.Pi / (p.Length * p.Length)
+	t0, t1 := p.Tension+stiff, p.Tension+stiff+p.TensionRise*p.Length
+	return 2 * p.Length * math.Sqrt(p.MassPerLength) / (math.Sqrt(math.Max(t0, 0)) + math.Sqrt(math.Max(t1, 0)))
 }
 
 // freedom finds the motions that nothing holds back and the order of the zero

@@ -21,6 +21,9 @@ type evaluator struct {
 }
 
 func newEvaluator(w *network) *evaluator {
+	if w.sys != nil {
+		return &evaluator{w: w}
+	}
 	n := w.unknowns()
 	return &evaluator{w: w, blocks: make([]block, len(w.elements)), row: make([]int, n),
 		a: make([]complex128, n*n), da: make([]complex128, n*n), last: make([]int, n)}
@@ -121,6 +124,9 @@ func (e *evaluator) assemble(s complex128) {
 //
 // It reports false where the matrix is singular in the arithmetic.
 func (e *evaluator) delta(s complex128) (log, slope complex128, ok bool) {
+	if e.w.sys != nil {
+		return e.w.sys.delta(s)
+	}
 	e.assemble(s)
 	log, slope, ok = numeric.LogDet(e.a, e.da, e.last, e.n)
 	if !ok {

@@ -14,6 +14,8 @@ import (
 type Shape struct {
 	nodes  map[int]complex128
 	pieces map[int]arc
+	motion *motion // in place of both for a general group
+	factor complex128
 }
 
 // arc is u(x) on a piece: even*cosh(ay)/cosh(h) + odd*sinh(ay)/sinh(h), y from
@@ -29,6 +31,12 @@ type arc struct {
 // At is the complex displacement at a spot: modulus and phase of the motion
 // there. It is 0 outside the mode's group.
 func (s *Shape) At(spot mesh.Spot) complex128 {
+	if s.motion != nil {
+		if spot.Node >= 0 && !s.motion.y.in(spot.Node) {
+			return 0
+		}
+		return s.factor * s.motion.displacement(spot)
+	}
 	if spot.Node >= 0 {
 		return s.nodes[spot.Node]
 	}
@@ -61,6 +69,9 @@ func (p *arc) at(x float64) complex128 {
 
 // shapes gives the shapes at a root: as many as there are, want at most.
 func (w *network) shapes(s complex128, want int) (shapes []*Shape, rank int) {
+	if w.sys != nil {
+		return w.generalShapes(s, want)
+	}
 	e := newEvaluator(w)
 	e.assemble(s)
 	n := e.n
@@ -223,20 +234,22 @@ func (p *arc) firstNear(level float64) complex128 {
 }
 
 // climb refines a top within one interval on either side by golden section.
-func (p *arc) climb(v complex128, x, h float64) complex128 {
-	lo, hi := math.Max(0, x-h), math.Min(p.length, x+h)
+func (p *arc) climb(v complex128, x, h float64) complex128 { return climb(p.at, p.length, v, x, h) }
+
+func climb(at func(float64) complex128, length float64, v complex128, x, h float64) complex128 {
+	lo, hi := math.Max(0, x-h), math.Min(length, x+h)
 	const g = 0.6180339887498949
 	x1, x2 := hi-g*(hi-lo), lo+g*(hi-lo)
-	v1, v2 := p.at(x1), p.at(x2)
+	v1, v2 := at(x1), at(x2)
 	for step := 0; step < 45; step++ {
 		if cmplx.Abs(v1) > cmplx.Abs(v2) {
 			hi, x2, v2 = x2, x1, v1
 			x1 = hi - g*(hi-lo)
-			v1 = p.at(x1)
+			v1 = at(x1)
 		} else {
 			lo, x1, v1 = x1, x2, v2
 			x2 = lo + g*(hi-lo)
-			v2 = p.at(x2)
+			v2 = at(x2)
 		}
 	}
 	if cmplx.Abs(v1) > cmplx.Abs(v) {

@@ -25,6 +25,9 @@ const mostStates = 260
 // of motion of damped linear dynamic systems, J. Appl. Mech. 25 (1958), for the
 // state form.
 func (w *network) starts(omega float64) []complex128 {
+	if w.sys != nil {
+		return w.generalStarts(omega)
+	}
 	n := len(w.nodes)
 	degree := make([][]int, len(w.elements))
 	for i := range w.elements {

@@ -213,3 +213,37 @@ func TestRoot(t *testing.T) {
 		}
 	}
 }
+
+// Random systems: the residual is a few rounding errors of the terms.
+func TestSolve(t *testing.T) {
+	r := rand.New(rand.NewSource(6))
+	for trial := 0; trial < 50; trial++ {
+		n, k := 1+r.Intn(12), 1+r.Intn(3)
+		a, b := make([]complex128, n*n), make([]complex128, n*k)
+		for i := range a {
+			a[i] = complex(r.NormFloat64(), r.NormFloat64())
+		}
+		for i := range b {
+			b[i] = complex(r.NormFloat64(), r.NormFloat64())
+		}
+		x := append([]complex128(nil), b...)
+		if !Solve(append([]complex128(nil), a...), x, n, k) {
+			t.Fatal("singular")
+		}
+		for i := 0; i < n; i++ {
+			for j := 0; j < k; j++ {
+				rest, size := b[i*k+j], 1.0
+				for c := 0; c < n; c++ {
+					rest -= a[i*n+c] * x[c*k+j]
+					size += cmplx.Abs(a[i*n+c] * x[c*k+j])
+				}
+				if cmplx.Abs(rest) > 1e-13*size { // n^2 rounding errors
+					t.Errorf("residual %.2g of %.2g", cmplx.Abs(rest), size)
+				}
+			}
+		}
+	}
+	if Solve(make([]complex128, 4), make([]complex128, 2), 2, 1) {
+		t.Error("a matrix of zeros was solved")
+	}
+}
