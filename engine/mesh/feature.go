@@ -10,7 +10,18 @@ const (
 	VaryingTension
 	Sagging
 	InternalLoss
+	Stretching    // tension that grows with amplitude
+	Hysteretic    // loss factors of tension, bending or springs
+	BenchDamper   // a damper known by frequency
+	JointLaw      // friction, stop or written law at a node
+	SpreadLaw     // the same along a piece
+	SlackTie      // a tie that pulls, never pushes
+	TurningJoint  // a hinge or an inertia against turning
+	RollingSprung // a rolling load with a mass of its own
 )
+
+// NonLinear are the features with which answers do not grow in proportion.
+const NonLinear = Stretching | JointLaw | SpreadLaw | SlackTie
 
 var featureWords = []struct {
 	feature Features
@@ -20,6 +31,14 @@ var featureWords = []struct {
 	{VaryingTension, "tension that varies along an inclined line"},
 	{Sagging, "the sag term (leave `sag included` out: all but the odd modes in the vertical plane stay right)"},
 	{InternalLoss, "internal loss"},
+	{Stretching, "tension that grows with amplitude"},
+	{Hysteretic, "a hysteretic loss factor"},
+	{BenchDamper, "a damper known only by its bench record, which answers by frequency"},
+	{JointLaw, "friction, a stop or a law at a joint"},
+	{SpreadLaw, "a law along a segment"},
+	{SlackTie, "a tie that goes slack"},
+	{TurningJoint, "a hinge or an inertia against turning"},
+	{RollingSprung, "a load that rolls with a mass of its own"},
 }
 
 // Features lists what the mesh has.
@@ -36,11 +55,53 @@ func (m *Mesh) Features() Features {
 		if p.TensionRise != 0 {
 			f |= VaryingTension
 		}
+		if p.TensionLoss > 0 || p.BendingLoss > 0 {
+			f |= Hysteretic
+		}
+		if p.Law != nil {
+			f |= SpreadLaw
+		}
+	}
+	for i := range m.Nodes {
+		f |= m.Nodes[i].features()
+	}
+	for _, l := range m.Links {
+		if l.SpringLoss > 0 {
+			f |= Hysteretic
+		}
+		if l.Slack {
+			f |= SlackTie
+		}
 	}
 	for i := range m.Lines {
 		if m.Lines[i].Sag != nil {
 			f |= Sagging
 		}
+		if m.Lines[i].Stretch != nil {
+			f |= Stretching
+		}
+	}
+	for _, r := range m.Rolls {
+		if r.Mass > 0 {
+			f |= RollingSprung
+		}
+	}
+	return f
+}
+
+func (n *Node) features() Features {
+	var f Features
+	if n.SpringLoss > 0 {
+		f |= Hysteretic
+	}
+	if len(n.Benches) > 0 {
+		f |= BenchDamper
+	}
+	if len(n.Laws) > 0 {
+		f |= JointLaw
+	}
+	if n.Hinge || n.Inertia > 0 {
+		f |= TurningJoint
 	}
 	return f
 }

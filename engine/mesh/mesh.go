@@ -62,6 +62,12 @@ type Node struct {
 	Support   bool
 	Clamped   bool    // does not turn; only where a piece that meets here has bending
 	Rotary    float64 // N m/rad, to ground, against turning; likewise
+	Hinge     bool    // the pieces that meet here turn each on their own, without moment
+	Inertia   float64 // kg m^2, against turning; only where a piece that meets here has bending
+	// SpringLoss is the loss factor of Spring: K(1+i eta) at positive frequencies.
+	SpringLoss float64
+	Benches    []*Bench
+	Laws       []Law // to ground, not linear
 }
 
 // Maxwell is a spring and a dashpot in series, to ground: a dashpot behind a
@@ -92,6 +98,11 @@ type Piece struct {
 	TensionRise   float64 // N/m, dT/dx; Tension is that at the piece's start
 	Bending       float64 // EI, N m^2
 	Internal      float64 // s, Kelvin-Voigt loss of the bending
+	// TensionLoss and BendingLoss are hysteretic loss factors: T(1+i eta) and
+	// EI(1+i eta) at positive frequencies.
+	TensionLoss float64
+	BendingLoss float64
+	Law         *Law // per length; nil: none
 	// Start is the displacement at t = 0 and StartRate the velocity, as
 	// functions of the distance from the piece's start, m; nil means 0.
 	Start     func(s float64) float64
@@ -137,10 +148,15 @@ type Spot struct {
 // Link is a spring and a dashpot side by side between two nodes: a tie, or the
 // hanger of a tuned mass. Force on A is K(u_B-u_A) + C(v_B-v_A).
 type Link struct {
-	Name    string
-	A, B    int
-	Spring  float64 // N/m
-	Dashpot float64 // N s/m
+	Name       string
+	A, B       int
+	Spring     float64 // N/m
+	Dashpot    float64 // N s/m
+	SpringLoss float64 // loss factor of Spring
+	// Slack tells that the link pulls, never pushes. A is its upper end: it acts
+	// only while u_A > u_B, spring and dashpot alike, and its force on A is never
+	// upward.
+	Slack bool
 }
 
 // Push is a point force.
@@ -173,14 +189,20 @@ type Roll struct {
 	Force    float64 // N, positive upward
 	From     float64 // m along the line
 	Starting float64 // s
+	// A load with a mass of its own rides on a spring and a dashpot; Force is then
+	// its weight and what else it carries. All 0: a constant force.
+	Mass    float64 // kg
+	Spring  float64 // N/m
+	Dashpot float64 // N s/m
 }
 
 // Line says which pieces make a line.
 type Line struct {
-	Name   string
-	Pieces []int // in walking order
-	Length float64
-	Sag    *Sag // nil: none
+	Name    string
+	Pieces  []int // in walking order
+	Length  float64
+	Sag     *Sag     // nil: none
+	Stretch *Stretch // nil: none
 }
 
 // Sag is the shallow-cable term: the line's own stretch between its ends makes
