@@ -256,13 +256,10 @@ type arrivalRow struct {
 	Number    int     `json:"number"`
 	Time      float64 `json:"time_s"`
 	Quantity  string  `json:"quantity"`
-	Amplitude float64 `json:"amplitude"`
+	Amplitude float64 `json:"amplitude"` // with its sign
 	Sign      int     `json:"sign"`
 	Smeared   bool    `json:"smeared"`
 }
-
-// signed is the amplitude with its sign.
-func (r arrivalRow) signed() float64 { return math.Copysign(r.Amplitude, float64(r.Sign)) }
 
 // at lists the fronts that reach a watch, in order.
 func (d arrivalsDoc) at(t *testing.T, watch string, least int) []arrivalRow {

@@ -163,6 +163,13 @@ func TestJumpOrders(t *testing.T) {
 		{"struck stretch", func(n *scenario.Network) {
 			n.Starts = []scenario.StartOf[float64]{{Along: scenario.SpanOf{Segment: 1}, Velocity: true, Shape: c(1)}}
 		}, 1},
+		{"two ramps that meet at a joint: a kink, no tear", func(n *scenario.Network) {
+			up, down := formula.Mul(c(0.1/12), formula.Arg(formula.ArgX)), formula.Sub(c(0.1), formula.Mul(c(0.1/30), formula.Arg(formula.ArgX)))
+			n.Starts = []scenario.StartOf[float64]{{Along: scenario.SpanOf{}, Shape: up}, {Along: scenario.SpanOf{Segment: 1}, Shape: down}}
+		}, 1},
+		{"one ramp that ends at a joint", func(n *scenario.Network) {
+			n.Starts = []scenario.StartOf[float64]{{Along: scenario.SpanOf{}, Shape: formula.Mul(c(0.1/12), formula.Arg(formula.ArgX))}}
+		}, 0},
 		{"rolling load", func(n *scenario.Network) {
 			n.Rolls = []scenario.RollOf[float64]{{Speed: 10, Force: -100, From: scenario.Place{Node: 0}}}
 		}, 1},

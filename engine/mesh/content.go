@@ -76,8 +76,9 @@ func (b *builder) historyJump(h scenario.History) int {
 	return order
 }
 
-// startJump classes a start shape by its ends and its operations. A velocity
-// ranks one order above the displacement.
+// startJump classes a start shape by its ends and its operations; where its
+// stretch ends within the line, by how it goes over into what lies beyond. A
+// velocity ranks one order above the displacement.
 func (b *builder) startJump(s scenario.StartOf[float64]) int {
 	order, base := SmoothJump, 0
 	if s.Velocity {
@@ -101,20 +102,29 @@ func (b *builder) startJump(s scenario.StartOf[float64]) int {
 	const still = 1e-6 // share of the largest value that counts as none; chosen
 	h := length * 1e-4
 	for side, x := range []float64{0, length} {
-		in := h
-		node := b.m.Pieces[first.Piece].From
+		in, piece, node := h, first.Piece, b.m.Pieces[first.Piece].From
 		if side == 1 {
-			in, node = -h, b.m.Pieces[last.Piece].To
+			in, piece, node = -h, last.Piece, b.m.Pieces[last.Piece].To
 		}
-		v, v1, v2 := at(x), at(x+in), at(x+2*in)
-		bend := math.Abs(v-2*v1+v2) / scale * 1e4
 		fixed := b.m.Nodes[node].Fixed
+		v, v1, v2 := at(x), at(x+in), at(x+2*in)
+		slope, bend := v1-v, v-2*v1+v2
+		if next := b.beyond(piece, node); next >= 0 {
+			other := b.begun(next, node, s.Velocity)
+			mine := b.begun(piece, node, s.Velocity)
+			v, v1, v2 = mine(0), mine(h), mine(2*h)
+			w, w1, w2 := other(0), other(h), other(2*h)
+			slope, bend = v1-v+w1-w, (v-2*v1+v2)-(w-2*w1+w2)
+			if v -= w; fixed {
+				v, slope = math.Max(math.Abs(mine(0)), math.Abs(w)), 0
+			}
+		}
 		switch {
 		case math.Abs(v) > still*scale:
 			order = min(order, base)
-		case !fixed && math.Abs(v1-v)/scale*1e4 > still:
+		case !fixed && math.Abs(slope)/scale*1e4 > still:
 			order = min(order, base+1)
-		case bend > still*1e2:
+		case math.Abs(bend)/scale*1e4 > still*1e2:
 			order = min(order, base+2)
 		}
 	}
@@ -122,6 +132,39 @@ func (b *builder) startJump(s scenario.StartOf[float64]) int {
 		order = min(order, b.startAtNodes(parts, at, first.Origin, scale, base))
 	}
 	return order
+}
+
+// beyond is the piece of the same line on the other side of a node, -1 at an end.
+func (b *builder) beyond(piece, node int) int {
+	for _, k := range b.m.Lines[b.m.Pieces[piece].Line].Pieces {
+		if p := &b.m.Pieces[k]; k != piece && (p.From == node || p.To == node) {
+			return k
+		}
+	}
+	return -1
+}
+
+// begun is the sum of all start shapes of a piece as a function of the distance
+// from one of its nodes; no further than the piece.
+func (b *builder) begun(piece, node int, velocity bool) func(float64) float64 {
+	p := &b.m.Pieces[piece]
+	return func(s float64) float64 {
+		s = min(s, p.Length)
+		if p.To == node {
+			s = p.Length - s
+		}
+		sum := 0.0
+		for _, st := range b.net.Starts {
+			switch {
+			case st.Velocity != velocity || st.Along.Line != p.Line:
+			case st.Along.Segment < 0:
+				sum += st.Shape.At(0, p.X0+s)
+			case st.Along.Segment == p.Segment:
+				sum += st.Shape.At(0, p.S0+s)
+			}
+		}
+		return sum
+	}
 }
 
 // startAtNodes looks at what stands inside a start shape: a spring or dashpot
