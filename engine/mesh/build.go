@@ -16,7 +16,7 @@ func Build(net *scenario.Network) (*Mesh, error) {
 	if err != nil {
 		return nil, err
 	}
-	b := &builder{net: net, rest: rest, m: &Mesh{Timing: timing(&net.Run)}}
+	b := &builder{net: net, rest: rest, m: &Mesh{Timing: timing(&net.Run), Source: net}}
 	b.cut()
 	b.fittings()
 	b.links()

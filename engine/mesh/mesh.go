@@ -28,6 +28,9 @@ type Mesh struct {
 	// BandCut tells that the excitations reach above Band: they are shorter than
 	// level 0 is asked to resolve.
 	BandCut bool
+	// Source is what the mesh was built from, for whoever must build it again in
+	// another process.
+	Source *scenario.Network
 }
 
 // SmoothJump is the value of Mesh.Jump for data without jumps.
