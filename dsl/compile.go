@@ -15,6 +15,14 @@ import (
 // that `solvers` may list (nil: the built-in ones).
 type Options = resolve.Options
 
+// Plugin and Parameter are what the language must know of an installed plugin.
+type (
+	// Plugin is a solver, load or law that a scenario may name in quotes.
+	Plugin = resolve.Plugin
+	// Parameter is a number that a load or a law takes.
+	Parameter = resolve.Parameter
+)
+
 // Compiled is a scenario as compiled. Template is never nil; where Diagnostics
 // holds an error it must not be run.
 type Compiled struct {

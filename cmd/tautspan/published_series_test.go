@@ -143,7 +143,7 @@ func besselI0(x float64) float64 {
 // The wake of a point impulse on an endless damped string. The impulse is a
 // half-sine of duration d and the same content, its middle at d/2, so a record at
 // t + d/2 holds the published value at t but for the pulse's width:
-// y(t) + (s^2/2) y'' with the variance s^2 = d^2 (1/4 - 2/pi^2) of a half-sine.
+// y(t) + (s^2/2) y” with the variance s^2 = d^2 (1/4 - 2/pi^2) of a half-sine.
 // With y = J/(2 m c) g, g = e^{-sigma t} I0(sigma sqrt(t^2 - x^2/c^2)), the second
 // derivative is bounded here by its own difference quotient over the pulse, and
 // doubled for what varies within it. The ends are too far to be heard of in time.

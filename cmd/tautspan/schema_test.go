@@ -72,6 +72,9 @@ func TestDocumentsFollowTheirSchemas(t *testing.T) {
 		printed(t, 0, "arrivals", "--json", shipped(name))
 		printed(t, 0, "respond", "--json", "--points", "5", shipped(name))
 	}
+	printed(t, 0, "plugins", "--json", "list")
+	printed(t, 0, "plugins", "--json", "try", "characteristic")
+	printed(t, 3, "plugins", "--json", "show", "nobody")
 	printed(t, 0, "run", "--json", "--out", "none", shipped("first-hanger"))
 	doc := printed(t, 1, "run", "--json", "--out", "none", short)
 	if v := doc["verdict"]; v != "not met" {

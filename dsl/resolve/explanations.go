@@ -116,6 +116,10 @@ Modes, fronts and returns are counted 1, 2, 3, ...; the number is written out, s
 This measure is taken of what a watch records, written WATCH.QUANTITY, such as mid.displacement.`,
 	"unknown-word": `
 In this place only certain words may stand, and this is none of them.`,
+	"unknown-plugin": `
+A name in quotes behind solvers, load or law is that of a plugin, and none of that name and kind is
+installed. Nothing is found by accident: 'tautspan plugins add PATH' looks at a plugin and records the
+checksum of its file; 'tautspan plugins list' shows what is installed and what it takes.`,
 	"unknown-solver": `
 No solver of this name is known. Leave "solvers" out to run every solver that can represent the scenario.`,
 	"unknown-column": `

@@ -254,8 +254,12 @@ func (r *resolver) solvers(it *syntax.RunItem) {
 	said := map[string]bool{}
 	for _, s := range it.Solvers {
 		switch {
+		case s.Quoted && said[s.Text]:
+			r.errorAt(s.Span, "said-twice", "the solver "+s.Text+" is listed already", "", "")
 		case s.Quoted:
-			r.notYet(s.Span, "a solver from a plugin", "")
+			if _, ok := r.plugin(s.Span, s.Text, "solver"); ok {
+				r.tmpl.Model.Run.Foreign = append(r.tmpl.Model.Run.Foreign, s.Text)
+			}
 		case said[s.Text]:
 			r.errorAt(s.Span, "said-twice", "the solver "+s.Text+" is listed already", "", "")
 		case !contains(r.opts.Solvers, s.Text):

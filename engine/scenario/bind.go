@@ -305,7 +305,7 @@ const MaxRows = 2_000_000
 
 func (b *binder) run(net *Network, r *RunOf[formula.Program]) {
 	out := RunOf[float64]{
-		ForGiven: r.ForGiven, EveryGiven: r.EveryGiven, AgreeGiven: r.AgreeGiven, Solvers: r.Solvers, Effort: r.Effort,
+		ForGiven: r.ForGiven, EveryGiven: r.EveryGiven, AgreeGiven: r.AgreeGiven, Solvers: r.Solvers, Foreign: r.Foreign, Effort: r.Effort,
 		LimitMemory: b.nonneg(r.LimitMemory, "run.limit"), LimitWork: b.nonneg(r.LimitWork, "run.limit"), LimitTime: b.nonneg(r.LimitTime, "run.limit"),
 		For: defaultDuration(net), Agree: defaultAgree,
 	}

@@ -241,7 +241,8 @@ type RunOf[V any] struct {
 	For                              V // s
 	Every                            V // s
 	Agree                            V // share
-	Solvers                          []string
+	Solvers                          []string // built-in ones by name; none and no Foreign: all
+	Foreign                          []string // those of plugins
 	Effort                           Effort
 	LimitMemory                      V // bytes; 0: default
 	LimitWork                        V // cell-steps; 0: default

@@ -232,6 +232,7 @@ type SolverRow struct {
 	Cells          *int     `json:"cells"`
 	Steps          *int     `json:"steps"`
 	Levels         []int    `json:"levels"`
+	SHA256         *string  `json:"sha256"` // of a plugin's file; null: built in
 	ReasonIfAbsent *string  `json:"reason_if_absent"`
 	Notes          []string `json:"notes"`
 }

@@ -78,7 +78,7 @@ func (a *App) load(command string, in Input) (*loaded, error) {
 	if in.File == "-" {
 		l.head.Scenario.File = stdinName
 	}
-	l.compiled = dsl.Compile(fsys, name, dsl.Options{Set: in.Set})
+	l.compiled = dsl.Compile(fsys, name, dsl.Options{Set: in.Set, Plugins: installed()})
 	l.note(l.compiled.Diagnostics)
 	if len(l.compiled.Sources) > 0 {
 		sum := sha256.Sum256([]byte(l.compiled.Sources[0].File.Text()))

@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"io"
 	"time"
 
 	"github.com/tautspan/tautspan/dsl/diag"
@@ -18,9 +19,11 @@ import (
 // RunWant is what a run is asked beside the scenario.
 type RunWant struct {
 	Solvers  []string // names; none: as the scenario says, else all
+	Apart    bool     // built-in solvers in processes of their own
 	Out      string   // result folder; "": beside the scenario; "none": no folder
 	Force    bool     // replace whatever stands there
 	Progress func(Progress)
+	Log      io.Writer // what plugins write; nil: dropped
 }
 
 // Progress tells how far one solution is.
@@ -42,6 +45,7 @@ type runner struct {
 	*loaded
 	want      RunWant
 	file      string
+	solvers   *solverSet
 	session   *measure.Session
 	outcome   *compare.Outcome
 	answers   *measure.Answers
@@ -64,7 +68,7 @@ func (a *App) Run(ctx context.Context, in Input, want RunWant) (*RunDoc, []Histo
 	l.bind()
 	l.needLine()
 	r := &runner{loaded: l, want: want, file: l.head.Scenario.File, started: now(), doc: emptyRun()}
-	solvers, err := chosen(r.solverNames())
+	wanted, err := r.solverWant()
 	if err != nil {
 		l.note(diag.List{{Code: "unknown-solver", Span: diag.Span{File: diag.NewFile("command line", "")}, Summary: err.Error()}})
 	}
@@ -77,7 +81,9 @@ func (a *App) Run(ctx context.Context, in Input, want RunWant) (*RunDoc, []Histo
 		r.doc.Head = l.head
 		return r.doc, nil, BadInput, nil
 	}
-	status, err := r.solve(ctx, solvers)
+	r.solvers = chosen(ctx, wanted)
+	defer r.solvers.close()
+	status, err := r.solve(ctx, r.solvers.list)
 	if err != nil {
 		return nil, nil, status, err
 	}
@@ -91,11 +97,17 @@ func emptyRun() *RunDoc {
 	}
 }
 
-func (r *runner) solverNames() []string {
-	if len(r.want.Solvers) > 0 || r.net == nil {
-		return r.want.Solvers
+// solverWant is which solvers run: those of the command line, else those of the
+// scenario.
+func (r *runner) solverWant() (solverWant, error) {
+	w := solverWant{apart: r.want.Apart, log: r.want.Log}
+	if len(r.want.Solvers) > 0 {
+		return w, w.named(r.want.Solvers)
 	}
-	return r.net.Run.Solvers
+	if r.net != nil {
+		w.builtin, w.foreign = r.net.Run.Solvers, r.net.Run.Foreign
+	}
+	return w, nil
 }
 
 // prepare looks at the result folder's place and sets up the questions, before

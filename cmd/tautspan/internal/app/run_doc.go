@@ -48,6 +48,9 @@ func (r *runner) voices() {
 	for i := range r.outcome.Voices {
 		v := &r.outcome.Voices[i]
 		row := SolverRow{Name: v.Name, Version: v.Version, Levels: []int{}, Notes: append([]string{}, v.Notes...)}
+		if sum, foreign := r.solvers.checksums[v.Name]; foreign {
+			row.SHA256 = &sum
+		}
 		if !v.Usable() {
 			reason := v.Reason()
 			row.ReasonIfAbsent = &reason

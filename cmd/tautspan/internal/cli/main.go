@@ -45,6 +45,8 @@ type grammar struct {
 	Run       runCmd       `cmd:"" help:"Solve with every solver that can, hold them against one another, judge the requirements."`
 	Stock     stockCmd     `cmd:"" help:"The built-in stock with its sources."`
 	Why       whyCmd       `cmd:"" help:"Explain a diagnostic by its code; 'why scope' says what this program does not answer."`
+	Plugins   pluginsCmd   `cmd:"" help:"Solvers, loads and laws of others: what is installed and trusted."`
+	Serve     serveCmd     `cmd:"" name:"plugin-serve" hidden:"" help:"Serve a built-in solver to this program."`
 	Scenarios scenariosCmd `cmd:"" help:"List the shipped scenarios, or write one out to start from."`
 }
 
@@ -53,6 +55,7 @@ type common struct {
 	JSON     bool              `name:"json" help:"One JSON document on standard output and nothing else."`
 	Set      map[string]string `name:"set" mapsep:"none" placeholder:"NAME=QUANTITY" help:"Give a let another value; repeatable."`
 	Units    string            `enum:"si,us" default:"si" help:"Units of what people read: si or us. JSON stays SI."`
+	Apart    bool              `help:"Built-in solvers in processes of their own; the same answers."`
 	Quiet    bool              `short:"q" help:"Only the answer: no progress, no pictures, no cautions."`
 	LogLevel string            `enum:"debug,info,warn,error,off" default:"warn" help:"How much of the log goes to standard error."`
 	LogJSON  bool              `name:"log-json" help:"The log as one JSON object a line."`
@@ -118,6 +121,12 @@ func run(ctx context.Context, args []string, s Streams) int {
 		return exitDone
 	case errors.As(err, &code):
 		return int(code)
+	}
+	if session.JSON {
+		command, _, _ := strings.Cut(kctx.Command(), " ")
+		if werr := writeJSON(s.Out, app.FailedHead(command, err)); werr != nil {
+			fmt.Fprintf(s.Err, "tautspan: %v\n", werr)
+		}
 	}
 	fmt.Fprintf(s.Err, "tautspan: %v\n", err)
 	return exitOutside

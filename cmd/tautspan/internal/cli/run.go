@@ -27,7 +27,7 @@ type runCmd struct {
 func (c *runCmd) Run(s *session) error {
 	log := s.logger()
 	bars := newBars(s)
-	want := app.RunWant{Solvers: c.Solver, Out: c.Out, Force: c.Force, Progress: func(p app.Progress) {
+	want := app.RunWant{Apart: s.Apart, Log: pluginLog{log}, Solvers: c.Solver, Out: c.Out, Force: c.Force, Progress: func(p app.Progress) {
 		bars.tell(p)
 		if p.Share >= 1 {
 			log.Info().Str("solver", p.Solver).Int("level", p.Level).Msg("solved")
