@@ -40,7 +40,7 @@ func (r *resolver) resolveExcite(e *syntax.Excite) {
 	case *syntax.Roll:
 		r.roll(a, name, path)
 	case *syntax.Load:
-		r.notYet(a.Span, "a load from a plugin", "")
+		r.pluginLoad(a, name, path)
 	}
 }
 

@@ -116,6 +116,12 @@ Modes, fronts and returns are counted 1, 2, 3, ...; the number is written out, s
 This measure is taken of what a watch records, written WATCH.QUANTITY, such as mid.displacement.`,
 	"unknown-word": `
 In this place only certain words may stand, and this is none of them.`,
+	"missing-parameter": `
+A plugin's load or law takes its parameters by name, each with its unit, in brackets behind its name.
+Those without a preset must be said. 'tautspan plugins show NAME' lists them.`,
+	"unknown-parameter": `
+The plugin takes no parameter of that name. 'tautspan plugins show NAME' lists what it takes, with
+units, ranges and presets.`,
 	"unknown-plugin": `
 A name in quotes behind solvers, load or law is that of a plugin, and none of that name and kind is
 installed. Nothing is found by accident: 'tautspan plugins add PATH' looks at a plugin and records the

@@ -24,44 +24,6 @@ type Options struct {
 	Plugins []Plugin
 }
 
-// Plugin is what the language must know of one.
-type Plugin struct {
-	Name, Kind string // Kind: solver, load or law
-	Parameters []Parameter
-	Body       string // of a law: its statement's body, without takes
-}
-
-// Parameter is a number that a load or a law takes.
-type Parameter struct {
-	Name, Unit          string  // "1" for a pure number
-	Least, Most, Preset float64 // in the unit; both bounds 0: any
-	HasPreset           bool
-}
-
-// plugin finds an installed plugin, or says that there is none.
-func (r *resolver) plugin(at diag.Span, name, kind string) (*Plugin, bool) {
-	var known []string
-	for i := range r.opts.Plugins {
-		p := &r.opts.Plugins[i]
-		if p.Name == name && p.Kind == kind {
-			return p, true
-		}
-		if p.Kind == kind {
-			known = append(known, p.Name)
-		}
-		if p.Name == name {
-			r.errorAt(at, "unknown-plugin", name+" is a plugin, but a "+p.Kind+" and not a "+kind, "", "")
-			return nil, false
-		}
-	}
-	mend := diag.Nearest(name, known)
-	if mend != "" {
-		mend = `"` + mend + `"`
-	}
-	r.errorAt(at, "unknown-plugin", "no "+kind+" called "+name+" is installed", "`tautspan plugins list` shows what is", mend)
-	return nil, false
-}
-
 // builtinSolvers are the solvers that a run may name without quotes.
 var builtinSolvers = []string{"differences", "spectral", "characteristic"}
 

@@ -21,6 +21,8 @@ type Options struct {
 	RunSamples   int    // where first order fails and a run is needed; 0: 100
 	Seed         uint64 // of samples
 	Sample       bool   // sample every answer
+	// WorkOut turns loads of plugins into forces; nil: there are none.
+	WorkOut func(*scenario.Network) error
 }
 
 // Session is one scenario with its questions.
@@ -137,6 +139,11 @@ func (s *Session) build(values []float64) (*Point, error) {
 	net, err := s.template.Bind(values)
 	if err != nil {
 		return nil, err
+	}
+	if s.options.WorkOut != nil {
+		if err := s.options.WorkOut(net); err != nil {
+			return nil, err
+		}
 	}
 	m, err := mesh.Build(net)
 	if err != nil {

@@ -27,7 +27,11 @@ func (b *builder) loads() error {
 		b.push(p.Name, p.At, p.Force)
 	}
 	for _, p := range b.net.Presses {
-		b.m.Presses = append(b.m.Presses, Press{Name: p.Name, Parts: b.along(p.Along), Force: p.Force})
+		parts := b.along(p.Along)
+		if p.To > 0 {
+			parts = b.clip(parts, p.From, p.To)
+		}
+		b.m.Presses = append(b.m.Presses, Press{Name: p.Name, Parts: parts, Force: p.Force})
 	}
 	for _, r := range b.net.Rolls {
 		from := b.net.Travel(r.From)
@@ -35,6 +39,27 @@ func (b *builder) loads() error {
 		b.m.Rolls = append(b.m.Rolls, Roll{Name: r.Name, Line: r.Line, Speed: r.Speed, Force: r.Force, From: from, Starting: r.Starting})
 	}
 	return b.moves()
+}
+
+// clip keeps what of the parts of a stretch lies between two places on its own x
+// axis, and marks the edges.
+func (b *builder) clip(parts []Part, from, to float64) []Part {
+	first := parts[0].Origin
+	var out []Part
+	for _, q := range parts {
+		length := b.m.Pieces[q.Piece].Length
+		q.From, q.To = math.Max(0, from-(q.Origin-first)), math.Min(length, to-(q.Origin-first))
+		if q.From >= q.To {
+			continue
+		}
+		for _, at := range []float64{q.From, q.To} {
+			if at > 0 && at < length {
+				b.mark(Spot{Node: -1, Piece: q.Piece, At: at}, MarkEdge)
+			}
+		}
+		out = append(out, q)
+	}
+	return out
 }
 
 // finiteHistories refuses a history that has no finite value somewhere in the

@@ -291,6 +291,17 @@ func (b *binder) excitations(net *Network, m *ModelOf[formula.Program]) {
 	for _, mv := range m.Moves {
 		net.Moves = append(net.Moves, MoveOf[float64]{Name: mv.Name, Line: mv.Line, Node: mv.Node, Kind: mv.Kind, Motion: b.history(mv.Motion, "excite."+mv.Name+".with")})
 	}
+	for _, l := range m.Loads {
+		path := "excite." + l.Name
+		out := LoadOf[float64]{Name: l.Name, Plugin: l.Plugin, Along: l.Along, Span: l.Span}
+		if !l.Along {
+			out.At = b.place(net, l.At, path+".at")
+		}
+		for _, p := range l.Parameters {
+			out.Parameters = append(out.Parameters, ParameterOf[float64]{Name: p.Name, Value: b.num(p.Value, path+"."+p.Name), Factor: p.Factor})
+		}
+		net.Loads = append(net.Loads, out)
+	}
 	for _, r := range m.Rolls {
 		path := "excite." + r.Name
 		net.Rolls = append(net.Rolls, RollOf[float64]{

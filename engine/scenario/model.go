@@ -12,6 +12,7 @@ type ModelOf[V any] struct {
 	Presses []PressOf[V]
 	Moves   []MoveOf[V]
 	Rolls   []RollOf[V]
+	Loads   []LoadOf[V]
 	Watches []WatchOf[V]
 	Run     RunOf[V]
 }
@@ -148,6 +149,9 @@ type PressOf[V any] struct {
 	Name  string
 	Along SpanOf
 	Force HistoryOf[V]
+	// From and To, where To is above zero, are the part of the stretch where it
+	// is not nothing, m from the stretch's start.
+	From, To float64
 }
 
 // MotionKind says what a prescribed motion prescribes.
@@ -178,6 +182,25 @@ type RollOf[V any] struct {
 	Force    V // N, positive upward
 	From     PlaceOf[V]
 	Starting V // s
+}
+
+// LoadOf is a load of a plugin, or of the built-in ones, by name. Before a mesh
+// with it is solved it is worked out: turned into pushes or presses.
+type LoadOf[V any] struct {
+	Name       string
+	Plugin     string
+	Parameters []ParameterOf[V]
+	Along      bool
+	At         PlaceOf[V] // of a load at a place
+	Span       SpanOf     // of a load along a stretch
+}
+
+// ParameterOf is a parameter of a plugin. The plugin is told Value/Factor: the
+// number in the unit that it asked for.
+type ParameterOf[V any] struct {
+	Name   string
+	Value  V // SI
+	Factor float64
 }
 
 // Quantity is what a watch records.
@@ -238,9 +261,9 @@ const (
 // is told by its Given flag; Bind puts a sensible value in its place.
 type RunOf[V any] struct {
 	ForGiven, EveryGiven, AgreeGiven bool
-	For                              V // s
-	Every                            V // s
-	Agree                            V // share
+	For                              V        // s
+	Every                            V        // s
+	Agree                            V        // share
 	Solvers                          []string // built-in ones by name; none and no Foreign: all
 	Foreign                          []string // those of plugins
 	Effort                           Effort

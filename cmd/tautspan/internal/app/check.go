@@ -1,10 +1,12 @@
 package app
 
 import (
+	"context"
 	"math"
 
 	"github.com/tautspan/tautspan/dsl/diag"
 	"github.com/tautspan/tautspan/dsl/unit"
+	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/modal"
 	"github.com/tautspan/tautspan/engine/scenario"
 	"github.com/tautspan/tautspan/engine/solver"
@@ -21,6 +23,9 @@ func (a *App) Check(in Input) (*CheckDoc, Status, error) {
 		return nil, Outside, err
 	}
 	l.bind()
+	if !l.failed() && l.net != nil {
+		l.tryLoads()
+	}
 	doc := &CheckDoc{Solvers: []SolverCan{}, Lines: []LineFacts{}, Lets: []LetFacts{}, Plucks: []PluckFacts{}, Cautions: []CautionNote{}}
 	if !l.failed() && l.net != nil {
 		l.facts(doc)
@@ -212,4 +217,25 @@ func finite(v float64) *float64 {
 		return nil
 	}
 	return &v
+}
+
+// tryLoads works out the loads of plugins, so that what they refuse is said here.
+func (l *loaded) tryLoads() {
+	if len(l.net.Loads) == 0 {
+		return
+	}
+	var set loadSet
+	defer set.close()
+	net := *l.net
+	net.Loads = append([]scenario.LoadOf[float64](nil), l.net.Loads...)
+	if err := set.workOut(context.Background())(&net); err != nil {
+		l.refuse(err)
+		return
+	}
+	m, err := mesh.Build(&net)
+	if err != nil {
+		l.refuse(err)
+		return
+	}
+	l.net, l.mesh = &net, m
 }

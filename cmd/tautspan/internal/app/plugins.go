@@ -12,6 +12,7 @@ import (
 	"github.com/tautspan/tautspan/dsl/diag"
 	"github.com/tautspan/tautspan/plugins/author"
 	"github.com/tautspan/tautspan/plugins/host"
+	"github.com/tautspan/tautspan/plugins/loads"
 	"github.com/tautspan/tautspan/plugins/tryout"
 )
 
@@ -71,23 +72,46 @@ func pluginStore() (host.Store, error) {
 // cannot be read is as good as none here: a scenario that names a plugin is then
 // refused, and `plugins list` says why.
 func installed() []dsl.Plugin {
+	var out []dsl.Plugin
+	for _, l := range loads.BuiltIn() {
+		about := l.About()
+		out = append(out, languageOf(&about, "load"))
+	}
 	store, err := pluginStore()
 	if err != nil {
-		return nil
+		return out
 	}
 	all, err := store.List()
 	if err != nil {
-		return nil
+		return out
 	}
-	var out []dsl.Plugin
-	for _, t := range all {
-		p := dsl.Plugin{Name: t.About.Name, Kind: t.Kind}
-		for _, q := range t.About.Parameters {
-			p.Parameters = append(p.Parameters, dsl.Parameter{Name: q.Name, Unit: q.Unit, Least: q.Least, Most: q.Most, Preset: q.Preset, HasPreset: q.HasPreset})
-		}
-		out = append(out, p)
+	for i := range all {
+		out = append(out, languageOf(&all[i].About, all[i].Kind))
 	}
 	return out
+}
+
+func languageOf(a *author.About, kind string) dsl.Plugin {
+	p := dsl.Plugin{Name: a.Name, Kind: kind}
+	for _, q := range a.Parameters {
+		p.Parameters = append(p.Parameters, dsl.Parameter{Name: q.Name, Unit: q.Unit, Least: q.Least, Most: q.Most, Preset: q.Preset, HasPreset: q.HasPreset})
+	}
+	return p
+}
+
+// builtInName tells whether a name is taken by something built in.
+func builtInName(name string) bool {
+	for _, s := range builtin() {
+		if s.Name() == name {
+			return true
+		}
+	}
+	for _, l := range loads.BuiltIn() {
+		if l.About().Name == name {
+			return true
+		}
+	}
+	return false
 }
 
 // startTrusted starts a trusted plugin, if its file is still the one that was
@@ -154,6 +178,12 @@ func (a *App) PluginsList() (*PluginsDoc, Status, error) {
 	for _, s := range builtin() {
 		doc.Plugins = append(doc.Plugins, PluginRow{Name: s.Name(), Kind: "solver", Version: s.Version(), BuiltIn: true, Says: "built in", Cannot: []string{}, Parameters: []PluginNumber{}})
 	}
+	for _, l := range loads.BuiltIn() {
+		about := l.About()
+		row := aboutRow(&about, "load")
+		row.BuiltIn = true
+		doc.Plugins = append(doc.Plugins, row)
+	}
 	all, err := store.List()
 	if err != nil {
 		return nil, Outside, err
@@ -182,10 +212,8 @@ func (a *App) PluginsAdd(ctx context.Context, path string) (*PluginsDoc, Status,
 		return nil, Outside, err
 	}
 	defer p.Close()
-	for _, s := range builtin() {
-		if s.Name() == p.About.Name {
-			return nil, Outside, fmt.Errorf("the plugin calls itself %s, which is a built-in solver's name", p.About.Name)
-		}
+	if builtInName(p.About.Name) {
+		return nil, Outside, fmt.Errorf("the plugin calls itself %s, which is a built-in one's name", p.About.Name)
 	}
 	t := host.Trusted{Kind: p.Kind, Path: path, SHA256: sum, Added: host.Now(), About: p.About}
 	if err := store.Put(t); err != nil {
@@ -226,6 +254,14 @@ func (a *App) PluginsShow(name string) (*PluginsDoc, Status, error) {
 	if err != nil {
 		return nil, Outside, err
 	}
+	for _, l := range loads.BuiltIn() {
+		if about := l.About(); about.Name == name {
+			row := aboutRow(&about, "load")
+			row.BuiltIn = true
+			doc.Plugins = append(doc.Plugins, row)
+			return doc, Done, nil
+		}
+	}
 	t, found, err := store.Find(name)
 	switch {
 	case err != nil:
@@ -247,6 +283,12 @@ func (a *App) PluginsTry(ctx context.Context, name string, log io.Writer) (*Plug
 	for _, s := range builtin() {
 		if s.Name() == name {
 			doc.Checks = tryout.Solver(ctx, s)
+			return doc, tried(doc.Checks), ctx.Err()
+		}
+	}
+	for _, l := range loads.BuiltIn() {
+		if l.About().Name == name {
+			doc.Checks = tryout.Load(ctx, l)
 			return doc, tried(doc.Checks), ctx.Err()
 		}
 	}

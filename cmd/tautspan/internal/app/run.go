@@ -46,6 +46,7 @@ type runner struct {
 	want      RunWant
 	file      string
 	solvers   *solverSet
+	loads     loadSet
 	session   *measure.Session
 	outcome   *compare.Outcome
 	answers   *measure.Answers
@@ -72,8 +73,10 @@ func (a *App) Run(ctx context.Context, in Input, want RunWant) (*RunDoc, []Histo
 	if err != nil {
 		l.note(diag.List{{Code: "unknown-solver", Span: diag.Span{File: diag.NewFile("command line", "")}, Summary: err.Error()}})
 	}
+	defer r.loads.close()
 	if !l.failed() {
-		if err := r.prepare(); err != nil {
+		r.loads.log = want.Log
+		if err := r.prepare(ctx); err != nil {
 			return nil, nil, Outside, err
 		}
 	}
@@ -112,7 +115,7 @@ func (r *runner) solverWant() (solverWant, error) {
 
 // prepare looks at the result folder's place and sets up the questions, before
 // anything is computed.
-func (r *runner) prepare() error {
+func (r *runner) prepare(ctx context.Context) error {
 	if r.want.Out != noFolder {
 		r.dir = r.want.Out
 		if r.dir == "" {
@@ -129,7 +132,7 @@ func (r *runner) prepare() error {
 	if r.still() {
 		r.warn("nothing-happens", "nothing happens to the line, so every record is zero; say an excitation")
 	}
-	r.session, err = measure.New(&t, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples, RunSamples: noSamples})
+	r.session, err = measure.New(&t, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples, RunSamples: noSamples, WorkOut: r.loads.workOut(ctx)})
 	if err != nil {
 		r.refuse(err)
 	}
@@ -139,7 +142,7 @@ func (r *runner) prepare() error {
 // still tells whether records are asked for and nothing moves the line.
 func (r *runner) still() bool {
 	n := r.net
-	return len(n.Watches) > 0 && len(n.Plucks)+len(n.Starts)+len(n.Pushes)+len(n.Presses)+len(n.Moves)+len(n.Rolls) == 0
+	return len(n.Watches) > 0 && len(n.Plucks)+len(n.Starts)+len(n.Pushes)+len(n.Presses)+len(n.Moves)+len(n.Rolls)+len(n.Loads) == 0
 }
 
 // noSamples keeps records from being drawn over the doubtful inputs: a run for
