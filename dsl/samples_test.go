@@ -74,10 +74,11 @@ func TestGrammarSamples(t *testing.T) {
 	if len(all.list) < 50 || len(all.frames) < 5 {
 		t.Fatalf("%d samples in %d frames", len(all.list), len(all.frames))
 	}
+	installed := Options{Plugins: []Plugin{{Name: "gusty wind", Kind: "load", Parameters: []Parameter{{Name: "speed", Unit: "m/s"}}}}}
 	for _, s := range all.list {
 		all.files["case.taut"] = &fstest.MapFile{Data: []byte(hole.ReplaceAllLiteralString(all.frames[s.frame], strings.TrimSuffix(s.text, "\n")))}
 		found := false
-		for _, d := range Compile(all.files, "case.taut", Options{}).Diagnostics.Errors() {
+		for _, d := range Compile(all.files, "case.taut", installed).Diagnostics.Errors() {
 			found = found || d.Code == s.wrong
 			if s.wrong == "" && d.Code != "not-yet" {
 				t.Errorf("%s: a right sample raises\n%s", s.production, d.Text())
