@@ -51,7 +51,10 @@ func Compile(fsys fs.FS, name string, opts Options) *Compiled {
 func (c *Compiled) bindOnce() {
 	values, err := c.Template.Values(nil)
 	if err == nil {
-		_, err = c.Template.Bind(values)
+		var net *scenario.Network
+		if net, err = c.Template.Bind(values); err == nil {
+			_, err = c.Template.BindReadings(net)
+		}
 	}
 	if err != nil {
 		c.Diagnostics.Add(c.Diagnose(err))

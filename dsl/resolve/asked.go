@@ -23,6 +23,7 @@ func (r *resolver) resolveAsked() {
 		}
 	}
 	r.resolveLater()
+	r.resolveSurvey()
 }
 
 // writtenUnit is the unit of the first of the limits that is a plain quantity:

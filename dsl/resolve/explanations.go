@@ -22,6 +22,8 @@ The language can say this, and this version cannot compute it. It is refused rat
 The hint names a way around it where there is one.`,
 	"not-answered-yet": `
 The statement is read and checked for names and dimensions. No command of this version answers it; the message names the one that will. It changes nothing in the answers of other commands.`,
+	"reading-without-doubt": `
+A fit weighs each reading by its doubt. Where none is said, one that is wide for the trade stands in its place, and the message says which: 0.5 % of a frequency, 0.2 s for a stopwatch in the hand, 10 % of a damping ratio (common practice, no source). Say the doubt of the reading, and the interval of the answer becomes one that can be defended.`,
 	"unknown-name": `
 Nothing in the scenario, nor in the files that it uses, has this name, or what has it is of another kind. Names differ by capitals. The order of statements does not matter.
 

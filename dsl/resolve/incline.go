@@ -232,7 +232,11 @@ func (r *resolver) segmentEnds(s *scenario.SegmentOf[formula.Program]) (low, hig
 
 // lineSag gives a line its sag term where it is asked for and can be had.
 func (r *resolver) lineSag(e *lineEntry, line *scenario.LineOf[formula.Program]) {
-	if e.sag.IsZero() || e.sideways {
+	if e.sag.IsZero() {
+		return
+	}
+	if e.sideways {
+		e.sags = sagsElsewhere(line, r) && !e.weighted
 		return
 	}
 	for i := range line.Segments {
@@ -250,5 +254,16 @@ func (r *resolver) lineSag(e *lineEntry, line *scenario.LineOf[formula.Program])
 		r.warnAt(e.sag, "no-effect", "sag has no effect on this line", "a weighted end keeps its tension as it is", "")
 		return
 	}
-	line.Sag = true
+	line.Sag, e.sags = true, true
+}
+
+// sagsElsewhere tells whether a line that is looked at sideways can have the sag
+// term for what is read in its vertical plane.
+func sagsElsewhere(line *scenario.LineOf[formula.Program], r *resolver) bool {
+	for i := range line.Segments {
+		if r.num(line.Segments[i].Axial) <= 0 || i > 0 && line.Nodes[i].Holds {
+			return false
+		}
+	}
+	return true
 }

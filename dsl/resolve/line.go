@@ -26,6 +26,7 @@ type lineEntry struct {
 	bad      bool
 	sideways bool
 	sag      diag.Span         // of `sag included`, zero where it is not said
+	sags     bool              // the sag term counts for what is read in the vertical plane
 	weighted bool              // an end keeps the tension constant
 	incline  *formula.Program  // nil for a level line
 	nodes    map[int]nodeWords // what each support and joint says, by node

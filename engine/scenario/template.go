@@ -12,6 +12,11 @@ type Template struct {
 
 	Requires []Require
 	Collects []Collect
+
+	Readings []ReadingOf[formula.Program]
+	Records  []Record
+	Seeks    []Seek
+	Fit      *Fit // nil where the scenario has none
 }
 
 // Pair is one entry of an about block.

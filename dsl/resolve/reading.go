@@ -1,0 +1,428 @@
+package resolve
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"github.com/tautspan/tautspan/dsl/diag"
+	"github.com/tautspan/tautspan/dsl/syntax"
+	"github.com/tautspan/tautspan/dsl/unit"
+	"github.com/tautspan/tautspan/engine/formula"
+	"github.com/tautspan/tautspan/engine/scenario"
+)
+
+// resolveSurvey compiles what was read at the site and what is sought in it:
+// readings and records first, since a fit names them.
+func (r *resolver) resolveSurvey() {
+	for _, s := range r.statements {
+		switch s := s.(type) {
+		case *syntax.Record:
+			r.record(s)
+		case *syntax.Reading:
+			r.reading(s)
+		}
+	}
+	var before diag.Span
+	for _, s := range r.statements {
+		switch s := s.(type) {
+		case *syntax.Seek:
+			r.seek(s)
+		case *syntax.Fit:
+			if !before.IsZero() {
+				r.errorAt(firstWord(s.Span), "said-twice", "a scenario has one fit", "", "", related(before, "first said here"))
+				continue
+			}
+			before = firstWord(s.Span)
+			r.path("fit", before)
+			r.fit(s)
+		}
+	}
+}
+
+// readingKinds are the kinds of what a reading says, with what it measures.
+var readingKinds = map[string]struct {
+	kind scenario.ReadingKind
+	of   unit.Kind
+}{
+	"frequency": {scenario.FrequencyReading, unit.Frequency}, "peaks": {scenario.PeaksReading, unit.Frequency}, "returns": {scenario.ReturnsReading, unit.Time},
+	"swings": {scenario.SwingsReading, unit.Time}, "decay": {scenario.DecayReading, unit.Share},
+}
+
+// mostPeaks is the most values of one peaks statement. Chosen: a spectrum has
+// fewer that anybody could name.
+const mostPeaks = 200
+
+// reading compiles a block of readings.
+func (r *resolver) reading(s *syntax.Reading) {
+	el, ok := r.find(s.Of, "a reading")
+	if ok && el.kind != lineKind {
+		r.errorAt(s.Of.Span, "wrong-place", "a reading is of a line", clip(s.Of)+" is "+article(el.kind), "")
+		ok = false
+	}
+	out := scenario.ReadingOf[formula.Program]{Name: s.Name.Text, Line: el.line, About: abouts(s.Abouts)}
+	r.path("reading."+out.Name, s.Name.Span)
+	var line *lineEntry
+	if ok {
+		line = r.lineOrder[el.line]
+	}
+	for i := range s.Items {
+		item, good := r.readingItem(&s.Items[i], line)
+		r.path(fmt.Sprintf("reading.%s.%d", out.Name, len(out.Items)), s.Items[i].Span)
+		out.Items = append(out.Items, item)
+		ok = ok && good
+	}
+	if ok {
+		r.tmpl.Readings = append(r.tmpl.Readings, out)
+	} else {
+		r.broken[s.Name.Text] = true
+	}
+}
+
+func abouts(list []*syntax.About) []scenario.Pair {
+	var out []scenario.Pair
+	for _, a := range list {
+		for _, e := range a.Entries {
+			out = append(out, scenario.Pair{Key: e.Key.Text, Text: e.Text.Text})
+		}
+	}
+	return out
+}
+
+// readingItem compiles one statement of a reading; line is nil where the line
+// is not known.
+func (r *resolver) readingItem(it *syntax.ReadingItem, line *lineEntry) (scenario.ReadingItemOf[formula.Program], bool) {
+	out := scenario.ReadingItemOf[formula.Program]{Source: flat(it)}
+	k, ok := readingKinds[it.Word.Text]
+	if !ok {
+		return out, false
+	}
+	out.Kind = k.kind
+	if it.Order != nil {
+		out.Order, ok = r.order(it.Order, "a "+map[bool]string{true: "mode", false: "return or swing"}[k.of != unit.Time])
+	}
+	if len(it.Values) > mostPeaks {
+		r.errorAt(it.Span, "too-many", fmt.Sprintf("one statement takes at most %d peaks", mostPeaks), "", "")
+		return out, false
+	}
+	sc := *plain
+	sc.shared = syntax.SharedUnit(it.Values...)
+	for _, e := range it.Values {
+		v := r.inRange(r.check(r.compile(e, &sc), e, k.of, it.Word.Text), e, positive, it.Word.Text)
+		if v.bad {
+			ok = false
+			continue
+		}
+		u, good := r.readingDoubt(it, e, v, &out)
+		ok = ok && good
+		out.Values, out.U = append(out.Values, v.prog), append(out.U, u)
+	}
+	if ok && out.Assumed != "" {
+		r.warnAt(it.Span, "reading-without-doubt", "this reading says no doubt", "it is weighed with "+out.Assumed, "")
+	}
+	if it.Shared != nil && ok && len(it.Values) == 1 {
+		v := value{prog: out.Values[0], dim: k.of.Dim, percent: k.of == unit.Share}
+		d, good := r.doubt(it.Shared, v)
+		if ok = good; ok {
+			out.Shared = d.StandardU
+		}
+	} else if it.Shared != nil && len(it.Values) > 1 {
+		r.errorAt(it.Shared.Span, "misplaced", "a shared doubt stands behind one value", "these are several", "")
+		ok = false
+	}
+	r.readingPlane(it, line, &out)
+	return out, r.readingWhere(it.Where, line, &out) && ok
+}
+
+// readingPlane settles the plane that was read, which is that of the line where
+// none is said, and whether the sag term counts in it.
+func (r *resolver) readingPlane(it *syntax.ReadingItem, line *lineEntry, out *scenario.ReadingItemOf[formula.Program]) {
+	if line == nil {
+		return
+	}
+	out.Sideways = line.sideways
+	if it.Plane.Text != "" {
+		out.Sideways = it.Plane.Text == "sideways"
+	}
+	out.Sag = !out.Sideways && line.sags
+}
+
+// readingDoubt is the standard uncertainty of one value of a reading.
+func (r *resolver) readingDoubt(it *syntax.ReadingItem, e syntax.Expr, v value, out *scenario.ReadingItemOf[formula.Program]) (formula.Program, bool) {
+	if it.Doubt == nil {
+		u, words := assumed(out.Kind, v.prog)
+		out.Assumed = words
+		return u, true
+	}
+	d, ok := r.doubt(it.Doubt, v)
+	if !ok {
+		return formula.Program{}, false
+	}
+	if r.num(d.StandardU) <= 0 {
+		r.errorAt(it.Doubt.Span, "not-positive", "a reading has some doubt", "one without cannot be weighed against others", "")
+		return formula.Program{}, false
+	}
+	return d.StandardU, true
+}
+
+// assumed is the standard uncertainty that stands for a doubt that was not said,
+// wide enough that such a reading does not outweigh one with a doubt. Common
+// practice, no source: half a per cent of a frequency, 0.2 s for a stopwatch in
+// the hand, a tenth of a damping ratio.
+func assumed(kind scenario.ReadingKind, v formula.Program) (formula.Program, string) {
+	switch kind {
+	case scenario.FrequencyReading, scenario.PeaksReading:
+		return formula.Mul(formula.Const(0.005), v), "a standard uncertainty of 0.5 %, as for a peak read off a spectrum"
+	case scenario.DecayReading:
+		return formula.Mul(formula.Const(0.1), v), "a standard uncertainty of 10 % of it"
+	}
+	return formula.Const(0.2), "a standard uncertainty of 0.2 s, as for a stopwatch in the hand"
+}
+
+// readingWhere tells temperatures from places.
+func (r *resolver) readingWhere(list []syntax.AtPart, line *lineEntry, out *scenario.ReadingItemOf[formula.Program]) bool {
+	ok := true
+	for _, w := range list {
+		var temperature value
+		switch {
+		case w.Value != nil:
+			temperature = r.want(w.Value, plain, unit.Temperature, "a temperature")
+		case w.Spot != nil:
+			name, plainName := w.Spot.Name.Plain()
+			e, isLet := r.lets[name]
+			if !plainName || w.Spot.Offset != nil || !isLet || len(r.elements[name]) > 0 {
+				p, good := r.place(w.Spot, "a reading")
+				if good && line != nil && p.Line != line.index {
+					r.errorAt(w.Span, "wrong-place", "a reading is taken at a place of its own line", "this one is of "+line.name, "")
+					good = false
+				}
+				out.HasPlace, out.Place = good, p
+				ok = ok && good
+				continue
+			}
+			temperature = r.check(e.val, w.Spot.Name, unit.Temperature, "a temperature")
+		}
+		if temperature.bad {
+			ok = false
+			continue
+		}
+		if out.Warm {
+			r.errorAt(w.Span, "said-twice", "a reading has one temperature", "", "")
+		}
+		out.Warm, out.Temperature = true, temperature.prog
+	}
+	return ok
+}
+
+// seek makes a let unknown.
+func (r *resolver) seek(s *syntax.Seek) {
+	let := r.letNamed(s.Name)
+	what := "the range of " + clip(s.Name)
+	var ends [2]formula.Program
+	for i, e := range []syntax.Expr{s.From, s.To} {
+		v := r.compile(e, plain)
+		if v.bad || let.bad {
+			return
+		}
+		if v = r.inRange(r.check(v, e, same(let.dim), what), e, anything, what); v.bad {
+			return
+		}
+		ends[i] = v.prog
+	}
+	if !(r.num(ends[0]) < r.num(ends[1])) {
+		r.errorAt(s.From.Place().To(s.To.Place()), "empty-range", "a range runs from its lower to its higher end", "", "")
+		return
+	}
+	text, _ := s.Name.Plain()
+	index := r.lets[text].index
+	for _, other := range r.tmpl.Seeks {
+		if other.Let == index {
+			r.errorAt(s.Name.Span, "said-twice", text+" is sought already", "", "")
+			return
+		}
+	}
+	r.path("seek."+text, s.Span)
+	r.tmpl.Seeks = append(r.tmpl.Seeks, scenario.Seek{Let: index, From: ends[0], To: ends[1]})
+}
+
+// fitWords are what a fit can use.
+var fitWords = []string{"frequencies", "peaks", "returns", "swings", "decays", "history"}
+
+var fitKinds = map[string][]scenario.ReadingKind{
+	"frequencies": {scenario.FrequencyReading, scenario.PeaksReading}, "peaks": {scenario.PeaksReading}, "returns": {scenario.ReturnsReading},
+	"swings": {scenario.SwingsReading}, "decays": {scenario.DecayReading}, "history": nil,
+}
+
+// fit compiles what is fitted to what.
+func (r *resolver) fit(s *syntax.Fit) {
+	out := &scenario.Fit{}
+	ok := !s.Incomplete
+	for _, n := range s.To {
+		ok = r.fitTo(n, out) && ok
+	}
+	for _, u := range s.Using {
+		kinds, known := fitKinds[u.What.Text]
+		if !known {
+			r.errorAt(u.What.Span, "unknown-word", "a fit cannot use "+u.What.Text, "", diag.Nearest(u.What.Text, fitWords))
+			ok = false
+			continue
+		}
+		use := scenario.FitUse{Kinds: kinds, History: u.What.Text == "history"}
+		if u.Which != nil {
+			var good bool
+			if use.From, use.To, good = r.orders(u.Which); !good {
+				ok = false
+			}
+		}
+		out.Uses = append(out.Uses, use)
+	}
+	if ok && len(out.Readings)+len(out.Records) == 0 {
+		r.errorAt(firstWord(s.Span), "missing-property", "this fit does not say to what", "", "to NAME")
+		ok = false
+	}
+	if ok {
+		r.tmpl.Fit = out
+	}
+}
+
+// orders reads `1..6` or `3`.
+func (r *resolver) orders(e syntax.Expr) (from, to int, ok bool) {
+	rg, isRange := syntax.Ungroup(e).(*syntax.Range)
+	if !isRange {
+		from, ok = r.order(e, "a mode")
+		return from, from, ok
+	}
+	from, ok1 := r.order(rg.Low, "a mode")
+	to, ok2 := r.order(rg.High, "a mode")
+	if ok1 && ok2 && from > to {
+		r.errorAt(rg.Span, "empty-range", "a range of modes runs upward", "", fmt.Sprintf("%d..%d", to, from))
+		return 0, 0, false
+	}
+	return from, to, ok1 && ok2
+}
+
+// fitTo finds a reading or a record by its name.
+func (r *resolver) fitTo(n *syntax.Name, out *scenario.Fit) bool {
+	text, ok := n.Plain()
+	sym, isTop := r.top[text]
+	switch {
+	case !ok:
+		r.errorAt(n.Span, "unknown-name", "here stands the name of a reading or a record", "", "")
+		return false
+	case r.broken[text]:
+		return false
+	case isTop && sym.kind == "reading":
+		for i := range r.tmpl.Readings {
+			if r.tmpl.Readings[i].Name == text {
+				out.Readings = append(out.Readings, i)
+				return true
+			}
+		}
+		return false
+	case isTop && sym.kind == "record":
+		for i := range r.tmpl.Records {
+			if r.tmpl.Records[i].Name == text {
+				out.Records = append(out.Records, i)
+				return true
+			}
+		}
+		return false
+	case isTop:
+		r.errorAt(n.Span, "unknown-name", fmt.Sprintf("%s is %s, not a reading or a record", text, article(sym.kind)), "", "", related(sym.span, "said here"))
+	default:
+		r.errorAt(n.Span, "unknown-name", "no reading or record is called "+text, "", nearest(r, text, r.top))
+	}
+	return false
+}
+
+// record compiles which file a record is and what its channels saw.
+func (r *resolver) record(s *syntax.Record) {
+	out := scenario.Record{Name: s.Name.Text, Path: s.Path.Text, From: r.pathOf(s.Span.File), About: abouts(s.Abouts)}
+	r.path("record."+out.Name, s.Name.Span)
+	ok := !s.Incomplete
+	for i, t := range s.Times {
+		if i > 0 {
+			r.errorAt(t.Span, "said-twice", "a record has one time column", "", "", related(s.Times[0].Span, "first said here"))
+			ok = false
+		}
+		if t.Unit == nil {
+			continue
+		}
+		u, uok := r.unit(t.Unit, "")
+		if uok && u.Dim != unit.Time.Dim {
+			r.errorAt(t.Unit.Span, "wants-time", "the time column wants a unit of time", "this is "+u.Dim.Name(), "unit s")
+			uok = false
+		}
+		if ok = ok && uok; uok {
+			out.TimeFactor = u.Factor()
+		}
+		var good bool
+		out.Time, out.TimeNumber, good = r.columnOf(t.Column)
+		ok = ok && good
+	}
+	if wav := strings.HasSuffix(strings.ToLower(s.Path.Text), ".wav"); ok && wav && len(s.Times) > 0 {
+		r.errorAt(s.Times[0].Span, "misplaced", "a WAV file has no time column", "its head says how fast it was sampled", "")
+		ok = false
+	} else if ok && !wav && len(s.Times) == 0 {
+		r.errorAt(s.Name.Span, "missing-property", "the record "+out.Name+" does not say which column is the time", "", `time "t" unit s`)
+		ok = false
+	}
+	for i := range s.Channels {
+		c, good := r.recordChannel(&s.Channels[i])
+		if ok = ok && good; good {
+			out.Channels = append(out.Channels, c)
+		}
+	}
+	if ok {
+		r.tmpl.Records = append(r.tmpl.Records, out)
+	} else {
+		r.broken[s.Name.Text] = true
+	}
+}
+
+func (r *resolver) recordChannel(c *syntax.RecordChannel) (scenario.RecordChannel, bool) {
+	m := blank(0, c)
+	ok := c.For != nil && r.watchQuantity(c.For, &m)
+	out := scenario.RecordChannel{Watch: m.Watch, Quantity: m.Quantity}
+	var good bool
+	out.Column, out.Number, good = r.columnOf(c.Column)
+	ok = ok && good
+	if c.Unit == nil {
+		return out, ok
+	}
+	u, uok := r.unit(c.Unit, "")
+	if !ok || !uok {
+		return out, false
+	}
+	if q, err := unit.Parse(m.Quantity.Unit()); err == nil && q.Dim != u.Dim {
+		r.errorAt(c.Unit.Span, "unit-mismatch", fmt.Sprintf("%s is recorded in %s", m.Quantity, m.Quantity.Unit()), "this is "+u.Dim.Name(), "")
+		return out, false
+	}
+	out.Unit, out.Factor = c.Unit.Text, u.Factor()
+	return out, true
+}
+
+// columnOf reads a column by its name or its number from 1.
+func (r *resolver) columnOf(e syntax.Expr) (name string, number int, ok bool) {
+	switch e := e.(type) {
+	case *syntax.String:
+		return e.Text, 0, true
+	case *syntax.Number:
+		if e.Unit != nil || e.Value < 1 || e.Value != math.Trunc(e.Value) || e.Value > 1e6 {
+			r.errorAt(e.Span, "wants-order", "the number of a column counts from 1", "", "")
+			return "", 0, false
+		}
+		return "", int(e.Value), true
+	}
+	return "", 0, false
+}
+
+// pathOf is the path of a file that was read.
+func (r *resolver) pathOf(f *diag.File) string {
+	for _, s := range r.sources {
+		if s.File == f {
+			return s.Path
+		}
+	}
+	return ""
+}
