@@ -126,6 +126,23 @@ func (f *Fit) Takes(kind ReadingKind, mode int) bool {
 	return false
 }
 
+// Orders are the modes to which the uses of a kind are limited; 0, 0: none.
+func (f *Fit) Orders(kind ReadingKind) (from, to int) {
+	for i, u := range f.Uses {
+		if !slices.Contains(u.Kinds, kind) {
+			continue
+		}
+		if u.From == 0 {
+			return 0, 0
+		}
+		if i == 0 || from == 0 {
+			from, to = u.From, u.To
+		}
+		from, to = min(from, u.From), max(to, u.To)
+	}
+	return from, to
+}
+
 // BindReadings gives the readings in numbers for values of the lets and the
 // network that they make. A *PathError names the first number that cannot stand.
 func (t *Template) BindReadings(net *Network) ([]Reading, error) {

@@ -1,0 +1,341 @@
+package fit
+
+import (
+	"fmt"
+	"math"
+	"sort"
+
+	"github.com/tautspan/tautspan/engine/formula"
+	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/modal"
+	"github.com/tautspan/tautspan/engine/scenario"
+	"github.com/tautspan/tautspan/engine/statics"
+)
+
+// config is one way in which lines are looked at: the lines that hang together
+// with the one that is read, in a plane (with or without the sag term), at a
+// temperature, with what is asked of them.
+type config struct {
+	line     int // of the whole template
+	own      int // the same among the lines of part
+	group    int
+	sag      bool
+	sideways bool
+	warm     bool
+	degrees  formula.Program // K, with warm
+	part     *scenario.Template
+	reads    map[int]bool
+
+	modes  int     // highest mode number asked for
+	below  float64 // Hz; peaks up to here are to be paired; 0: none
+	decays bool
+	travel bool // round trips are asked for, of the segments first .. last
+	first  int
+	last   int
+}
+
+// prediction is what a config comes to for one set of lets.
+type prediction struct {
+	frequency []float64 // Hz, by mode number from 1 at [0]
+	damping   []float64
+	trip      float64 // s, one round trip
+	err       error
+}
+
+// config finds or makes the config of a reading's statement.
+func (p *Problem) config(r *scenario.Reading, it *scenario.ReadingItem, path string) (int, error) {
+	first, last, err := p.stretch(r, it, path)
+	if err != nil {
+		return 0, err
+	}
+	for i, c := range p.configs {
+		if c.line == r.Line && c.sag == it.Sag && c.sideways == it.Sideways && c.warm == it.Warm && c.first == first && c.last == last {
+			return i, nil
+		}
+	}
+	c := &config{line: r.Line, sag: it.Sag, sideways: it.Sideways, warm: it.Warm, first: first, last: last, reads: map[int]bool{}}
+	c.cut(p)
+	for _, other := range p.configs {
+		if other.group == c.group {
+			c.group = other.group
+		}
+	}
+	p.configs = append(p.configs, c)
+	return len(p.configs) - 1, nil
+}
+
+// stretch is the part of a line that a pulse runs up and down: between the held
+// places around the one that is said.
+func (p *Problem) stretch(r *scenario.Reading, it *scenario.ReadingItem, path string) (first, last int, err error) {
+	nodes := p.template.Model.Lines[r.Line].Nodes
+	last = len(nodes) - 2
+	inner := false
+	for _, n := range nodes[1 : len(nodes)-1] {
+		inner = inner || n.Fixed
+	}
+	if it.Kind != scenario.ReturnsReading || !inner {
+		return 0, last, nil
+	}
+	at := it.Place.Segment
+	if it.HasPlace && it.Place.Node >= 0 {
+		if at = it.Place.Node; nodes[at].Fixed && at > 0 && at <= last {
+			it.HasPlace = false // at an inner support: which side is not known
+		}
+		at = min(at, last)
+	}
+	if !it.HasPlace {
+		return 0, 0, &Error{Code: "wants-place", Path: path, What: "a joint holds this line between its ends, so that returns say on which side they were timed", Hint: "returns 5 took 4.4 s +- 0.1 s at SEGMENT 2 m"}
+	}
+	first = at
+	for first > 0 && !nodes[first].Fixed {
+		first--
+	}
+	for last = at; !nodes[last+1].Fixed && last < len(nodes)-2; last++ {
+	}
+	return first, last, nil
+}
+
+// need notes what a statement asks of its config.
+func (p *Problem) need(index int, it *scenario.ReadingItem) {
+	c := p.configs[index]
+	switch it.Kind {
+	case scenario.FrequencyReading, scenario.PeaksReading:
+		c.modes = max(c.modes, it.Order)
+		if it.Order == 0 {
+			for _, v := range it.Values {
+				c.below = math.Max(c.below, peakHeadroom*v)
+			}
+		}
+	case scenario.DecayReading:
+		c.modes, c.decays = max(c.modes, it.Order), true
+	case scenario.SwingsReading:
+		c.modes = max(c.modes, 1)
+	case scenario.ReturnsReading:
+		c.travel = true
+	}
+}
+
+// peakHeadroom is how far above the highest peak the model is computed, so that
+// a search that starts too stiff still finds a vibration for it. Chosen: a tenth
+// of frequency is a fifth of tension.
+const peakHeadroom = 1.15
+
+// mostModes bounds the vibrations of one evaluation.
+const mostModes = 120
+
+// cut takes the lines that hang together with the config's line out of the
+// template, with nothing that happens to them.
+func (c *config) cut(p *Problem) {
+	t := p.template
+	n := len(t.Model.Lines)
+	root := make([]int, n)
+	for i := range root {
+		root[i] = i
+	}
+	find := func(i int) int {
+		for root[i] != i {
+			i = root[i]
+		}
+		return i
+	}
+	for _, tie := range t.Model.Ties {
+		a, b := find(tie.From.Line), find(tie.To.Line)
+		root[max(a, b)] = min(a, b)
+	}
+	c.group = find(c.line)
+	index := make([]int, n)
+	part := *t
+	part.Requires, part.Collects, part.Readings = nil, nil, nil
+	part.Model = scenario.ModelOf[formula.Program]{}
+	for i := range t.Model.Lines {
+		index[i] = -1
+		if find(i) != c.group {
+			continue
+		}
+		index[i] = len(part.Model.Lines)
+		l := t.Model.Lines[i]
+		if i == c.line {
+			c.own = index[i]
+			l.Sag = c.sag
+		}
+		lineReads(&l, c.reads)
+		part.Model.Lines = append(part.Model.Lines, l)
+	}
+	for _, tie := range t.Model.Ties {
+		if index[tie.From.Line] < 0 {
+			continue
+		}
+		tie.From.Line, tie.To.Line = index[tie.From.Line], index[tie.To.Line]
+		for _, q := range []formula.Program{tie.Spring, tie.Dashpot, tie.Mass, tie.From.Offset, tie.To.Offset} {
+			q.LetsUsed(c.reads)
+		}
+		part.Model.Ties = append(part.Model.Ties, tie)
+	}
+	for _, w := range t.Model.Watches {
+		if m, fixed := w.Mass.IsConst(); w.Along || fixed && m == 0 || index[w.At.Line] < 0 {
+			continue // only the mass of a sensor rides on the line
+		}
+		w.At.Line = index[w.At.Line]
+		w.Mass.LetsUsed(c.reads)
+		w.At.Offset.LetsUsed(c.reads)
+		part.Model.Watches = append(part.Model.Watches, w)
+	}
+	spread(t, c.reads)
+	c.part = &part
+}
+
+// predict evaluates the config at values of all lets.
+func (c *config) predict(values []float64) prediction {
+	net, err := c.part.Bind(values)
+	if err != nil {
+		return prediction{err: err}
+	}
+	out := prediction{}
+	line := &net.Lines[c.own]
+	if c.travel {
+		between := *line
+		between.Segments = line.Segments[c.first : c.last+1]
+		out.trip = 2 * statics.TravelTime(&between)
+	}
+	if c.modes == 0 && c.below == 0 {
+		return out
+	}
+	if !c.decays {
+		c.lighten(net)
+	}
+	m, err := mesh.Build(net)
+	if err != nil {
+		return prediction{err: err}
+	}
+	out.frequency, out.damping, out.err = c.vibrations(m)
+	return out
+}
+
+// lightLoss is the damping ratio below which losses spread along a line are left
+// out of frequencies: they lower them by half its square, 5e-5.
+const lightLoss = 0.01
+
+// lighten takes light losses along the segments away, with which a network
+// without dashpots is undamped and a hundred times faster. Dashpots stay: near
+// an end they shift frequencies to first order.
+func (c *config) lighten(net *scenario.Network) {
+	for i := range net.Lines {
+		line := &net.Lines[i]
+		first := math.Pi / statics.TravelTime(line) // rad/s, first vibration as a string
+		for k := range line.Segments {
+			s := &line.Segments[k]
+			if s.Viscous/(2*s.MassPerLength*first) < lightLoss {
+				s.Viscous = 0
+			}
+			if top := 2 * math.Pi * c.below; s.Internal*math.Max(top, first*float64(c.modes))/2 < lightLoss {
+				s.Internal = 0
+			}
+		}
+	}
+}
+
+// vibrations are the frequencies and damping ratios of the config's line, by
+// mode number; where it is tied to others, those of all together.
+func (c *config) vibrations(m *mesh.Mesh) (frequency, damping []float64, err error) {
+	want := modal.Want{Count: max(c.modes, 1)}
+	if c.below > 0 {
+		want = modal.Want{Count: mostModes, Below: c.below}
+	}
+	res, err := modal.Find(m, want)
+	if err == nil && c.below > 0 && count(res.Modes, c.own) < c.modes {
+		res, err = modal.Find(m, modal.Want{Count: c.modes})
+	}
+	if err != nil {
+		return nil, nil, err
+	}
+	modes := res.Modes
+	sort.SliceStable(modes, func(a, b int) bool { return modes[a].DampedFrequency < modes[b].DampedFrequency })
+	for _, mode := range modes {
+		if mode.Line == c.own || mode.Line < 0 {
+			frequency, damping = append(frequency, mode.DampedFrequency), append(damping, mode.DampingRatio)
+		}
+	}
+	return frequency, damping, nil
+}
+
+func count(modes []modal.Mode, line int) int {
+	n := 0
+	for i := range modes {
+		if modes[i].Line == line || modes[i].Line < 0 {
+			n++
+		}
+	}
+	return n
+}
+
+// of is the value that the model gives for an observation as mode `mode`; NaN
+// where it has none.
+func (q *prediction) of(o *observation, mode int) float64 {
+	if q.err != nil {
+		return math.NaN()
+	}
+	switch o.kind {
+	case scenario.FrequencyReading, scenario.PeaksReading:
+		if mode >= 1 && mode <= len(q.frequency) {
+			return q.frequency[mode-1]
+		}
+	case scenario.DecayReading:
+		if mode >= 1 && mode <= len(q.damping) {
+			return q.damping[mode-1]
+		}
+	case scenario.SwingsReading:
+		if len(q.frequency) > 0 {
+			return float64(o.order) / q.frequency[0]
+		}
+	case scenario.ReturnsReading:
+		return float64(o.order) * q.trip
+	}
+	return math.NaN()
+}
+
+// values are the lets for coordinates of the unknowns.
+func (p *Problem) values(x []float64) ([]float64, error) { return p.valuesWith(x, nil) }
+
+// valuesWith gives lets that are no unknowns values of their own.
+func (p *Problem) valuesWith(x []float64, override map[string]float64) ([]float64, error) {
+	t := p.template
+	values := make([]float64, len(t.Lets))
+	coordinate := make([]int, len(t.Lets))
+	for i := range p.unknowns {
+		if let := p.unknowns[i].let; let >= 0 {
+			coordinate[let] = i + 1
+		}
+	}
+	for i := range t.Lets {
+		k := coordinate[i] - 1
+		switch {
+		case k < 0:
+			values[i] = t.Lets[i].Value.Eval(values, nil)
+			if v, given := override[t.Lets[i].Name]; given {
+				values[i] = v
+			}
+		case p.unknowns[k].sought:
+			values[i] = p.unknowns[k].value(x[k])
+		default:
+			values[i] = t.Lets[i].Value.Eval(values, nil) + p.unknowns[k].value(x[k])
+		}
+		if math.IsNaN(values[i]) || math.IsInf(values[i], 0) {
+			return nil, fmt.Errorf("fit: the let %s has no finite value", t.Lets[i].Name)
+		}
+	}
+	return values, nil
+}
+
+// predict evaluates every config.
+func (p *Problem) predict(x []float64) []prediction {
+	out := make([]prediction, len(p.configs))
+	values, err := p.values(x)
+	for i, c := range p.configs {
+		if err != nil {
+			out[i].err = err
+			continue
+		}
+		out[i] = c.predict(values)
+	}
+	return out
+}
