@@ -80,10 +80,12 @@ func TestDocumentsFollowTheirSchemas(t *testing.T) {
 	if v := doc["verdict"]; v != "not met" {
 		t.Errorf("verdict %v, expected not met: 9 Hz is far above the first vibration", v)
 	}
+	printed(t, 1, "fit", "--json", filepath.Join("testdata", "fit", "hangers.taut"))
+	printed(t, 2, "fit", "--json", short)
 	printed(t, 0, "tidy", "--json", short)
 	printed(t, 0, "why", "--json", "scope")
 	printed(t, 0, "scenarios", "--json")
-	for _, command := range []string{"check", "modes", "respond", "arrivals", "run"} {
+	for _, command := range []string{"check", "modes", "respond", "arrivals", "run", "fit"} {
 		printed(t, 2, command, "--json", bad)
 		printed(t, 2, command, "--json", filepath.Join(dir, "missing.taut"))
 	}

@@ -295,5 +295,5 @@ func (c *cover) words(d direction) string {
 		}
 		words[i] = fmt.Sprintf("%s %s by %.2g %%", q.name, way, math.Abs(q.v/top))
 	}
-	return "the readings cannot tell " + strings.Join(words[:len(words)-1], ", ") + " together with " + words[len(words)-1] + " from no change at all"
+	return "no reading changes when " + strings.Join(words[:len(words)-1], ", ") + " goes with " + words[len(words)-1] + ": say what is known of one of them"
 }

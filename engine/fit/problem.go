@@ -28,7 +28,12 @@ type unknown struct {
 // value is a sought let's value. Of a doubtful let it is how far it lies from
 // what its own expression says, of a shared error its standard uncertainties.
 func (u *unknown) value(x float64) float64 {
-	if u.log {
+	switch lo, hi := u.bounds(); {
+	case u.sought && x <= lo:
+		return u.from
+	case u.sought && x >= hi:
+		return u.to
+	case u.log:
 		return math.Exp(x)
 	}
 	return u.centre + u.scale*x

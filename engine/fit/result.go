@@ -103,8 +103,22 @@ func (p *Problem) Solve(ctx context.Context) (*Result, error) {
 			res.Alternatives = append(res.Alternatives, s)
 		}
 	}
-	res.Next = p.next(res.Best)
+	if !res.Best.misfit() {
+		res.Next = p.next(res.Best)
+	}
 	return res, ctx.Err()
+}
+
+// misfit tells whether the model does not explain the readings, so that more of
+// them would not help: a let stands at an end of its range, or they scatter three
+// times as much as they say.
+func (s *Solution) misfit() bool {
+	for i := range s.Unknowns {
+		if s.Unknowns[i].AtBound {
+			return true
+		}
+	}
+	return s.Factor > 3
 }
 
 // solution works out what a minimum says.
@@ -246,22 +260,29 @@ func (p *Problem) remarks(c *cover, out *Solution) []string {
 // Joint is the doubt of a solution carried to the lets: every let for
 // independent directions, each in its standard uncertainties.
 type Joint struct {
-	Names   []string // where the doubt of each direction comes from: a let, or the readings of a block
-	Covered []bool   // by let: its doubt is in the directions
+	names   []string
+	covered []bool
 	p       *Problem
 	x       []float64
 	d       [][]float64
 }
+
+// Directions names where the doubt of each direction comes from: a let, or the
+// readings of a block.
+func (j *Joint) Directions() []string { return j.names }
+
+// Covers tells whether the doubt of a let is in the directions.
+func (j *Joint) Covers(let int) bool { return j.covered[let] }
 
 // Joint splits the doubt of a solution by where it comes from. Its directions
 // carry the factor and the coverage of the solution, so that 1.960 times what
 // they come to is the half width of 95 %.
 func (s *Solution) Joint() *Joint {
 	c, p := s.cover, s.cover.p
-	out := &Joint{p: p, x: c.s.x, Covered: make([]bool, len(p.template.Lets))}
+	out := &Joint{p: p, x: c.s.x, covered: make([]bool, len(p.template.Lets))}
 	for i := range p.unknowns {
 		if let := p.unknowns[i].let; let >= 0 {
-			out.Covered[let] = true
+			out.covered[let] = true
 		}
 	}
 	rows, n := c.j.Dims()
@@ -300,7 +321,7 @@ func (s *Solution) Joint() *Joint {
 			for a := range n {
 				d[a] = scale * v * u.At(a, k)
 			}
-			out.Names, out.d = append(out.Names, name), append(out.d, d)
+			out.names, out.d = append(out.names, name), append(out.d, d)
 		}
 	}
 	for _, open := range c.open {
@@ -308,7 +329,7 @@ func (s *Solution) Joint() *Joint {
 		for a := range n {
 			d[a] = open.u * open.v[a]
 		}
-		out.Names, out.d = append(out.Names, "what the readings leave open"), append(out.d, d)
+		out.names, out.d = append(out.names, "what the readings leave open"), append(out.d, d)
 	}
 	return out
 }

@@ -23,6 +23,21 @@ type Options struct {
 	Sample       bool   // sample every answer
 	// WorkOut turns loads of plugins into forces; nil: there are none.
 	WorkOut func(*scenario.Network) error
+	// Joint, if not nil, is the doubt of lets that hang together, as a fit leaves
+	// them. It takes the place of what those lets say themselves.
+	Joint Joint
+}
+
+// Joint is the doubt of lets that hang together, over independent directions,
+// each in its standard uncertainties.
+type Joint interface {
+	// Directions names where the doubt of each comes from.
+	Directions() []string
+	// Covers tells whether the doubt of a let is in the directions.
+	Covers(let int) bool
+	// Values are all lets for values of the directions; override gives lets that
+	// are not covered values of their own.
+	Values(z []float64, override map[string]float64) ([]float64, error)
 }
 
 // Session is one scenario with its questions.
@@ -65,15 +80,21 @@ func New(t *scenario.Template, override map[string]float64, options Options) (*S
 		options.RunSamples = 100
 	}
 	s := &Session{template: t, override: override, options: options, points: map[string]*Point{}}
-	values, err := t.Values(override)
+	values, err := s.values(nil)
 	if err != nil {
 		return nil, err
 	}
 	if s.centre, err = s.build(values); err != nil {
 		return nil, err
 	}
+	if j := options.Joint; j != nil {
+		for _, name := range j.Directions() {
+			s.inputs = append(s.inputs, doubt.Input{Name: name, U: 1})
+		}
+	}
 	for i, u := range t.StandardU(values) {
 		switch {
+		case options.Joint != nil && options.Joint.Covers(i):
 		case math.IsNaN(u) || math.IsInf(u, 0):
 			return nil, &scenario.PathError{Path: "let." + t.Lets[i].Name, What: "its doubt has no finite value"}
 		case u > 0:
@@ -82,6 +103,9 @@ func New(t *scenario.Template, override map[string]float64, options Options) (*S
 	}
 	s.points[key(s.inputs, nil)] = s.centre
 	s.exact = exactInputs(t, override)
+	for i := range s.exact {
+		s.exact[i] = s.exact[i] && !(options.Joint != nil && options.Joint.Covers(i))
+	}
 	for i := range t.Requires {
 		s.requires = append(s.requires, s.require(&t.Requires[i]))
 	}
@@ -172,16 +196,7 @@ func (s *Session) at(values []float64) (*Point, error) {
 	if p != nil {
 		return p, nil
 	}
-	override := make(map[string]float64, len(s.override)+len(values))
-	for name, v := range s.override {
-		override[name] = v
-	}
-	for i, in := range s.inputs {
-		if values[i] != in.Value {
-			override[in.Name] = values[i]
-		}
-	}
-	all, err := s.template.Values(override)
+	all, err := s.values(values)
 	if err != nil {
 		return nil, err
 	}
@@ -195,6 +210,29 @@ func (s *Session) at(values []float64) (*Point, error) {
 	}
 	s.points[k] = p
 	return p, nil
+}
+
+// values are all lets for values of the inputs; nil for the centre.
+func (s *Session) values(inputs []float64) ([]float64, error) {
+	override := make(map[string]float64, len(s.override)+len(inputs))
+	for name, v := range s.override {
+		override[name] = v
+	}
+	joint := 0
+	if s.options.Joint != nil {
+		joint = len(s.options.Joint.Directions())
+	}
+	for i := joint; i < len(inputs); i++ {
+		if in := &s.inputs[i]; inputs[i] != in.Value {
+			override[in.Name] = inputs[i]
+		}
+	}
+	if s.options.Joint == nil {
+		return s.template.Values(override)
+	}
+	z := make([]float64, joint)
+	copy(z, inputs)
+	return s.options.Joint.Values(z, override)
 }
 
 // key names a point; nil values name the centre.

@@ -13,8 +13,15 @@ func explanations() map[string]string {
 		"doubt-not-carried": `The doubt of the inputs could not be carried to these answers: at one standard uncertainty from its value a let leads to a scenario that cannot be solved.
 
 The answers stand as if their inputs were exact. Make the doubt smaller, or see what the scenario says at the moved value with --set.`,
-		"failed":    `Something outside the scenario failed: a file that cannot be read or written, a limit on memory or work, no solver that can answer. The message says what.`,
-		"no-fronts": `The pulse ledger follows fronts on taut strings only. The message names what it cannot follow.`,
+		"empty-range":                 `A range runs from its lower to its higher end. Ends that are computed from lets must keep that order.`,
+		"more-unknowns-than-readings": `More lets are sought than there are readings, so that whole families of values explain them equally well. Take further readings, or say what is known of a let with its doubt: in a fit that is knowledge and counts like a reading.`,
+		"not-identifiable":            `No reading of the fit depends on this let, so that none can tell its value. Take it out of what is sought, or add a reading of the line that it belongs to.`,
+		"nothing-read":                `A fit needs readings: reading NAME of LINE { frequency 1 = 1.012 Hz +- 0.4 % }. A fit statement may have left out all that there are, by "to" or by "using".`,
+		"nothing-sought":              `A fit moves the lets that a seek statement makes unknown: seek NAME from A to B. None is said.`,
+		"no-solution":                 `Over the whole ranges of the sought lets no point was found at which the lines can be computed and held against every reading. Look at the ranges first: a range in another unit, or one that leaves no tension at an end of an inclined line.`,
+		"wants-place":                 `A joint holds the line between its ends, so that a pulse runs up and down a part of it only. Say a place inside that part behind "at".`,
+		"failed":                      `Something outside the scenario failed: a file that cannot be read or written, a limit on memory or work, no solver that can answer. The message says what.`,
+		"no-fronts":                   `The pulse ledger follows fronts on taut strings only. The message names what it cannot follow.`,
 		"no-line": `There is no line in the scenario, so there is nothing to answer for. A line begins and ends with a support:
 
 line NAME { tension ...; support ...; segment ...; support ... }`,

@@ -36,7 +36,7 @@ func (c *runCmd) Run(s *session) error {
 	doc, histories, status, err := s.app.Run(s.ctx, s.input(c.File), want)
 	bars.done()
 	if err != nil {
-		return s.runFailed(status, err)
+		return s.failed("run", status, err)
 	}
 	if status == app.Interrupted {
 		fmt.Fprintln(s.Err, "tautspan: stopped; what was complete is kept, and marked as cut short")
@@ -55,10 +55,10 @@ func (c *runCmd) Run(s *session) error {
 	})
 }
 
-// runFailed reports a run without a document.
-func (s *session) runFailed(status app.Status, err error) error {
+// failed reports a command without a document.
+func (s *session) failed(command string, status app.Status, err error) error {
 	if s.JSON {
-		if werr := writeJSON(s.Out, app.FailedHead("run", err)); werr != nil {
+		if werr := writeJSON(s.Out, app.FailedHead(command, err)); werr != nil {
 			return werr
 		}
 	}

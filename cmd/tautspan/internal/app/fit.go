@@ -1,0 +1,288 @@
+package app
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+	"strings"
+
+	"github.com/tautspan/tautspan/dsl/diag"
+	"github.com/tautspan/tautspan/engine/doubt"
+	"github.com/tautspan/tautspan/engine/fit"
+	"github.com/tautspan/tautspan/engine/measure"
+	"github.com/tautspan/tautspan/engine/scenario"
+	"github.com/tautspan/tautspan/engine/statics"
+)
+
+// FitWant is what a fit is asked beside the scenario.
+type FitWant struct {
+	Out   string // result folder; "": none
+	Force bool
+	Write bool // put what was found into the text of the scenario
+}
+
+// Fit seeks the lets that explain the readings, and judges the requirements on
+// the line that they make.
+func (a *App) Fit(ctx context.Context, in Input, want FitWant) (*FitDoc, Status, error) {
+	l, err := a.load("fit", in)
+	if err != nil {
+		return nil, Outside, err
+	}
+	l.bind()
+	l.needLine()
+	doc := emptyFit()
+	if want.Out != "" && !l.failed() {
+		if err := permitted(want.Out, l.head.Scenario.File, want.Force); err != nil {
+			return nil, Outside, err
+		}
+	}
+	if !l.failed() {
+		if err := l.fit(ctx, doc, want); err != nil {
+			if ctx.Err() != nil {
+				return doc, Interrupted, nil
+			}
+			return nil, Defect, err
+		}
+	}
+	doc.Head = l.head
+	if l.failed() {
+		return doc, BadInput, nil
+	}
+	if want.Out != "" {
+		doc.ResultDir = want.Out
+		if err := l.writeFit(doc, want); err != nil {
+			return nil, Outside, err
+		}
+	}
+	if doc.Verdict == "met" || doc.Verdict == "fitted" {
+		return doc, Done, nil
+	}
+	return doc, NotAsAsked, nil
+}
+
+func (l *loaded) fit(ctx context.Context, doc *FitDoc, want FitWant) error {
+	p, err := fit.New(l.compiled.Template)
+	var res *fit.Result
+	if err == nil {
+		res, err = p.Solve(ctx)
+	}
+	if err != nil {
+		return l.refuseFit(ctx, err)
+	}
+	doc.Exact = append(doc.Exact, p.Exact()...)
+	l.fitted(doc, res)
+	if err := l.judgeFit(ctx, doc, res); err != nil {
+		return err
+	}
+	l.forceTable(doc, res.Best)
+	if want.Write {
+		l.putIn(doc, res.Best)
+	}
+	return nil
+}
+
+// refuseFit turns a fit that cannot be made into a diagnostic; other errors are
+// passed on.
+func (l *loaded) refuseFit(ctx context.Context, err error) error {
+	var cannot *fit.Error
+	var path *scenario.PathError
+	switch {
+	case ctx.Err() != nil:
+		return ctx.Err()
+	case errors.As(err, &cannot):
+		span, ok := l.compiled.PathSpans.Find(cannot.Path)
+		if !ok {
+			span = diag.Span{File: l.compiled.Sources[0].File}
+		}
+		l.note(diag.List{{Code: cannot.Code, Severity: diag.Error, Span: span, Summary: cannot.What, Hint: cannot.Hint}})
+	case errors.As(err, &path):
+		l.refuse(err)
+	default:
+		return err
+	}
+	return nil
+}
+
+// judgeFit answers requirements and collects of the fitted line with the doubt
+// that the fit leaves. Where several solutions stand, a requirement is decided
+// only if it is the same in all.
+func (l *loaded) judgeFit(ctx context.Context, doc *FitDoc, res *fit.Result) error {
+	answers, err := l.answersOf(ctx, res.Best)
+	if err != nil {
+		return err
+	}
+	for i := range answers.Requirements {
+		doc.Requirements = append(doc.Requirements, requirementRow(&answers.Requirements[i]))
+	}
+	doc.Collected = collectedRows(answers.Collected)
+	for _, w := range answers.Waiting {
+		doc.Notes = append(doc.Notes, w+" waits for a run")
+	}
+	split := false
+	for k, s := range res.Alternatives {
+		other, err := l.answersOf(ctx, s)
+		if err != nil {
+			return err
+		}
+		for i := range other.Requirements {
+			row := requirementRow(&other.Requirements[i])
+			doc.Alternatives[k].Requirements = append(doc.Alternatives[k].Requirements, row)
+			if mine := &doc.Requirements[i]; mine.Verdict != row.Verdict && mine.Verdict != "undecided" {
+				mine.Settle = joinSentences(fmt.Sprintf("another solution that explains the readings about as well would be %s: know more of the sought lets beforehand, or take a reading that tells the solutions apart", row.Verdict), mine.Settle)
+				mine.Verdict = "undecided"
+				split = true
+			}
+		}
+	}
+	doc.Verdict = fitVerdict(doc, split)
+	doc.Cautions = append(doc.Cautions, l.fitCautions(res.Best)...)
+	return nil
+}
+
+// fitVerdict is the worst of a fit: a requirement, an ambiguous or undecided let.
+func fitVerdict(doc *FitDoc, split bool) string {
+	rank := []string{"fitted", "met", "undecided", "ambiguous", "not met"}
+	worst := 0
+	see := func(v string) {
+		for i, known := range rank {
+			if v == known {
+				worst = max(worst, i)
+			}
+		}
+	}
+	for i := range doc.Requirements {
+		see(doc.Requirements[i].Verdict)
+	}
+	if len(doc.Alternatives) > 0 {
+		see("ambiguous")
+	}
+	if len(doc.Requirements) == 0 {
+		for i := range doc.Unknowns {
+			if !doc.Unknowns[i].Decided || doc.Unknowns[i].AtBound {
+				see("undecided")
+			}
+		}
+	}
+	return rank[worst]
+}
+
+// answersOf judges the scenario's questions on the line of one solution.
+func (l *loaded) answersOf(ctx context.Context, s *fit.Solution) (*measure.Answers, error) {
+	session, err := measure.New(l.compiled.Template, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples, Joint: s.Joint()})
+	if err != nil {
+		return nil, err
+	}
+	return session.Answer(ctx, nil)
+}
+
+// fitCautions are the safety notes of a survey, with the tension as fitted.
+func (l *loaded) fitCautions(s *fit.Solution) []CautionNote {
+	net, err := l.compiled.Template.Bind(s.Values)
+	if err != nil {
+		net = l.net
+	}
+	notes := cautions(net, formatEnergy)
+	return append([]CautionNote{
+		{"changing-tension", "Never slacken or stress a line on the strength of this report alone: temporary supports or a second load path, step by step, by a method statement; neighbours take up what one line loses."},
+		{"height", "Do not climb a pole, mast or pylon for a reading before it is checked that it takes the added and unbalanced load; readings from the ground are to be preferred. No work under iced or galloping lines, in lightning or in high wind."},
+	}, notes...)
+}
+
+// forceTable is one row a line that was read.
+func (l *loaded) forceTable(doc *FitDoc, s *fit.Solution) {
+	net, err := l.compiled.Template.Bind(s.Values)
+	if err != nil {
+		return
+	}
+	tensions := l.tensionsOf(s)
+	for i := range net.Lines {
+		modes, read := 0, false
+		for k := range s.Residuals {
+			if r := &s.Residuals[k]; r.Line == i {
+				read = true
+				if r.Mode > 0 && r.Kind.Unit() == "Hz" {
+					modes++
+				}
+			}
+		}
+		if !read {
+			continue
+		}
+		row := FitLine{Line: net.Lines[i].Name, Mark: l.markOf(i), Length: statics.Length(&net.Lines[i]), Modes: modes, Where: "mean"}
+		if n := tensions[i]; n != nil {
+			row.take(n)
+		}
+		l.designOf(doc, i, &row)
+		doc.Lines = append(doc.Lines, row)
+	}
+}
+
+// take enters a tension with its interval, which is symmetric in the logarithm
+// like that of the lets that were found.
+func (f *FitLine) take(n *doubt.Number) {
+	if !n.Exists() || !(n.Value > 0) {
+		return
+	}
+	factor := math.Exp(doubt.TwoSided * n.InputU / n.Value)
+	f.Tension, f.Low95, f.High95 = finite(n.Value), finite(n.Value/factor), finite(n.Value*factor)
+}
+
+// designOf takes design tension, verdict and action from the first requirement
+// on the tension of a line.
+func (l *loaded) designOf(doc *FitDoc, line int, row *FitLine) {
+	row.Action = "say what is required of it"
+	for i := range l.compiled.Template.Requires {
+		q := &l.compiled.Template.Requires[i]
+		if i >= len(doc.Requirements) || q.Unit != "N" || !l.isTensionOf(q, line) {
+			continue
+		}
+		r := &doc.Requirements[i]
+		if len(q.Measures) == 1 && q.Measures[0].HasPlace {
+			row.take(&r.Value)
+			row.Where = strings.TrimSuffix(strings.TrimPrefix(q.Measures[0].Source, "tension("), ")")
+		}
+		if r.Limit != nil && r.Upper != nil && q.Relation == scenario.Within {
+			design := (*r.Limit + *r.Upper) / 2
+			row.Design = &design
+		} else if r.Limit != nil {
+			row.Design = r.Limit
+		}
+		if row.Design != nil && row.Tension != nil && *row.Design != 0 {
+			row.Ratio = finite(*row.Tension / *row.Design)
+		}
+		row.Verdict = r.Verdict
+		switch r.Verdict {
+		case "met":
+			row.Action = "none by this requirement"
+		case "not met":
+			row.Action = "bring before the responsible engineer"
+		default:
+			row.Action = "read again, then decide"
+		}
+		return
+	}
+}
+
+// isTensionOf tells whether a requirement is about the tension of a line: its
+// own measure, or a let that is the line's tension.
+func (l *loaded) isTensionOf(q *scenario.Require, line int) bool {
+	for _, m := range q.Measures {
+		if m.Kind == scenario.LineTension && m.Line == line {
+			return len(q.Measures) == 1
+		}
+	}
+	used := map[int]bool{}
+	q.Value.LetsUsed(used)
+	if len(q.Measures) > 0 || len(used) != 1 {
+		return false
+	}
+	pulls := map[int]bool{}
+	for _, s := range l.compiled.Template.Model.Lines[line].Segments {
+		s.Tension.LetsUsed(pulls)
+	}
+	for i := range used {
+		return pulls[i]
+	}
+	return false
+}

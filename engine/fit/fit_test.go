@@ -1,0 +1,225 @@
+package fit
+
+import (
+	"context"
+	"errors"
+	"math"
+	"strings"
+	"testing"
+	"testing/fstest"
+
+	"github.com/tautspan/tautspan/dsl"
+	"github.com/tautspan/tautspan/engine/scenario"
+)
+
+// templateOf compiles a scenario.
+func templateOf(t testing.TB, text string) *scenario.Template {
+	t.Helper()
+	c := dsl.Compile(fstest.MapFS{"a.taut": {Data: []byte("tautspan 1\n" + text)}}, "a.taut", dsl.Options{})
+	if c.Diagnostics.HasErrors() {
+		t.Fatal(c.Diagnostics.Text(5))
+	}
+	return c.Template
+}
+
+func solve(t testing.TB, text string) *Result {
+	t.Helper()
+	p, err := New(templateOf(t, text))
+	if err != nil {
+		t.Fatal(err)
+	}
+	r, err := p.Solve(context.Background())
+	if err != nil {
+		t.Fatal(err)
+	}
+	return r
+}
+
+func near(t testing.TB, what string, got, want, tol float64) {
+	t.Helper()
+	if !(math.Abs(got-want) <= tol) {
+		t.Errorf("%s: got %.10g, want %.10g within %.2g", what, got, want, tol)
+	}
+}
+
+// stringText is a taut string of 100 m and 5 kg/m with what is added.
+func stringText(lets, readings string) string {
+	return "let pull = 40 kN\n" + lets + "stock w {\n mass mass\n axial 50 MN\n}\nline l {\n tension pull\n support a fixed\n segment s w length\n support b fixed\n}\nreading r of l {\n" + readings + "}\n"
+}
+
+const plainLets = "let mass = 5 kg/m\nlet length = 100 m\n"
+
+// A string's tension is 4 m L^2 (f_n/n)^2; one frequency gives it, with twice the
+// relative uncertainty of the frequency in the tension.
+func TestOneFrequency(t *testing.T) {
+	r := solve(t, stringText(plainLets, " frequency 3 = 1.5 Hz +- 0.4 %\n")+"seek pull from 1 kN to 1 MN\n")
+	u := r.Best.Unknowns[0]
+	near(t, "tension", u.Value, 4*5*1e4*0.25, 1e-6)
+	near(t, "relative u", u.U, 0.008, 1e-6)
+	near(t, "high end", u.High95, 50000*math.Exp(1.96*0.008), 1e-2)
+	near(t, "low end", u.Low95, 50000*math.Exp(-1.96*0.008), 1e-2)
+	if len(r.Alternatives) != 0 || r.Best.Freedom != 0 || r.Best.Factor != 1 {
+		t.Errorf("%+v", r.Best)
+	}
+}
+
+// Doubtful mass and length carry over as (u_T/T)^2 = (u_m/m)^2 + 4 (u_L/L)^2 +
+// 4 (u_f/f)^2, and repeats of one reading average while a shared part does not.
+func TestKnownsAndSharedErrors(t *testing.T) {
+	lets := "let mass = 5 kg/m +- 1 %\nlet length = 100 m +- 0.3 %\n"
+	r := solve(t, stringText(lets, " frequency 1 = 0.5 Hz +- 0.4 %\n frequency 1 = 0.5 Hz +- 0.4 %\n frequency 1 = 0.5 Hz +- 0.4 %\n frequency 1 = 0.5 Hz +- 0.4 %\n")+"seek pull from 1 kN to 1 MN\n")
+	near(t, "relative u", r.Best.Unknowns[0].U, math.Sqrt(0.01*0.01+4*0.003*0.003+4*0.004*0.004/4), 1e-5)
+	if len(r.Best.Informed) != 2 {
+		t.Errorf("%+v", r.Best.Informed)
+	}
+	// 10 returns of a pulse over 2 L/c = 2 s each, 0.1 s each way alone, 0.2 s in common.
+	times := strings.Repeat(" returns 10 took 20 s +- 0.1 s shared +- 0.2 s\n", 4)
+	r = solve(t, stringText(plainLets, times)+"seek pull from 1 kN to 1 MN\n")
+	near(t, "tension by returns", r.Best.Unknowns[0].Value, 50000, 1e-6)
+	near(t, "relative u by returns", r.Best.Unknowns[0].U, 2*math.Hypot(0.1/2, 0.2)/20, 1e-5)
+}
+
+// Swings and damping ratios are readings too: c/(2 m omega_1) = zeta.
+func TestSwingsAndDecay(t *testing.T) {
+	text := strings.Replace(stringText(plainLets+"let lossy = 1 N*s/m^2\n", " swings 20 took 40 s +- 0.1 s\n decay 1 = 0.4 % +- 0.04 %\n"), "axial 50 MN", "loss viscous lossy", 1)
+	r := solve(t, text+"seek pull from 1 kN to 1 MN\nseek lossy from 0.01 N*s/m^2 to 10 N*s/m^2\n")
+	near(t, "tension", r.Best.Unknowns[0].Value, 50000*(1+0.004*0.004), 1e-2)
+	near(t, "loss", r.Best.Unknowns[1].Value, 0.004*2*5*math.Pi/math.Sqrt(1-0.004*0.004), 1e-6)
+	near(t, "its u", r.Best.Unknowns[1].U, 0.1, 1e-3)
+}
+
+// Peaks without numbers, with one that is no vibration of the line and one
+// vibration missing.
+func TestStrangerAndMissing(t *testing.T) {
+	r := solve(t, stringText(plainLets, " peaks 0.5, 0.62, 1.0, 2.0, 2.5 Hz +- 0.2 %\n")+"seek pull from 10 kN to 400 kN\n")
+	near(t, "tension", r.Best.Unknowns[0].Value, 50000, 60)
+	want := []int{1, 0, 2, 4, 5}
+	for i, row := range r.Best.Residuals {
+		if row.Mode != want[i] || row.Stranger != (want[i] == 0) {
+			t.Errorf("%g Hz: mode %d, stranger %v", row.Observed, row.Mode, row.Stranger)
+		}
+	}
+	if len(r.Best.Missing) != 1 || r.Best.Missing[0].Number != 3 {
+		t.Errorf("missing %+v", r.Best.Missing)
+	}
+	near(t, "the missing one", r.Best.Missing[0].Frequency, 1.5, 2e-3)
+}
+
+// Where only even vibrations were picked, a line of four times the tension has
+// them as 1, 2, 3, 4: both are told, and what is known of the tension decides.
+func TestAlias(t *testing.T) {
+	peaks := " peaks 1.0, 2.0, 3.0, 4.0 Hz +- 0.2 %\n"
+	r := solve(t, stringText(plainLets, peaks)+"seek pull from 20 kN to 400 kN\n")
+	if len(r.Alternatives) == 0 {
+		t.Fatal("no alternative")
+	}
+	near(t, "as 1, 2, 3, 4", r.Best.Unknowns[0].Value, 200000, 100)
+	found := false
+	for _, a := range r.Alternatives {
+		found = found || math.Abs(a.Unknowns[0].Value-50000) < 50
+	}
+	if !found {
+		t.Errorf("the even vibrations of 50 kN are not among %d alternatives", len(r.Alternatives))
+	}
+	known := strings.Replace(stringText(plainLets, peaks), "let pull = 40 kN", "let pull = 48 kN +- 5 %", 1)
+	r = solve(t, known+"seek pull from 20 kN to 400 kN\n")
+	near(t, "with what is known", r.Best.Unknowns[0].Value, 50000, 100)
+	if len(r.Alternatives) != 0 {
+		t.Errorf("alternatives %+v", r.Alternatives[0].Unknowns)
+	}
+}
+
+// Of eight numbered partials one is 3 % off: it is dropped, and the rest stand.
+func TestOneBadPartial(t *testing.T) {
+	readings := ""
+	for n := 1; n <= 8; n++ {
+		f := 0.5 * float64(n)
+		if n == 6 {
+			f *= 1.03
+		}
+		readings += " frequency " + string(rune('0'+n)) + " = " + scenarioNumber(f) + " Hz +- 0.2 %\n"
+	}
+	r := solve(t, stringText(plainLets, readings)+"seek pull from 10 kN to 400 kN\n")
+	near(t, "tension", r.Best.Unknowns[0].Value, 50000, 1)
+	for _, row := range r.Best.Residuals {
+		if row.Stranger != (row.Observed > 3.05 && row.Observed < 3.2) {
+			t.Errorf("%g Hz: stranger %v", row.Observed, row.Stranger)
+		}
+	}
+}
+
+// Tension and mass of a string change no frequency together: the ratio of the
+// singular values is rounding, and the direction (1, 1).
+func TestNotIdentifiable(t *testing.T) {
+	r := solve(t, stringText(plainLets, " frequency 1 = 0.5 Hz +- 0.2 %\n frequency 2 = 1 Hz +- 0.2 %\n frequency 3 = 1.5 Hz +- 0.2 %\n")+"seek pull from 10 kN to 400 kN\nseek mass from 1 kg/m to 40 kg/m\n")
+	if len(r.Best.Open) != 1 || !strings.Contains(r.Best.Open[0], "pull") || !strings.Contains(r.Best.Open[0], "mass up by 1 %") {
+		t.Errorf("%q", r.Best.Open)
+	}
+	for _, u := range r.Best.Unknowns {
+		if !u.Undecided || u.Low95 > u.From*1.0001 || u.High95 < u.To*0.9999 {
+			t.Errorf("%+v", u)
+		}
+	}
+}
+
+func TestAtAnEndOfItsRange(t *testing.T) {
+	r := solve(t, stringText(plainLets, " frequency 1 = 0.5 Hz +- 0.2 %\n frequency 2 = 1 Hz +- 0.2 %\n")+"seek pull from 60 kN to 400 kN\n")
+	if u := r.Best.Unknowns[0]; !u.AtBound || u.Value != 60000 {
+		t.Errorf("%+v", u)
+	}
+	if len(r.Best.Notes) == 0 || !strings.Contains(strings.Join(r.Best.Notes, "\n"), "lower end of its range") || r.Next != nil {
+		t.Errorf("%q %+v", r.Best.Notes, r.Next)
+	}
+}
+
+// What cannot be fitted is refused with the code of its reason.
+func TestRefusals(t *testing.T) {
+	reading := " frequency 1 = 0.5 Hz +- 0.2 %\n"
+	for _, c := range []struct{ text, code string }{
+		{stringText(plainLets, reading), "nothing-sought"},
+		{stringText(plainLets, reading) + "seek pull from 1 kN to 2 kN\nseek mass from 1 kg/m to 2 kg/m\n", "more-unknowns-than-readings"},
+		{stringText(plainLets+"let other = 3 m\n", reading+reading) + "seek other from 1 m to 2 m\n", "not-identifiable"},
+		{stringText(plainLets, reading) + "seek pull from 1 kN to 2 kN\nfit {\n to r\n using returns\n}\n", "nothing-read"},
+	} {
+		_, err := New(templateOf(t, c.text))
+		var e *Error
+		if !errors.As(err, &e) || e.Code != c.code {
+			t.Errorf("%v, want %s", err, c.code)
+		}
+	}
+}
+
+// A pulse runs up and down between held places.
+func TestReturnsBetweenHeldPlaces(t *testing.T) {
+	text := "let pull = 40 kN\nstock w {\n mass 5 kg/m\n}\nline l {\n tension pull\n support a fixed\n segment s w 60 m\n joint j fixed\n segment z w 40 m\n support b fixed\n}\n"
+	r := solve(t, text+"reading r of l {\n returns 10 took 8 s +- 0.1 s at z 3 m\n}\nseek pull from 1 kN to 1 MN\n")
+	near(t, "tension", r.Best.Unknowns[0].Value, 50000, 1e-6)
+	_, err := New(templateOf(t, text+"reading r of l {\n returns 10 took 8 s +- 0.1 s\n}\nseek pull from 1 kN to 1 MN\n"))
+	var e *Error
+	if !errors.As(err, &e) || e.Code != "wants-place" {
+		t.Errorf("%v", err)
+	}
+}
+
+// A further reading that is named shrinks the interval by what was promised.
+func TestNextReadingKeepsItsPromise(t *testing.T) {
+	text := strings.Replace(stringText(plainLets+"let stiff = 20 kN*m^2\n", "%s"), "axial 50 MN", "bending stiff", 1)
+	text = strings.NewReplacer("support a fixed", "support a pinned", "support b fixed", "support b pinned").Replace(text)
+	f := func(n float64) float64 {
+		return n * math.Sqrt(50000/(4*5*1e4)+math.Pi*math.Pi*20000*n*n/(4*5*1e8))
+	}
+	row := func(n int) string {
+		return " frequency " + string(rune('0'+n)) + " = " + scenarioNumber(f(float64(n))) + " Hz +- 0.2 %\n"
+	}
+	ask := "seek pull from 1 kN to 1 MN\nseek stiff from 1 kN*m^2 to 1 MN*m^2\n"
+	rows := row(1) + row(2) + row(3)
+	r := solve(t, strings.Replace(text, "%s", rows, 1)+ask)
+	n := r.Next
+	if n == nil || n.Candidate != "frequency" || n.Mode <= 3 || n.Let != "pull" {
+		t.Fatalf("%+v", n)
+	}
+	near(t, "expected", n.Value, f(float64(n.Mode)), 1e-6)
+	near(t, "half width before", n.From, 1.96*r.Best.Unknowns[0].U, 1e-6)
+	again := solve(t, strings.Replace(text, "%s", rows+row(n.Mode), 1)+ask)
+	near(t, "half width after", 1.96*again.Best.Unknowns[0].U, n.To, 1e-3*n.To)
+}
