@@ -17,18 +17,18 @@ type cover struct {
 	p *Problem
 	s *solution
 
-	j          *mat.Dense
-	covariance *mat.SymDense // of the coordinates, without the factor below
-	open       []direction   // that no reading decides
+	j     *mat.Dense
+	plain *mat.SymDense // covariance of the coordinates by what the readings say of themselves
+	gain  *mat.Dense    // change of the coordinates for one standard uncertainty of each residual
+	// covariance is that with the scatter of the readings in it.
+	covariance *mat.SymDense
+	open       []direction // that no reading decides
+	read       int         // residuals of readings; those of what was known follow
 	chi2       float64
 	freedom    int
-	// factor multiplies standard uncertainties: the root of chi2 by freedom where
-	// the readings scatter more than they say.
-	factor float64
-	// k is the coverage factor of 95 %: 1.960, or Student's where the scatter of
-	// few readings stands for their doubt.
-	k       float64
-	roughly bool // the slopes do not settle as their step is halved
+	scatter    float64 // root of chi2 by freedom, at least 1
+	factor     float64 // by which the readings' uncertainties count, at least 1
+	roughly    bool    // the slopes do not settle as their step is changed
 }
 
 // direction is a unit vector in the coordinates, with how far along it the
@@ -53,20 +53,62 @@ const (
 
 // cover works out the doubt of a solution.
 func (p *Problem) cover(s *solution) (*cover, error) {
-	c := &cover{p: p, s: s, factor: 1, k: doubt.TwoSided}
+	c := &cover{p: p, s: s, factor: 1, scatter: 1}
 	if c.j = p.jacobian(s.x, s.q, s.modes, 0, difference, nil); c.j == nil {
 		return nil, fmt.Errorf("fit: the model has no slopes at the solution")
 	}
 	c.check()
 	rows, n := c.j.Dims()
-	c.chi2, c.freedom = s.sum, rows-n
 	c.invert()
-	c.freedom += len(c.open)
-	if c.freedom > 0 && c.chi2 > float64(c.freedom) {
-		c.factor = math.Sqrt(c.chi2 / float64(c.freedom))
-		c.k = distuv.StudentsT{Mu: 0, Sigma: 1, Nu: float64(c.freedom)}.Quantile(0.975)
+	c.chi2, c.freedom = s.sum, rows-n+len(c.open)
+	for _, m := range s.modes {
+		if m != 0 {
+			c.read++
+		}
 	}
+	c.widen()
+	c.carry()
 	return c, nil
+}
+
+// widen lets the scatter of the readings count where it is more than they say,
+//
+//	factor = s t/1.960,  s^2 = chi2/freedom,
+//
+// with t Student's factor for the effective freedom s^4 freedom/(s^2-1)^2: of the
+// variance s^2 the part that was stated has endless freedom, and what goes beyond
+// it that of the scatter. Source: JCGM 100:2008, G.4.1 (Welch, Satterthwaite),
+// from memory.
+func (c *cover) widen() {
+	if c.freedom <= 0 || c.chi2 <= float64(c.freedom) {
+		return
+	}
+	s2 := c.chi2 / float64(c.freedom)
+	c.scatter = math.Sqrt(s2)
+	effective := s2 * s2 * float64(c.freedom) / ((s2 - 1) * (s2 - 1))
+	t := doubt.TwoSided
+	if effective < 1e6 {
+		t = distuv.StudentsT{Mu: 0, Sigma: 1, Nu: effective}.Quantile(0.975)
+	}
+	c.factor = c.scatter * math.Max(1, t/doubt.TwoSided)
+}
+
+// carry makes the covariance of what the residuals do to the solution: those of
+// readings by the factor, those of what was known as they are.
+func (c *cover) carry() {
+	rows, n := c.j.Dims()
+	c.gain = mat.NewDense(n, rows, nil)
+	c.gain.Mul(c.plain, c.j.T())
+	for i := range c.read {
+		for k := range n {
+			c.gain.Set(k, i, c.factor*c.gain.At(k, i))
+		}
+	}
+	c.covariance = mat.NewSymDense(n, nil)
+	c.covariance.SymOuterK(1, c.gain)
+	for _, d := range c.open {
+		c.covariance.SymRankOne(c.covariance, d.u*d.u, mat.NewVecDense(n, d.v))
+	}
 }
 
 // check holds the slopes against those of a step ten times as long.
@@ -105,7 +147,7 @@ func (c *cover) invert() {
 		}
 	}
 	var svd mat.SVD
-	c.covariance = mat.NewSymDense(n, nil)
+	c.plain = mat.NewSymDense(n, nil)
 	if !svd.Factorize(scaled, mat.SVDThin) {
 		return
 	}
@@ -124,12 +166,12 @@ func (c *cover) invert() {
 			for k := range d {
 				d[k] /= size
 			}
-			u = c.p.reach(d)
-			c.open = append(c.open, direction{d, u})
+			c.open = append(c.open, direction{d, c.p.reach(d)})
+			continue
 		}
 		for a := range n {
 			for b := a; b < n; b++ {
-				c.covariance.SetSym(a, b, c.covariance.At(a, b)+u*u*d[a]*d[b])
+				c.plain.SetSym(a, b, c.plain.At(a, b)+u*u*d[a]*d[b])
 			}
 		}
 	}
@@ -151,8 +193,8 @@ func (p *Problem) reach(d []float64) float64 {
 	return u
 }
 
-// sd is the standard uncertainty of a coordinate, the factor included.
-func (c *cover) sd(i int) float64 { return c.factor * math.Sqrt(math.Max(0, c.covariance.At(i, i))) }
+// sd is the standard uncertainty of a coordinate.
+func (c *cover) sd(i int) float64 { return math.Sqrt(math.Max(0, c.covariance.At(i, i))) }
 
 // undecided tells whether an unknown has a part in a direction that is open.
 func (c *cover) undecided(i int) bool {
@@ -175,7 +217,7 @@ func (c *cover) atBound(i int) bool {
 func (c *cover) interval(i int) (low, high float64) {
 	u := &c.p.unknowns[i]
 	lo, hi := u.bounds()
-	half := c.k * c.sd(i)
+	half := doubt.TwoSided * c.sd(i)
 	a, b := c.s.x[i]-half, c.s.x[i]+half
 	switch {
 	case c.undecided(i):
@@ -187,7 +229,7 @@ func (c *cover) interval(i int) (low, high float64) {
 }
 
 // profile is where the cost, lowered over everything else, has risen by
-// (k factor)^2 to one side of the solution; the end of the range where it does
+// k^2, with k 1.960 and as much more as the scatter widens the interval, to one side of the solution; the end of the range where it does
 // not rise so far. Found by the secant on the root of the rise, which is nearly
 // straight.
 func (c *cover) profile(i int, side float64) float64 {
@@ -199,6 +241,7 @@ func (c *cover) profile(i int, side float64) float64 {
 	}
 	fixed := make([]bool, len(p.unknowns))
 	fixed[i] = true
+	k := doubt.TwoSided * math.Max(1, c.sd(i)/math.Sqrt(math.Max(c.plain.At(i, i), 1e-300)))
 	x := append([]float64(nil), c.s.x...)
 	rise := func(at float64) float64 {
 		x[i] = at
@@ -207,10 +250,10 @@ func (c *cover) profile(i int, side float64) float64 {
 			return math.Inf(1)
 		}
 		copy(x, nx)
-		return math.Sqrt(math.Max(0, sum-c.s.sum)) / c.factor
+		return math.Sqrt(math.Max(0, sum-c.s.sum))
 	}
 	from, height := c.s.x[i], 0.0
-	step := math.Max(c.k*c.sd(i), 1e-4)
+	step := math.Max(doubt.TwoSided*c.sd(i), 1e-4)
 	if step > 1 || math.IsNaN(step) {
 		step = 1
 	}
@@ -220,14 +263,14 @@ func (c *cover) profile(i int, side float64) float64 {
 			at = end
 		}
 		h := rise(at)
-		if h >= c.k {
-			return c.secant(from, height, at, h, rise)
+		if h >= k {
+			return secant(from, height, at, h, k, rise)
 		}
 		if at == end {
 			return end
 		}
 		if h > height {
-			step = math.Min(math.Abs(at-from)/(h-height)*(c.k-h)*1.05, 1)
+			step = math.Min(math.Abs(at-from)/(h-height)*(k-h)*1.05, 1)
 			step = math.Max(step, 0.02)
 		}
 		from, height = at, h
@@ -235,18 +278,18 @@ func (c *cover) profile(i int, side float64) float64 {
 	return from
 }
 
-// secant narrows the place where the rise is k between two coordinates.
-func (c *cover) secant(a, fa, b, fb float64, rise func(float64) float64) float64 {
+// secant narrows the place between two coordinates where the rise is k.
+func secant(a, fa, b, fb, k float64, rise func(float64) float64) float64 {
 	for round := 0; round < 12 && math.Abs(fb-fa) > 1e-3; round++ {
 		mid := (a + b) / 2
 		if !math.IsInf(fb, 1) {
-			mid = a + (c.k-fa)/(fb-fa)*(b-a)
+			mid = a + (k-fa)/(fb-fa)*(b-a)
 		}
 		f := rise(mid)
-		if math.Abs(f-c.k) < 2e-3*c.k {
+		if math.Abs(f-k) < 2e-3*k {
 			return mid
 		}
-		if f < c.k {
+		if f < k {
 			a, fa = mid, f
 		} else {
 			b, fb = mid, f
@@ -255,7 +298,7 @@ func (c *cover) secant(a, fa, b, fb float64, rise func(float64) float64) float64
 	if math.IsInf(fb, 1) || fb == fa {
 		return a
 	}
-	return a + (c.k-fa)/(fb-fa)*(b-a)
+	return a + (k-fa)/(fb-fa)*(b-a)
 }
 
 // correlation of two unknowns.

@@ -185,6 +185,20 @@ func (c *config) cut(p *Problem) {
 	c.part = &part
 }
 
+// quick tells whether the vibrations of the config follow from the closed
+// equation of a single span.
+func (c *config) quick() bool {
+	if len(c.part.Model.Lines) != 1 || len(c.part.Model.Watches) > 0 {
+		return false
+	}
+	l := &c.part.Model.Lines[0]
+	if len(l.Segments) != 1 || l.Sag || c.decays {
+		return false
+	}
+	rise, level := l.Segments[0].TensionRise.IsConst()
+	return level && rise == 0 && l.Nodes[0].Fixed && l.Nodes[1].Fixed
+}
+
 // predict evaluates the config at values of all lets.
 func (c *config) predict(values []float64) prediction {
 	net, err := c.part.Bind(values)

@@ -5,6 +5,7 @@ import (
 	"math"
 	"sort"
 
+	"github.com/tautspan/tautspan/engine/doubt"
 	"github.com/tautspan/tautspan/engine/scenario"
 )
 
@@ -79,7 +80,7 @@ func (p *Problem) next(s *Solution) *Next {
 // comes to.
 func (c *cover) relative(i int, variance float64) float64 {
 	u := &c.p.unknowns[i]
-	half := c.k * c.factor * math.Sqrt(variance)
+	half := doubt.TwoSided * math.Sqrt(variance)
 	if !u.log {
 		half *= u.scale / math.Max(math.Abs(u.value(c.s.x[i])), 1e-300)
 	}

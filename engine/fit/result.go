@@ -8,6 +8,7 @@ import (
 
 	"gonum.org/v1/gonum/mat"
 
+	"github.com/tautspan/tautspan/engine/doubt"
 	"github.com/tautspan/tautspan/engine/scenario"
 )
 
@@ -31,8 +32,7 @@ type Solution struct {
 	Cost    float64 // residuals, strangers and vibrations passed over
 	Chi2    float64 // residuals alone, those of what was known included
 	Freedom int     // readings and knowns less unknowns
-	Factor  float64 // by which uncertainties were widened, at least 1
-	K       float64 // coverage factor of the 95 % intervals
+	Factor  float64 // by which the readings' uncertainties count, at least 1
 
 	Open  []string // what the readings cannot decide, one sentence each
 	Notes []string // what to be careful about, one sentence each
@@ -118,7 +118,7 @@ func (s *Solution) misfit() bool {
 			return true
 		}
 	}
-	return s.Factor > 3
+	return s.cover.scatter > 3
 }
 
 // solution works out what a minimum says.
@@ -131,7 +131,7 @@ func (p *Problem) solution(s *solution) (*Solution, error) {
 	if err != nil {
 		return nil, err
 	}
-	out := &Solution{Values: values, Cost: s.cost, Chi2: c.chi2, Freedom: c.freedom, Factor: c.factor, K: c.k, cover: c}
+	out := &Solution{Values: values, Cost: s.cost, Chi2: c.chi2, Freedom: c.freedom, Factor: c.factor, cover: c}
 	for i := range p.unknowns {
 		if !p.unknowns[i].sought {
 			out.Informed = append(out.Informed, c.informed(i, values))
@@ -160,10 +160,12 @@ func (p *Problem) solution(s *solution) (*Solution, error) {
 func (c *cover) informed(i int, values []float64) Unknown {
 	u := &c.p.unknowns[i]
 	out := Unknown{Name: u.name, Let: u.let, Unit: "1", U: c.sd(i), Log: u.log, From: u.from, To: u.to, AtBound: u.sought && c.atBound(i), Undecided: c.undecided(i)}
-	half := c.k * out.U
+	half := doubt.TwoSided * out.U
 	x := c.s.x[i]
 	out.Value, out.Low95, out.High95 = u.value(x), u.value(x-half), u.value(x+half)
 	if u.let < 0 {
+		const digits = 1e6 // of a standard uncertainty; the rest is rounding
+		out.Value = math.Round(out.Value*digits) / digits
 		return out
 	}
 	let := &c.p.template.Lets[u.let]
@@ -245,8 +247,11 @@ func (p *Problem) remarks(c *cover, out *Solution) []string {
 			add("the readings pull %s by %.1f of its standard uncertainties: hold it against its source", u.Name, math.Abs(u.PriorPulled))
 		}
 	}
-	if c.factor > 1.5 {
-		add("the readings scatter %.1f times as much as their doubt says, and the intervals are widened by that; a wrong order number, end or length does the same", c.factor)
+	if n := p.nearMisses(c.s); n > 1 {
+		add("%d strangers lie near vibrations of the line that nothing else was paired with: the readings may be worse than they say", n)
+	}
+	if c.scatter > 1.5 {
+		add("the readings scatter %.1f times as much as their doubt says, and count so much less; a wrong order number, end or length does the same", c.scatter)
 	}
 	if c.freedom == 0 {
 		add("there are as many readings as unknowns, so that nothing checks the model")
@@ -255,6 +260,33 @@ func (p *Problem) remarks(c *cover, out *Solution) []string {
 		add("the slopes of the model do not settle at the solution, so that the intervals are rough")
 	}
 	return notes
+}
+
+// nearMisses counts strangers that lie within a fifth of the way to the next of a
+// vibration that nothing was paired with.
+func (p *Problem) nearMisses(s *solution) int {
+	n := 0
+	for l := range p.lists {
+		taken := map[int]bool{}
+		for _, i := range p.lists[l].obs {
+			taken[s.modes[i]] = true
+		}
+		for _, i := range p.lists[l].obs {
+			o := &p.obs[i]
+			f := s.q[o.config].frequency
+			for m := range f {
+				gap := f[m]
+				if m > 0 {
+					gap -= f[m-1]
+				}
+				if s.modes[i] == 0 && !taken[m+1] && math.Abs(o.value-f[m]) < gap/5 {
+					n++
+					break
+				}
+			}
+		}
+	}
+	return n
 }
 
 // Joint is the doubt of a solution carried to the lets: every let for
@@ -274,9 +306,7 @@ func (j *Joint) Directions() []string { return j.names }
 // Covers tells whether the doubt of a let is in the directions.
 func (j *Joint) Covers(let int) bool { return j.covered[let] }
 
-// Joint splits the doubt of a solution by where it comes from. Its directions
-// carry the factor and the coverage of the solution, so that 1.960 times what
-// they come to is the half width of 95 %.
+// Joint splits the doubt of a solution by where it comes from.
 func (s *Solution) Joint() *Joint {
 	c, p := s.cover, s.cover.p
 	out := &Joint{p: p, x: c.s.x, covered: make([]bool, len(p.template.Lets))}
@@ -286,9 +316,6 @@ func (s *Solution) Joint() *Joint {
 		}
 	}
 	rows, n := c.j.Dims()
-	var gain mat.Dense // change of the coordinates for one standard uncertainty of each reading
-	gain.Mul(c.covariance, c.j.T())
-	scale := c.factor * c.k / 1.960
 	of := p.sources(c.s.modes)
 	var names []string
 	byName := map[string][]int{}
@@ -303,7 +330,7 @@ func (s *Solution) Joint() *Joint {
 		part := mat.NewDense(n, len(list), nil)
 		for k, i := range list {
 			for a := range n {
-				part.Set(a, k, gain.At(a, i))
+				part.Set(a, k, c.gain.At(a, i))
 			}
 		}
 		var svd mat.SVD
@@ -319,7 +346,7 @@ func (s *Solution) Joint() *Joint {
 			}
 			d := make([]float64, n)
 			for a := range n {
-				d[a] = scale * v * u.At(a, k)
+				d[a] = v * u.At(a, k)
 			}
 			out.names, out.d = append(out.names, name), append(out.d, d)
 		}

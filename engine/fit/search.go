@@ -12,17 +12,39 @@ import (
 // the high ones as it comes nearer.
 var widenings = [...]float64{0.03, 0.015, 0.007, 0.003, 0.001, 0}
 
-// How a search is sized. Chosen: a step of 12 % of tension moves frequencies by
-// 6 %, so that no start is further than 3 % off, which is the first widening.
+// How a search is sized. Chosen: a step of 8 % of tension moves frequencies by
+// 4 %, so that no start is further than 2 % off, within the first widening.
 const (
-	fineRatio     = 1.12
-	mostFine      = 80
-	seedOfStarts  = 1
-	mostSolutions = 14 // starts that are followed to the end
-	keptStarts    = 4  // of each group of lines
-	ambiguous     = 9  // solutions within this cost of the best are all told
-	hopeless      = 60 // above the best: a start that is given up half way
+	fineRatio    = 1.08
+	mostFine     = 100
+	seedOfStarts = 1
+	ambiguous    = 9  // solutions within this cost of the best are all told
+	hopeless     = 60 // above the best: a start that is given up half way
 )
+
+// size is how wide a search is.
+type size struct {
+	follow int // starts that are followed to the end
+	keep   int // starts kept of each group of lines and point of the shared lets
+	coarse int // values of the second of a group's unknowns
+}
+
+// Single spans are evaluated in some 20 microseconds, other lines in some
+// hundred times that.
+var (
+	wide   = size{follow: 40, keep: 8, coarse: 9}
+	narrow = size{follow: 14, keep: 4, coarse: 4}
+)
+
+// size settles how wide to search.
+func (p *Problem) size() size {
+	for _, c := range p.configs {
+		if !c.quick() {
+			return narrow
+		}
+	}
+	return wide
+}
 
 // solution is one minimum of the cost.
 type solution struct {
@@ -280,7 +302,7 @@ func (p *Problem) scan(x []float64, g own) []start {
 	fine, coarse := g.unknowns[0], g.unknowns[1:]
 	lo, hi := p.unknowns[fine].bounds()
 	n := p.fineSteps(fine, g.group)
-	points := [...]int{1, 4, 3, 2}
+	points := [...]int{1, p.size().coarse, 3, 2}
 	of := 12
 	if len(coarse) < len(points) {
 		of = points[len(coarse)]
@@ -308,7 +330,7 @@ func (p *Problem) scan(x []float64, g own) []start {
 		for _, k := range kept {
 			near = near || math.Abs(k.x[fine]-s.x[fine]) < 0.06
 		}
-		if !near && len(kept) < keptStarts {
+		if !near && len(kept) < p.size().keep {
 			kept = append(kept, s)
 		}
 	}
@@ -424,7 +446,7 @@ func (p *Problem) diverse(all []start, private []own) []start {
 		if !near {
 			kept = append(kept, s)
 		}
-		if len(kept) == mostSolutions {
+		if len(kept) == p.size().follow {
 			break
 		}
 	}

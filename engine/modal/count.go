@@ -118,6 +118,9 @@ type span struct {
 // undampedModes finds the lowest roots of an undamped group, one more than
 // asked so that it is known where the list ends.
 func (w *network) undampedModes(want Want) (found, error) {
+	if l, ok := w.lone(); ok {
+		return l.modes(want, w.notes), nil
+	}
 	c := newCounter(w)
 	f := found{notes: w.notes, complete: math.Inf(1)}
 	most := want.Count + 1

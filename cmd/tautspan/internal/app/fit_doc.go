@@ -19,7 +19,6 @@ type FitDoc struct {
 	Chi2         *float64         `json:"chi2"`
 	Freedom      int              `json:"degrees_of_freedom"`
 	Factor       *float64         `json:"widened_by"`
-	Coverage     *float64         `json:"coverage_factor"`
 	Open         []string         `json:"undecided"`
 	Notes        []string         `json:"notes"`
 	Next         *FitNext         `json:"next_reading"`
@@ -183,7 +182,7 @@ func (l *loaded) fitted(doc *FitDoc, res *fit.Result) {
 		doc.Correlation = append(doc.Correlation, row)
 	}
 	doc.Cost, doc.Chi2, doc.Freedom = finite(best.Cost), finite(best.Chi2), best.Freedom
-	doc.Factor, doc.Coverage = finite(best.Factor), finite(best.K)
+	doc.Factor = finite(best.Factor)
 	doc.Open = append(doc.Open, best.Open...)
 	doc.Notes = append(doc.Notes, best.Notes...)
 	for _, s := range res.Alternatives {

@@ -68,7 +68,7 @@ func (l *loaded) putIn(doc *FitDoc, s *fit.Solution) {
 			doc.Notes = append(doc.Notes, u.Name+" is not written: no reading decides it")
 			continue
 		}
-		f := dsl.Found{Name: u.Name, Value: u.Value, StandardU: u.U * s.K / doubt.TwoSided}
+		f := dsl.Found{Name: u.Name, Value: u.Value, StandardU: u.U}
 		if u.Log {
 			f.StandardU *= u.Value
 		}

@@ -145,7 +145,7 @@ func (p *printer) sayReadings(d *app.FitDoc) {
 	if d.Chi2 != nil {
 		words := ""
 		if d.Factor != nil && *d.Factor > 1 {
-			words = fmt.Sprintf("; intervals widened by %.2f, coverage factor %.2f", *d.Factor, *d.Coverage)
+			words = fmt.Sprintf("; the readings count with %.2f times their doubt", *d.Factor)
 		}
 		p.line("  sum of squares %s with %d to spare%s", trimNumber(*d.Chi2, 3), d.Freedom, words)
 	}
