@@ -55,9 +55,6 @@ func (r *resolver) declare() {
 			r.enter(s.Name, "record")
 		case *syntax.Reading:
 			r.enter(s.Name, "reading")
-		case *syntax.Each:
-			// Its statements give names that are not known here.
-			r.incomplete, r.partsUnsure = true, true
 		}
 	}
 	r.headings()
@@ -66,7 +63,7 @@ func (r *resolver) declare() {
 // enter gives a name at the top of the file; false where it is taken.
 func (r *resolver) enter(name syntax.Label, kind string) bool {
 	if name.Index != nil {
-		r.notYet(name.Span, "a name made from the row of a table", "")
+		r.notYet(name.Span, "a name made from a row outside the block that goes through the rows", "inside it hanger[ROW.mark] makes hanger_H1 of a row with the mark H1; write that")
 		return false
 	}
 	if name.Text == "" {

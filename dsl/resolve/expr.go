@@ -291,7 +291,7 @@ func (r *resolver) unknownName(e *syntax.Name, text string, sc *scope) {
 func (r *resolver) dotted(e *syntax.Name, sc *scope) value {
 	for _, p := range e.Parts {
 		if p.Index != nil {
-			r.notYet(e.Span, "a name made from the row of a table", "")
+			r.notYet(e.Span, "a name made from a row outside the block that goes through the rows", "inside it hanger[ROW.mark] makes hanger_H1 of a row with the mark H1; write that")
 			return badValue
 		}
 	}

@@ -104,8 +104,11 @@ func (r *resolver) override() map[string]syntax.Expr {
 const setHead = "tautspan 1\n"
 
 // asTyped moves a place in the file made of a value from outside to the place
-// in what was typed.
+// in what was typed, and one in the text made of an each block to the block.
 func (r *resolver) asTyped(s diag.Span) diag.Span {
+	if m, ok := r.mades[s.File]; ok {
+		return m.origin(s)
+	}
 	shown, ok := r.typed[s.File]
 	if !ok {
 		return s
@@ -416,7 +419,7 @@ func differenceText(x float64, d unit.Dim) string {
 func (r *resolver) letInfo() []LetInfo {
 	var out []LetInfo
 	for _, e := range r.letOrder {
-		info := LetInfo{Name: e.stmt.Name.Text, Kind: describe(e.val), Dim: e.val.dim, Span: e.stmt.Name.Span, Given: e.given}
+		info := LetInfo{Name: e.stmt.Name.Text, Kind: describe(e.val), Dim: e.val.dim, Span: r.asTyped(e.stmt.Name.Span), Given: e.given}
 		if !e.val.bad && e.state == done {
 			info.Value = r.values[e.index]
 			if d := r.tmpl.Lets[e.index].Doubt; d != nil {

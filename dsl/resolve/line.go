@@ -152,7 +152,7 @@ func (r *resolver) walk(e *lineEntry) {
 // addElement gives a name within a line.
 func (r *resolver) addElement(e *lineEntry, name syntax.Label, el element) bool {
 	if name.Index != nil {
-		r.notYet(name.Span, "a name made from the row of a table", "")
+		r.notYet(name.Span, "a name made from a row outside the block that goes through the rows", "inside it hanger[ROW.mark] makes hanger_H1 of a row with the mark H1; write that")
 		return false
 	}
 	el.line, el.span = e.index, name.Span

@@ -106,6 +106,12 @@ func (r *resolver) take(name, text string, chain []string) {
 		case *syntax.Version:
 		case *syntax.Let, *syntax.Stock, *syntax.Law, *syntax.Broken:
 			r.statements = append(r.statements, s)
+		case *syntax.Each:
+			if !used {
+				r.each(s)
+				continue
+			}
+			r.warnAt(firstWord(s.Place()), "not-taken", "`use` takes only let, stock and law statements from a file", "this statement is left out", "")
 		case *syntax.Title, *syntax.Note, *syntax.About:
 			if !used {
 				r.statements = append(r.statements, s)

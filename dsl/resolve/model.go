@@ -27,8 +27,6 @@ func (r *resolver) resolveModel() {
 			r.resolveWatch(s)
 		case *syntax.Law:
 			r.notYet(s.Name.Span, "a law written in the file", "")
-		case *syntax.Each:
-			r.notYet(firstWord(s.Span), "repetition for every row of a table", "write the lines out")
 		}
 	}
 	r.resolveRun()

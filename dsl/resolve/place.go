@@ -20,7 +20,7 @@ const lineKind = "line"
 func (r *resolver) find(n *syntax.Name, subject string) (element, bool) {
 	for _, p := range n.Parts {
 		if p.Index != nil || p.Quoted {
-			r.notYet(n.Span, "a name made from the row of a table", "")
+			r.notYet(n.Span, "a name made from a row outside the block that goes through the rows", "inside it hanger[ROW.mark] makes hanger_H1 of a row with the mark H1; write that")
 			return element{}, false
 		}
 	}

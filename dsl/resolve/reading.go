@@ -337,7 +337,7 @@ func (r *resolver) fitTo(n *syntax.Name, out *scenario.Fit) bool {
 
 // record compiles which file a record is and what its channels saw.
 func (r *resolver) record(s *syntax.Record) {
-	out := scenario.Record{Name: s.Name.Text, Path: s.Path.Text, From: r.pathOf(s.Span.File), About: abouts(s.Abouts)}
+	out := scenario.Record{Name: s.Name.Text, Path: s.Path.Text, From: s.Span.File.Name(), About: abouts(s.Abouts)}
 	r.path("record."+out.Name, s.Name.Span)
 	ok := !s.Incomplete
 	for i, t := range s.Times {
@@ -415,14 +415,4 @@ func (r *resolver) columnOf(e syntax.Expr) (name string, number int, ok bool) {
 		return "", int(e.Value), true
 	}
 	return "", 0, false
-}
-
-// pathOf is the path of a file that was read.
-func (r *resolver) pathOf(f *diag.File) string {
-	for _, s := range r.sources {
-		if s.File == f {
-			return s.Path
-		}
-	}
-	return ""
 }

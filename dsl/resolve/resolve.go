@@ -96,7 +96,7 @@ func Resolve(fsys fs.FS, name string, opts Options) Result {
 	r := &resolver{
 		fsys: fsys, opts: opts, tmpl: &scenario.Template{}, paths: Paths{},
 		top: map[string]symbol{}, lets: map[string]*letEntry{}, stocks: map[string]*stockEntry{}, builtin: map[string]*stockEntry{}, lines: map[string]*lineEntry{},
-		elements: map[string][]element{}, watches: map[string]int{}, units: map[string]unitRead{}, tables: map[string]*csvFile{}, typed: map[*diag.File]*diag.File{}, broken: map[string]bool{}, parts: map[string]string{},
+		elements: map[string][]element{}, watches: map[string]int{}, units: map[string]unitRead{}, tables: map[string]*csvFile{}, typed: map[*diag.File]*diag.File{}, mades: map[*diag.File]*made{}, broken: map[string]bool{}, parts: map[string]string{},
 	}
 	r.load(name)
 	r.declare()
@@ -153,6 +153,8 @@ type resolver struct {
 	units  map[string]unitRead
 	tables map[string]*csvFile
 	typed  map[*diag.File]*diag.File // files made of values from outside, and what was typed
+	mades  map[*diag.File]*made      // texts made of each blocks, and where they come from
+	made   int                       // bytes of them
 	depth  int                       // of the expression being compiled
 	wanted *unit.Dim                 // of the number that is being read, nil where nothing is known
 	// partsUnsure: a line could not be read whole, so that a part may exist unseen.
