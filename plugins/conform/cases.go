@@ -17,6 +17,8 @@ type Case struct {
 	Slope func(line int, x, t float64) float64
 	// Rate is du/dt, m/s.
 	Rate func(line int, x, t float64) float64
+	// Beyond tells that there is more to it than ideal strings: a solver may refuse.
+	Beyond bool
 }
 
 // maker builds a case from a network without loads and a motion for each line.
@@ -65,7 +67,8 @@ func (k *maker) finish(name string, seconds float64) Case {
 			s := &line.Segments[si]
 			q := formula.Mul(formula.Const(s.MassPerLength), m.at(0, 2))
 			q = formula.Add(q, formula.Mul(formula.Const(s.Viscous), m.at(0, 1)))
-			q = formula.Sub(q, formula.Mul(formula.Const(s.Tension), m.at(2, 0)))
+			q = formula.Sub(q, k.pulled(s, m, x))
+			q = formula.Add(q, k.sagPull(li, si))
 			local := substitute(q, formula.ArgX, formula.Add(formula.Arg(formula.ArgX), formula.Const(x)))
 			net.Presses = append(net.Presses, scenario.PressOf[float64]{
 				Name: fmt.Sprintf("q%d_%d", li, si), Along: scenario.SpanOf{Line: li, Segment: si}, Force: scenario.History{Value: local},
@@ -107,20 +110,21 @@ func (k *maker) nodes(li int) {
 		}
 		if ni > 0 {
 			s := &line.Segments[ni-1]
-			force = formula.Add(force, formula.Mul(formula.Const(s.Tension), at(m.at(1, 0))))
+			force = formula.Add(force, at(crossForce(s, m, s.Length)))
 			if n.Absorbing {
 				c += math.Sqrt(s.Tension * s.MassPerLength)
 			}
 		}
 		if ni < len(line.Segments) {
 			s := &line.Segments[ni]
-			force = formula.Sub(force, formula.Mul(formula.Const(s.Tension), at(m.at(1, 0))))
+			force = formula.Sub(force, at(crossForce(s, m, 0)))
 			if n.Absorbing {
 				c += math.Sqrt(s.Tension * s.MassPerLength)
 			}
 		}
 		force = formula.Add(force, formula.Mul(formula.Const(c), at(m.at(0, 1))))
 		force = formula.Add(force, formula.Mul(formula.Const(n.Spring), at(m.at(0, 0))))
+		force = formula.Add(force, k.sagAt(li, ni))
 		if !n.Fixed && !moved[ni] {
 			k.push(fmt.Sprintf("f%d_%d", li, ni), scenario.Place{Line: li, Node: ni}, force)
 		}

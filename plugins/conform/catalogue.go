@@ -74,7 +74,7 @@ func Cases() []Case {
 		}}
 	})
 	out = append(out, bracketCase(), tunedCase())
-	return out
+	return append(out, realCases()...)
 }
 
 // bracketCase has a dashpot behind a bracket. The dashpot's own end moves as
@@ -85,7 +85,7 @@ func bracketCase() Case {
 	joint := scenario.Node{Dashpots: []scenario.DashpotOf[float64]{{C: C, Bracket: true, Through: K}}}
 	k.line([]scenario.Node{{Fixed: true}, joint, {Fixed: true}}, segment("s", at, 0.5, 2400, 0), segment("u", length-at, 0.9, 2400, 0))
 	q := rise(11)
-	course := make3(func(i int) formula.Program {
+	course := jetOf(func(i int) formula.Program {
 		return formula.Add(q[i], formula.Mul(formula.Const(C/K), derivative(11, i+1)))
 	})
 	k.motions = []motion{{{shape(length, true), course}}}
@@ -97,7 +97,7 @@ func bracketCase() Case {
 	return c
 }
 
-func make3(f func(i int) formula.Program) jet { return jet{f(0), f(1), f(2)} }
+func jetOf(f func(i int) formula.Program) jet { return jet{f(0), f(1), f(2), f(3), f(4)} }
 
 // derivative is the n-th derivative of rise(w), n from 1.
 func derivative(w float64, n int) formula.Program {
@@ -117,7 +117,7 @@ func tunedCase() Case {
 	k := &maker{net: &scenario.Network{}}
 	joint := scenario.Node{Mass: 0.4, Tuned: []scenario.TunedOf[float64]{{Mass: M, Spring: K}}}
 	k.line([]scenario.Node{{Fixed: true}, joint, {Fixed: true}}, segment("s", at, 0.5, 2400, 0), segment("u", length-at, 0.9, 2400, 0))
-	course := make3(func(i int) formula.Program {
+	course := jetOf(func(i int) formula.Program {
 		own := rise(7)[i]
 		return formula.Add(own, formula.Mul(formula.Const(M/K), derivative(7, i+2)))
 	})

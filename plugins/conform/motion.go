@@ -6,8 +6,8 @@ import (
 	"github.com/tautspan/tautspan/engine/formula"
 )
 
-// jet is a function of one argument with its first two derivatives.
-type jet [3]formula.Program
+// jet is a function of one argument with its first four derivatives.
+type jet [5]formula.Program
 
 // cosine is a cos(k z + phase) of argument arg.
 func cosine(arg int, a, k, phase float64) jet {
@@ -21,6 +21,8 @@ func cosine(arg int, a, k, phase float64) jet {
 		formula.Mul(c(a), angle(0)),
 		formula.Mul(c(a*k), angle(math.Pi/2)),
 		formula.Mul(c(a*k*k), angle(math.Pi)),
+		formula.Mul(c(a*k*k*k), angle(3*math.Pi/2)),
+		formula.Mul(c(a*k*k*k*k), angle(0)),
 	}
 }
 

@@ -49,6 +49,7 @@ type meter struct {
 	stiff   *stiff // nil: no dashpot is too stiff for the quadrature
 	acct    solver.Energy
 	k, kc   []*source    // per prescribed node: minus its stiffness and loss columns
+	km      []*source    // and its mass column; nil where there is none
 	a, j    []float64    // acceleration and its derivative
 	i       []float64    // second derivative of the acceleration
 	c       [3][]float64 // loss force of velocity, acceleration and its derivative
@@ -63,7 +64,7 @@ func newMeter(s *system, op operator, ex *excitation) *meter {
 	n := op.size()
 	m := &meter{sys: s, op: op, ex: ex, a: make([]float64, n), j: make([]float64, n),
 		i: make([]float64, n), rd: make([]float64, len(s.brackets)), rdd: make([]float64, len(s.brackets)),
-		k: make([]*source, len(s.moved)), kc: make([]*source, len(s.moved))}
+		k: make([]*source, len(s.moved)), kc: make([]*source, len(s.moved)), km: make([]*source, len(s.moved))}
 	for q := range m.f {
 		m.f[q] = make([]float64, n)
 	}
@@ -72,7 +73,7 @@ func newMeter(s *system, op operator, ex *excitation) *meter {
 	}
 	m.lossy = len(s.brackets) > 0
 	for i := range s.elements {
-		m.lossy = m.lossy || s.elements[i].rate != 0
+		m.lossy = m.lossy || s.elements[i].lossy()
 	}
 	for _, rows := range [][][]entry{s.rows, s.movedPF, s.movedPP} {
 		for _, row := range rows {
@@ -83,9 +84,12 @@ func newMeter(s *system, op operator, ex *excitation) *meter {
 	}
 	for i := range ex.sources {
 		if src := &ex.sources[i]; src.moved {
-			if src.velocity {
+			switch {
+			case src.velocity:
 				m.kc[src.node] = src
-			} else {
+			case src.accelerates:
+				m.km[src.node] = src
+			default:
 				m.k[src.node] = src
 			}
 		}
@@ -216,9 +220,18 @@ func (m *meter) moving(st *state, tau, h float64, work, loss *rates) {
 				s[q] += 2 * d[q]
 			}
 		}
+		if src := m.km[i]; src != nil {
+			p := src.pattern[:m.op.size()]
+			for q, d := range [3][]float64{m.a, m.j, m.i} {
+				r[q] -= dot(p, d)
+			}
+		}
 		for _, t := range m.sys.movedPP[i] {
 			for q := range r {
 				r[q] += t.k*u[t.col][q] + t.c*v[t.col][q]
+				if t.m != 0 {
+					r[q] += t.m * polyAt(&m.ex.vp[t.col], tau, h, q+1)
+				}
 				s[q] += t.c * v[t.col][q]
 			}
 		}
@@ -277,8 +290,11 @@ func (m *meter) stored(st *state, s *snapshot) float64 {
 		if src != nil {
 			e -= dot(src.pattern[:m.op.size()], st.x) * s.up[i]
 		}
+		if src := m.km[i]; src != nil {
+			e -= dot(src.pattern[:m.op.size()], st.v) * s.vp[i]
+		}
 		for _, t := range m.sys.movedPP[i] {
-			e += t.k * s.up[i] * s.up[t.col] / 2
+			e += t.k*s.up[i]*s.up[t.col]/2 + t.m*s.vp[i]*s.vp[t.col]/2
 		}
 	}
 	return e

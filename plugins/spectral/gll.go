@@ -88,6 +88,7 @@ type reference struct {
 	top    float64     // largest eigenvalue with free ends
 	v      []float64   // v[i*(p-1)+k]: value at inner point i+1 of mode k; v' diag(w) v = 1
 	gx, gw []float64   // p+2 Gauss points and weights, for loads along the element
+	gl     []float64   // gl[g*(p+1)+j]: l_j there
 	// kappa[k] = sum_i v[i][k] k[i][0] is the pull of mode k on the first end. The
 	// modes are symmetric or antisymmetric about the middle; the first even of them
 	// are symmetric, with the same pull on the other end, the rest pull it the other way.
@@ -120,6 +121,10 @@ func newReference(p int) (*reference, bool) {
 			}
 		}
 		r.d[i][i] = -sum // a constant has no slope, exactly
+	}
+	r.gl = make([]float64, len(r.gx)*n)
+	for g, x := range r.gx {
+		r.shape(r.gl[g*n:(g+1)*n], x)
 	}
 	r.k = square(n)
 	for i := 0; i < n; i++ {
@@ -242,9 +247,11 @@ func (r *reference) slope(dst, work []float64, x float64) []float64 {
 	return dst
 }
 
-func square(n int) [][]float64 {
-	flat := make([]float64, n*n)
-	out := make([][]float64, n)
+func square(n int) [][]float64 { return rectangle(n, n) }
+
+func rectangle(rows, n int) [][]float64 {
+	flat := make([]float64, rows*n)
+	out := make([][]float64, rows)
 	for i := range out {
 		out[i] = flat[i*n : (i+1)*n]
 	}

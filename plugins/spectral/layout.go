@@ -24,7 +24,8 @@ type layout struct {
 
 // stretch is a run of equal elements inside a piece.
 type stretch struct {
-	mark     int // border at its end: index among the piece's border marks; -1 the piece's end
+	mark     int     // border at its end: index among the piece's border marks; -1 no mark
+	share    float64 // without mark: where it ends as a share of the piece's length; 0 the piece's end
 	elements int
 	degree   int
 }
@@ -33,6 +34,7 @@ type stretch struct {
 const (
 	elementPhase = 28.0 // rad of the highest wave that one long element takes: degree 24
 	kinkedPhase  = 20.0 // the same for data with kinks: degree 15
+	bentPhase    = 12.0 // the same of elements that bend: rounding grows fast with their degree
 	snapPhase    = 0.05 // rad; a mark nearer to a border than this gets none of its own
 	energyPhase  = 1.2  // rad of the highest wave per substep, for the energy account's quadrature
 	loadPhase    = 0.8  // rad of the loads' highest frequency per substep at level 0
@@ -61,13 +63,13 @@ func resolved(m *mesh.Mesh, effort int) (omega float64, capped bool) {
 	for _, l := range m.Lines {
 		t := 0.0
 		for _, p := range l.Pieces {
-			t += m.Pieces[p].TravelTime()
+			t += travelTime(&m.Pieces[p])
 		}
 		slowest, total = math.Max(slowest, t), total+t
 	}
 	if total == 0 {
 		for i := range m.Pieces {
-			total += m.Pieces[i].TravelTime()
+			total += travelTime(&m.Pieces[i])
 		}
 		slowest = total
 	}
@@ -75,8 +77,12 @@ func resolved(m *mesh.Mesh, effort int) (omega float64, capped bool) {
 		return 1, false
 	}
 	least, most := halfWaves(effort, m.Jump)
-	omega = math.Max(2*math.Pi*m.Band, math.Pi*least/slowest)
-	if limit := math.Max(math.Pi*most/total, math.Pi*least/slowest); omega > limit {
+	least, most = least*math.Pi/slowest, most*math.Pi/total
+	if m.Features()&mesh.Bending != 0 {
+		least, most = stiffer(m, least), stiffer(m, most)
+	}
+	omega = math.Max(2*math.Pi*m.Band, least)
+	if limit := math.Max(most, least); omega > limit {
 		return limit, true
 	}
 	return omega, false
@@ -110,26 +116,37 @@ func newLayout(m *mesh.Mesh, req solver.Request) (*layout, bool) {
 	scale := math.Pow(ratio, float64(req.Level))
 	for i := range m.Pieces {
 		p := &m.Pieces[i]
-		c := p.WaveSpeed()
+		wave := omega / p.WaveSpeed() // rad/m
+		if p.Bending > 0 || p.TensionRise != 0 {
+			wave = waveNumber(p, omega)
+		}
 		last := 0.0
-		add := func(mark int, to float64) {
-			theta := omega * (to - last) / c
+		add := func(mark int, share, to float64) {
+			theta := wave * (to - last)
 			phase, margin := elementPhase, 5.0
 			if m.Jump <= 2 {
 				phase, margin = kinkedPhase, 0
 			}
+			if p.Bending > 0 {
+				phase = bentPhase
+			}
 			n := max(1, int(math.Round(theta/phase)))
-			d := float64(degreeFor(theta/float64(n), margin))
-			d = math.Min(math.Round(d*scale), maxDegree)
-			lay.pieces[i] = append(lay.pieces[i], stretch{mark: mark, elements: n, degree: int(d)})
+			d, most := float64(degreeFor(theta/float64(n), margin)), float64(maxDegree)
+			if p.Bending > 0 {
+				d, most = math.Max(d, layerDegree(p, to-last)), maxBeam
+			}
+			d = math.Min(math.Round(d*scale), most)
+			lay.pieces[i] = append(lay.pieces[i], stretch{mark: mark, share: share, elements: n, degree: int(d)})
 			last = to
 		}
 		for k, at := range borders(p) {
-			if omega*math.Min(at-last, p.Length-at)/c > snapPhase {
-				add(k, at)
+			if wave*math.Min(at-last, p.Length-at) > snapPhase {
+				layers(p, last, at, add)
+				add(k, 0, at)
 			}
 		}
-		add(-1, p.Length)
+		layers(p, last, p.Length, add)
+		add(-1, 0, p.Length)
 	}
 	return lay, capped
 }
@@ -146,13 +163,10 @@ func (lay *layout) fits(m *mesh.Mesh) bool {
 		at := borders(&m.Pieces[i])
 		last := 0.0
 		for _, s := range lay.pieces[i] {
-			to := m.Pieces[i].Length
 			if s.mark >= len(at) {
 				return false
 			}
-			if s.mark >= 0 {
-				to = at[s.mark]
-			}
+			to := s.end(&m.Pieces[i], at)
 			if !(to > last) {
 				return false
 			}

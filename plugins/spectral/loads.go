@@ -17,6 +17,8 @@ type source struct {
 	// Of a moved source: which prescribed node, and whether it follows its velocity.
 	node     int
 	velocity bool
+	// accelerates: it follows its acceleration, the derivative of its velocity's polynomial.
+	accelerates bool
 }
 
 // field is a load whose pattern changes with time: it adds its element loads.
@@ -125,6 +127,10 @@ func (x *excitation) addSource(at func(float64) float64, arrow []float64) {
 
 // spread adds an element's nodal loads (N) to a vector of arrow coordinates.
 func (s *system) spread(dst []float64, e *element, nodal []float64) {
+	if e.body != nil {
+		s.spreadBody(dst, e, nodal)
+		return
+	}
 	p := e.ref.p
 	root := 1 / math.Sqrt(e.mass)
 	out := dst[e.first : e.first+p-1]
@@ -172,7 +178,7 @@ func (x *excitation) addPush(p *mesh.Push) {
 		v[x.sys.inner+end] = 1
 	} else {
 		e, at := x.sys.find(p.At.Piece, p.At.At)
-		x.sys.spread(v, e, e.ref.shape(make([]float64, e.ref.p+1), at))
+		x.sys.spread(v, e, e.values(make([]float64, e.ref.p+1), at, 0))
 	}
 	x.addSource(history(p.Force.Value, 0), v)
 }
@@ -211,7 +217,9 @@ func (s *system) press(p *mesh.Press, q func(float64) float64, add func(*element
 	for _, part := range p.Parts {
 		for _, i := range s.byPiece[part.Piece] {
 			e := &s.elements[i]
-			lo, hi := math.Max(part.From, e.s0), math.Min(part.To, e.s0+e.h)
+			lo, hi := e.s0, e.s0+e.h
+			whole := part.From <= lo && part.To >= hi
+			lo, hi = math.Max(part.From, lo), math.Min(part.To, hi)
 			if !(hi > lo) {
 				continue
 			}
@@ -219,9 +227,14 @@ func (s *system) press(p *mesh.Press, q func(float64) float64, add func(*element
 			for g, gx := range e.ref.gx {
 				at := (lo+hi)/2 + (hi-lo)/2*gx
 				f := q(part.Origin+at) * e.ref.gw[g] * (hi - lo) / 2
-				e.ref.shape(l, 2*(at-e.s0)/e.h-1)
-				for k := range l {
-					nodal[k] += f * l[k]
+				at0 := l
+				if whole {
+					at0 = e.atGauss(g)
+				} else {
+					e.values(l, 2*(at-e.s0)/e.h-1, 0)
+				}
+				for k, l := range at0 {
+					nodal[k] += f * l
 				}
 			}
 			add(e, nodal)
@@ -280,7 +293,7 @@ func (x *excitation) addRoll(r *mesh.Roll) {
 			p := &s.m.Pieces[pi]
 			if at <= p.X0+p.Length || i == len(line.Pieces)-1 {
 				e, ref := s.find(pi, at-p.X0)
-				nodal := e.ref.shape(make([]float64, e.ref.p+1), ref)
+				nodal := e.values(make([]float64, e.ref.p+1), ref, 0)
 				for k := range nodal {
 					nodal[k] *= r.Force
 				}
@@ -298,8 +311,14 @@ func (x *excitation) addMotion(i int, m *mesh.Motion) {
 	x.motions = append(x.motions, *m)
 	x.breaks = append(x.breaks, m.Breaks...)
 	k, c := x.zeros(), x.zeros()
+	mass := x.zeros()
+	lossy, heavy := false, false
 	for e := range s.elements {
 		el := &s.elements[e]
+		if el.body != nil {
+			lossy, heavy = el.column(-2-i, c, mass) || lossy, true
+			continue
+		}
 		for a := 0; a < 2; a++ {
 			if el.end[a] == -2-i {
 				for _, half := range el.halves() {
@@ -311,11 +330,16 @@ func (x *excitation) addMotion(i int, m *mesh.Motion) {
 			}
 		}
 	}
-	lossy := false
 	for _, t := range s.movedPF[i] {
 		k[s.inner+t.col] -= t.k
 		c[s.inner+t.col] -= t.c
-		lossy = lossy || t.c != 0
+		mass[s.inner+t.col] -= t.m
+		lossy, heavy = lossy || t.c != 0, heavy || t.m != 0
+	}
+	for _, sg := range s.sags {
+		for q, w := range sg.w {
+			k[q] -= sg.g * sg.moved[i] * w
+		}
 	}
 	x.addSource(m.Displacement, k)
 	x.sources[len(x.sources)-1].moved, x.sources[len(x.sources)-1].node = true, i
@@ -323,6 +347,11 @@ func (x *excitation) addMotion(i int, m *mesh.Motion) {
 		x.addSource(m.Velocity, c)
 		last := &x.sources[len(x.sources)-1]
 		last.moved, last.node, last.velocity = true, i, true
+	}
+	if heavy {
+		x.addSource(m.Velocity, mass)
+		last := &x.sources[len(x.sources)-1]
+		last.moved, last.node, last.accelerates = true, i, true
 	}
 }
 
@@ -346,6 +375,11 @@ func (x *excitation) over(t, h float64) {
 		tau, active := x.sample(src.at, t, h)
 		if !active {
 			continue
+		}
+		if src.accelerates {
+			for j := range tau {
+				tau[j] = polyAt(&tau, 0, h, j+1) * math.Pow(h, float64(j))
+			}
 		}
 		src.add(&x.total, &tau)
 		if !src.moved && len(x.motions) > 0 {

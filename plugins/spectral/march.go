@@ -36,7 +36,7 @@ func (w window) tau(t float64) float64 { return (t - w.from) / (w.to - w.from) }
 func newWalk(j *job, op operator, series [][][]float64) *walk {
 	w := &walk{job: j, op: op, ex: newExcitation(j.sys, op)}
 	w.meter = newMeter(j.sys, op, w.ex)
-	if !j.lay.modal {
+	if !j.lay.modal && !j.sys.frame {
 		w.meter.stiff = newStiff(j.sys, math.Max(j.lay.quiet, j.lay.loaded))
 	}
 	w.rec = recorder{taps: newTaps(j.sys, op, series), sub: j.sub, every: j.m.Timing.Every}
@@ -67,11 +67,15 @@ func (w *walk) begin() {
 			momentum[end] = s.m.Nodes[i].Mass * s.m.Nodes[i].StartRate
 		}
 	}
-	for i := range s.elements {
-		s.startElement(&s.elements[i], x, v, momentum)
-	}
-	for i, p := range momentum {
-		v[s.inner+i] = p / s.mass[i]
+	if s.frame {
+		s.startFrame(x, v)
+	} else {
+		for i := range s.elements {
+			s.startElement(&s.elements[i], x, v, momentum)
+		}
+		for i, p := range momentum {
+			v[s.inner+i] = p / s.mass[i]
+		}
 	}
 	copy(w.st.x, w.op.enter(x))
 	copy(w.st.v, w.op.enter(v))
@@ -231,7 +235,11 @@ func (w *walk) baseStep(k int, h float64) {
 // k. It returns into how many substeps, each a window, that time is to be cut; a
 // window longer than it reaches on over whole base steps.
 func (w *walk) openWindow(t, end, length float64, k int, h float64) float64 {
-	for _, limit := range [2]float64{w.lay.quiet, w.lay.loaded} {
+	limits := []float64{w.lay.quiet, w.lay.loaded}
+	if w.ex.total.active { // and so it will be, most likely: look at the loads once
+		limits = limits[1:]
+	}
+	for _, limit := range limits {
 		n := math.Max(1, math.Ceil(length/limit-1e-9))
 		to := t + length/n
 		if more := w.further(end, limit-length, k, h); n == 1 && more > 0 {

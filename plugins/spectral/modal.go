@@ -22,6 +22,7 @@ type modal struct {
 	omega2 []float64 // 1/s^2
 	phi    []float64 // phi[k*n+i]: arrow coordinate i of mode k, unit mass
 	mass   []float64 // of the arrow coordinates, kg or 1
+	frame  *system   // whose coordinates share mass; nil: they do not
 	plans  []*modalPlan
 }
 
@@ -49,6 +50,9 @@ func newModal(s *system, rate float64) (*modal, bool) {
 		if i >= s.inner {
 			m.mass[i] = s.mass[i-s.inner]
 		}
+	}
+	if s.frame {
+		return m, m.framed(s)
 	}
 	k := mat.NewSymDense(n, nil)
 	for e := range s.elements {
@@ -258,6 +262,10 @@ func (m *modal) row(arrow []float64) []float64 {
 // enter is phi' M x.
 func (m *modal) enter(arrow []float64) []float64 {
 	w := make([]float64, len(arrow))
+	if m.frame != nil {
+		m.frame.inertia(w, arrow)
+		return m.row(w)
+	}
 	for i := range w {
 		w[i] = m.mass[i] * arrow[i]
 	}

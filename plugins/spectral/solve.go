@@ -11,7 +11,7 @@ import (
 
 const (
 	name    = "spectral"
-	version = "1"
+	version = "2"
 	// maxBytes is the memory that one solution may hold.
 	maxBytes = int64(2e9)
 	// modalMost is the largest network that is diagonalised as a whole: the cost
@@ -35,7 +35,7 @@ func (Solver) Version() string { return version }
 // chosen at about a second for its factors.
 const mostNodes = 1200
 
-// Refuses lists what the solver cannot represent: nothing of a taut string but a
+// Refuses lists what the solver cannot represent: of a network without laws, only a
 // free mass of no mass.
 func (Solver) Refuses(m *mesh.Mesh) []string {
 	if len(m.Nodes) > mostNodes {
@@ -241,7 +241,7 @@ func (j *job) lossy() bool {
 		return true
 	}
 	for i := range j.sys.elements {
-		if j.sys.elements[i].rate > 0 {
+		if j.sys.elements[i].lossy() {
 			return true
 		}
 	}
@@ -265,13 +265,16 @@ func (Solver) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, progr
 		return nil, err
 	}
 	var op operator
-	if j.lay.modal {
+	switch {
+	case j.lay.modal:
 		mo, ok := newModal(j.sys, j.rate)
 		if !ok {
 			return nil, fault("the network's eigenvalues did not converge")
 		}
 		op = mo
-	} else {
+	case j.sys.frame:
+		op = newFrame(j.sys, j.lay.hot)
+	default:
 		op = newArrow(j.sys, j.lay.hot)
 	}
 	if err := ctx.Err(); err != nil {

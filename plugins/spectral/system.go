@@ -20,12 +20,17 @@ type element struct {
 	rate    float64 // c/m, 1/s: viscous loss over mass
 	first   int     // its first inner coordinate
 	end     [2]int  // index among the end points, or endFixed, or -2-i
+	// Of an element of a frame: its body, and all its outer coordinates, values and
+	// slopes, numbered like end.
+	body *body
+	out  []int
 }
 
 // entry is one off- or on-diagonal term between end points.
 type entry struct {
 	col  int
 	k, c float64
+	m    float64 // kg; of frames, off the diagonal
 }
 
 // bracket is a spring and dashpot in series at an end point.
@@ -49,8 +54,12 @@ type system struct {
 	mass     []float64 // [ends] kg
 	rows     [][]entry // [ends] stiffness and loss between end points
 	brackets []bracket
-	nodeEnd  []int // of each mesh node: end point, endFixed or -2-i
-	moved    []int // mesh nodes moved as told
+	lowest   float64   // rad/s, about the lowest frequency
+	frame    bool      // elements are bodies, not ideal strings
+	turns    []int     // of each mesh node: its slope among the end points, or endFixed
+	sags     []sagging // lines whose sag couples all that moves on them
+	nodeEnd  []int     // of each mesh node: end point, endFixed or -2-i
+	moved    []int     // mesh nodes moved as told
 	movedM   []float64
 	movedPF  [][]entry // [moved] terms to free end points
 	movedPP  [][]entry // [moved] terms among moved nodes
@@ -92,6 +101,8 @@ func newSystem(m *mesh.Mesh, lay *layout) (*system, bool) {
 			s.ends++
 		}
 	}
+	s.frame = m.Features()&framed != 0
+	s.turnable()
 	if !s.place(lay) {
 		return nil, false
 	}
@@ -101,10 +112,19 @@ func newSystem(m *mesh.Mesh, lay *layout) (*system, bool) {
 	s.omega2 = make([]float64, s.inner)
 	s.kappa = make([]float64, s.inner)
 	for e := range s.elements {
-		s.assemble(&s.elements[e])
+		if s.frame {
+			s.assembleBody(&s.elements[e])
+		} else {
+			s.assemble(&s.elements[e])
+		}
 	}
 	s.attach()
-	s.highest()
+	if s.frame {
+		s.hang()
+		s.highestFramed(lay)
+	} else {
+		s.highest()
+	}
 	s.watchNodes()
 	return s, true
 }
@@ -112,35 +132,43 @@ func newSystem(m *mesh.Mesh, lay *layout) (*system, bool) {
 // place cuts the pieces into elements.
 func (s *system) place(lay *layout) bool {
 	refs := map[int]*reference{}
+	st := stock{beams: map[int]*beam{}, bodies: map[material]*body{}}
 	for i := range s.m.Pieces {
 		p := &s.m.Pieces[i]
 		at, last, from := borders(p), 0.0, s.nodeEnd[p.From]
-		for k, st := range lay.pieces[i] {
-			ref := refs[st.degree]
+		turn := s.turnAt(i, false)
+		for k, sr := range lay.pieces[i] {
+			ref := refs[sr.degree]
 			if ref == nil {
 				var ok bool
-				if ref, ok = newReference(st.degree); !ok {
+				if ref, ok = newReference(sr.degree); !ok {
 					return false
 				}
-				refs[st.degree] = ref
+				refs[sr.degree] = ref
 			}
-			to := p.Length
-			if st.mark >= 0 {
-				to = at[st.mark]
-			}
-			for n := 0; n < st.elements; n++ {
-				h := (to - last) / float64(st.elements)
+			to := sr.end(p, at)
+			for n := 0; n < sr.elements; n++ {
+				h := (to - last) / float64(sr.elements)
 				e := element{ref: ref, piece: i, s0: last + h*float64(n), h: h, tension: p.Tension,
 					mass: p.MassPerLength * h / 2, rate: p.Viscous / p.MassPerLength, first: s.inner}
 				e.end[0] = from
-				if k == len(lay.pieces[i])-1 && n == st.elements-1 {
+				final := k == len(lay.pieces[i])-1 && n == sr.elements-1
+				if final {
 					e.end[1] = s.nodeEnd[p.To]
 				} else {
 					e.end[1] = s.ends
 					s.ends++
 				}
 				from = e.end[1]
-				s.inner += st.degree - 1
+				if s.frame {
+					var ok bool
+					if turn, ok = s.dress(&e, st, turn, final); !ok {
+						return false
+					}
+					s.inner += e.body.ni
+				} else {
+					s.inner += sr.degree - 1
+				}
 				s.byPiece[i] = append(s.byPiece[i], len(s.elements))
 				s.elements = append(s.elements, e)
 			}
@@ -148,6 +176,17 @@ func (s *system) place(lay *layout) bool {
 		}
 	}
 	return true
+}
+
+// end is where a stretch ends, m from its piece's start.
+func (sr stretch) end(p *mesh.Piece, borders []float64) float64 {
+	switch {
+	case sr.mark >= 0:
+		return borders[sr.mark]
+	case sr.share > 0:
+		return sr.share * p.Length
+	}
+	return p.Length
 }
 
 // assemble adds one element: inner oscillators, their pull on the ends, and the
@@ -265,9 +304,11 @@ func (s *system) highest() {
 func (s *system) hung(limit float64) float64 {
 	attached := make([]bool, s.ends)
 	for i := range s.elements {
-		for _, end := range s.elements[i].end {
-			if end >= 0 {
-				attached[end] = true
+		for _, ends := range [][]int{s.elements[i].end[:], s.elements[i].out} {
+			for _, end := range ends {
+				if end >= 0 {
+					attached[end] = true
+				}
 			}
 		}
 	}
@@ -309,14 +350,17 @@ func (s *system) proportional() (rate float64, ok bool) {
 		if math.Abs(s.elements[i].rate-rate) > 1e-14*rate {
 			return 0, false
 		}
+		if b := s.elements[i].body; b != nil && b.cii != nil {
+			return 0, false
+		}
 	}
 	for a := range s.rows {
 		for _, t := range s.rows[a] {
-			want := 0.0
+			want := rate * t.m
 			if t.col == a {
 				want = rate * s.mass[a]
 			}
-			if math.Abs(t.c-want) > 1e-13*math.Max(want, math.Abs(t.c)) {
+			if math.Abs(t.c-want) > 1e-13*math.Max(math.Abs(want), math.Abs(t.c)) {
 				return 0, false
 			}
 		}

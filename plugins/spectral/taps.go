@@ -122,6 +122,9 @@ func (s *system) tapFor(op operator, ch *mesh.Channel, sp mesh.Spot, attached []
 			break
 		}
 		t.f[0], _ = s.slopeAt(op, sp, attached, true)
+		s.inLoss(op, t, sp, attached, 3)
+	case scenario.Moment:
+		s.momentAt(op, t, sp, attached)
 	case scenario.Tension:
 		_, t.fixed = s.slopeAt(op, sp, attached, false)
 	}
@@ -163,7 +166,7 @@ func (s *system) valueAt(op operator, sp mesh.Spot, attached [][]mesh.Attachment
 		return f
 	}
 	e, x := s.find(sp.Piece, sp.At)
-	return s.nodal(op, e, e.ref.shape(make([]float64, e.ref.p+1), x), 1)
+	return s.nodal(op, e, e.values(make([]float64, e.ref.p+1), x, 0), 1)
 }
 
 // slopeAt is du/dx at a spot, or the tension times it, and the tension there.
@@ -172,12 +175,15 @@ func (s *system) slopeAt(op operator, sp mesh.Spot, attached [][]mesh.Attachment
 	if e == nil {
 		return functional{}, 0
 	}
-	n := e.ref.p + 1
-	scale := 2 / e.h
-	if force {
-		scale *= e.tension
+	g := e.values(make([]float64, e.ref.p+1), x, 1)
+	if e.body != nil {
+		return s.bodySlope(op, e, g, x, force), e.body.tensionAt(x)
 	}
-	return s.nodal(op, e, e.ref.slope(make([]float64, n), make([]float64, n), x), scale), e.tension
+	scale := 1.0
+	if force {
+		scale = e.tension
+	}
+	return s.nodal(op, e, g, scale), e.tension
 }
 
 // nodal turns a form on an element's nodal displacements into a functional.
@@ -190,6 +196,10 @@ func (s *system) nodal(op operator, e *element, g []float64, scale float64) func
 }
 
 func (s *system) addNodal(row []float64, f *functional, e *element, g []float64, scale float64) {
+	if e.body != nil {
+		s.addNodalBody(row, f, e, g, scale)
+		return
+	}
 	p := e.ref.p
 	root := scale / math.Sqrt(e.mass)
 	for i := 1; i < p; i++ {
@@ -215,6 +225,10 @@ func (s *system) addNodal(row []float64, f *functional, e *element, g []float64,
 // the discrete form of T u_x that closes the energy account exactly and converges
 // as fast as the displacement.
 func (s *system) reactionAt(op operator, t *tap, node int, attached [][]mesh.Attachment) {
+	if s.frame {
+		s.reactionFramed(op, t, node, attached)
+		return
+	}
 	row := make([]float64, s.size())
 	loss, mass := 0.0, 0.0
 	for _, a := range attached[node] {

@@ -31,6 +31,9 @@ func validate(m *mesh.Mesh) error {
 		if !finite(n.Mass, n.Spring, n.Dashpot, n.Start, n.StartRate) || n.Mass < 0 || n.Spring < 0 || n.Dashpot < 0 {
 			return fault("node %q: mass %g kg, spring %g N/m, dashpot %g N s/m", n.Name, n.Mass, n.Spring, n.Dashpot)
 		}
+		if !finite(n.Rotary, n.Inertia) || n.Rotary < 0 || n.Inertia < 0 {
+			return fault("node %q: %g N m/rad against turning, inertia %g kg m^2", n.Name, n.Rotary, n.Inertia)
+		}
 		for _, b := range n.Brackets {
 			if !finite(b.K, b.C, b.Start) || b.K < 0 || b.C < 0 {
 				return fault("node %q: bracket %g N/m, %g N s/m", n.Name, b.K, b.C)
@@ -61,6 +64,10 @@ func validatePiece(m *mesh.Mesh, i int) error {
 		!(p.Length > 0) || !(p.MassPerLength > 0) || !(p.Tension > 0) || p.Viscous < 0 ||
 		!finite(p.TravelTime(), 1/p.TravelTime(), p.Impedance()) {
 		return fault("piece %d: %g m, %g kg/m, %g N, %g N s/m^2", i, p.Length, p.MassPerLength, p.Tension, p.Viscous)
+	}
+	end := p.Tension + p.TensionRise*p.Length
+	if !finite(end, p.Bending, p.Internal) || !(end > 0) || p.Bending < 0 || p.Internal < 0 {
+		return fault("piece %d: %g N at its end, bending %g N m^2, internal loss %g s", i, end, p.Bending, p.Internal)
 	}
 	last := 0.0
 	for _, k := range p.Marks {
@@ -106,6 +113,9 @@ func validateActions(m *mesh.Mesh) error {
 				return fault("line %q has piece %d", l.Name, p)
 			}
 		}
+		if l.Sag != nil && (len(l.Sag.Pieces) != len(l.Pieces) || !finite(l.Sag.Stiffness) || !finite(l.Sag.Pieces...) || l.Sag.Stiffness < 0) {
+			return fault("line %q: sag", l.Name)
+		}
 	}
 	for c := range m.Channels {
 		for _, s := range m.Channels[c].Spots {
@@ -119,7 +129,7 @@ func validateActions(m *mesh.Mesh) error {
 
 // refuses lists what has no equation of motion here.
 func refuses(m *mesh.Mesh) []string {
-	if beyond := m.Unknown(0); len(beyond) > 0 {
+	if beyond := m.Unknown(framed); len(beyond) > 0 {
 		return beyond
 	}
 	var out []string
