@@ -30,11 +30,12 @@ func Build(net *scenario.Network) (*Mesh, error) {
 		p := &b.m.Pieces[i]
 		sort.SliceStable(p.Marks, func(a, c int) bool { return p.Marks[a].At < p.Marks[c].At })
 	}
-	b.m.Jump = b.jump()
+	smoothness := b.smoothness()
+	b.m.Jump = int(math.Ceil(smoothness))
 	b.m.Band = b.band()
 	for i := range b.m.Channels {
 		c := &b.m.Channels[i]
-		c.Means = means(c.Quantity, b.m.Jump)
+		c.Means = means(c.Quantity, smoothness, b.stiffLine(c.Line))
 	}
 	return b.m, nil
 }
@@ -45,18 +46,39 @@ func timing(r *scenario.RunOf[float64]) Timing {
 }
 
 // means is how often a record must be averaged over one output interval to be
-// continuous, when derivatives of order jump and above may jump.
-func means(q scenario.Quantity, jump int) int {
-	order := 0
+// continuous, when the displacement grows anew by the given power of time. A
+// slope counts as a time derivative on a string, as half of one on a stiff line;
+// there a moment is one and a shear force one and a half.
+func means(q scenario.Quantity, smoothness float64, stiff bool) int {
+	order := 0.0
 	switch q {
-	case scenario.Velocity, scenario.Slope, scenario.Force:
+	case scenario.Velocity:
 		order = 1
+	case scenario.Slope, scenario.Force:
+		order = 1
+		if stiff {
+			order = map[scenario.Quantity]float64{scenario.Slope: 0.5, scenario.Force: 1.5}[q]
+		}
+	case scenario.Moment:
+		if stiff {
+			order = 1
+		}
 	case scenario.Acceleration:
 		order = 2
-	case scenario.Tension, scenario.Moment:
+	case scenario.Tension:
 		return 0
 	}
-	return min(max(0, order-jump+1), 2)
+	return min(max(0, int(math.Floor(order-smoothness))+1), 2)
+}
+
+// stiffLine tells whether a line has bending stiffness somewhere.
+func (b *builder) stiffLine(line int) bool {
+	for _, s := range b.net.Lines[line].Segments {
+		if s.Bending > 0 {
+			return true
+		}
+	}
+	return false
 }
 
 type builder struct {

@@ -6,6 +6,7 @@ import (
 
 	"github.com/tautspan/tautspan/engine/formula"
 	"github.com/tautspan/tautspan/engine/scenario"
+	"github.com/tautspan/tautspan/engine/statics"
 )
 
 // twoSegments is a line of 12 m and 30 m with a clamp between them.
@@ -184,16 +185,116 @@ func TestJumpOrders(t *testing.T) {
 
 func TestMeans(t *testing.T) {
 	for _, c := range []struct {
-		q    scenario.Quantity
-		jump int
-		want int
+		q          scenario.Quantity
+		smoothness float64
+		stiff      bool
+		want       int
 	}{
-		{scenario.Displacement, 1, 0}, {scenario.Velocity, 1, 1}, {scenario.Force, 1, 1}, {scenario.Acceleration, 1, 2},
-		{scenario.Velocity, 2, 0}, {scenario.Acceleration, 2, 1}, {scenario.Acceleration, SmoothJump, 0}, {scenario.Displacement, 0, 1}, {scenario.Tension, 1, 0},
+		{scenario.Displacement, 1, false, 0}, {scenario.Velocity, 1, false, 1}, {scenario.Force, 1, false, 1}, {scenario.Acceleration, 1, false, 2},
+		{scenario.Velocity, 2, false, 0}, {scenario.Acceleration, 2, false, 1}, {scenario.Acceleration, SmoothJump, false, 0},
+		{scenario.Displacement, 0, false, 1}, {scenario.Tension, 1, false, 0}, {scenario.Slope, 1, false, 1},
+		// A pluck of a stiff line: only the shear jumps, at its place, and the acceleration has no bound there.
+		{scenario.Displacement, 1.5, true, 0}, {scenario.Velocity, 1.5, true, 0}, {scenario.Slope, 1.5, true, 0}, {scenario.Moment, 1.5, true, 0},
+		{scenario.Force, 1.5, true, 1}, {scenario.Acceleration, 1.5, true, 1}, {scenario.Force, 1.5, false, 0},
+		// A support of a stiff line that sets off at once: its moment jumps, its shear has no bound.
+		{scenario.Moment, 1, true, 1}, {scenario.Force, 1, true, 1}, {scenario.Slope, 1, true, 0}, {scenario.Velocity, 1, true, 1},
 	} {
-		if got := means(c.q, c.jump); got != c.want {
-			t.Errorf("%v with jumps of order %d: %d means, want %d", c.q, c.jump, got, c.want)
+		if got := means(c.q, c.smoothness, c.stiff); got != c.want {
+			t.Errorf("%v, smoothness %g, stiff %v: %d means, want %d", c.q, c.smoothness, c.stiff, got, c.want)
 		}
+	}
+}
+
+// What TestMeans holds of a plucked stiff line, seen in its mode sum: on a pinned
+// beam of length pi with EI = m = 1, let go from a point force at a, the velocity
+// of that place is in proportion to the sum of sin^2(na) sin(n^2 t)/n^2, which
+// grows as the root of time, and its acceleration falls as the inverse of that.
+func TestVelocityAfterPluckOfBeam(t *testing.T) {
+	velocity := func(at float64) float64 {
+		sum := 0.0
+		for n := 1.0; n < 20000; n++ {
+			s := math.Sin(n * 1.1)
+			sum += s * s * math.Sin(n*n*at) / (n * n)
+		}
+		return sum
+	}
+	early, late := velocity(1e-4), velocity(4e-4)
+	if power := math.Log(late/early) / math.Log(4); math.Abs(power-0.5) > 0.01 {
+		t.Errorf("velocity grows as time to the power %.4f, want 1/2", power)
+	}
+}
+
+// A released pluck on a stiff line makes the acceleration jump, not the velocity,
+// also at a joint where a string begins; elsewhere on a string it is the velocity.
+func TestJumpOfStiffPluck(t *testing.T) {
+	for _, c := range []struct {
+		at   scenario.Place
+		want int
+	}{{inside(0, 1), 2}, {scenario.Place{Node: 1}, 2}, {inside(1, 4), 1}} {
+		net := twoSegments()
+		net.Lines[0].Segments[0].Bending = 500
+		net.Plucks = []scenario.PluckOf[float64]{{Name: "p", At: c.at, Force: 10}}
+		net.Watches = []scenario.Watch{{Name: "w", At: inside(0, 2), Quantities: []scenario.Quantity{scenario.Velocity, scenario.Force, scenario.Moment, scenario.Acceleration}}}
+		m := build(t, net)
+		if m.Jump != c.want {
+			t.Errorf("pluck at %+v: order %d, want %d", c.at, m.Jump, c.want)
+		}
+		rates := []int{0, 1, 0, 1}
+		if c.want == 1 { // the kink runs into the stiff part
+			rates = []int{1, 1, 1, 2}
+		}
+		for i, w := range rates {
+			if m.Channels[i].Means != w {
+				t.Errorf("pluck at %+v: %v has %d means, want %d", c.at, m.Channels[i].Quantity, m.Channels[i].Means, w)
+			}
+		}
+	}
+}
+
+// The static shapes that plucks leave in a mesh are those of statics, with bending,
+// sag and a hung mass, and the sag term is the same in both packages.
+func TestStartOfStiffSaggingLine(t *testing.T) {
+	net := twoSegments()
+	line := &net.Lines[0]
+	line.Sag = true
+	for i := range line.Segments {
+		line.Segments[i].Bending, line.Segments[i].Axial = 40, 3e6
+	}
+	line.Nodes[1].Tuned = []scenario.TunedOf[float64]{{Mass: 2, Spring: 900}}
+	net.Plucks = []scenario.PluckOf[float64]{{Name: "p", At: inside(1, 4), Force: 10}}
+	rest, err := statics.Hold(net)
+	if err != nil {
+		t.Fatal(err)
+	}
+	m := build(t, net)
+	area, hung := 0.0, 0
+	for i := range m.Pieces {
+		p := &m.Pieces[i]
+		for k := range 4000 {
+			s := (float64(k) + 0.5) * p.Length / 4000
+			if math.Abs(p.Start(s)-rest.Displacement(0, p.X0+s)) > 1e-15 {
+				t.Fatalf("piece %d at %g", i, s)
+			}
+			area += m.Lines[0].Sag.Pieces[i] * p.Start(s) * p.Length / 4000
+		}
+	}
+	for node, w := range m.Lines[0].Sag.Nodes {
+		area += w * m.Nodes[node].Start
+	}
+	extra := m.Lines[0].Sag.Stiffness * area
+	if got := rest.ExtraTension(0); math.Abs(got-extra) > 1e-6*extra {
+		t.Errorf("extra tension %.9g N, by the mesh's own term %.9g N", got, extra)
+	}
+	for i := range m.Nodes {
+		if n := &m.Nodes[i]; n.Line < 0 {
+			hung++
+			if at := m.Nodes[m.Links[0].A].Start; n.Start != at || at == 0 {
+				t.Errorf("the hung mass starts at %g, its clamp at %g", n.Start, at)
+			}
+		}
+	}
+	if hung != 1 {
+		t.Errorf("%d hung masses", hung)
 	}
 }
 

@@ -8,34 +8,73 @@ import (
 	"github.com/tautspan/tautspan/engine/scenario"
 )
 
-// jump finds the lowest order of derivative of the displacement that the
-// excitations make jump. A point force whose own derivative of order k jumps
-// gives a jump of order k+1, a distributed one k+2, a support's displacement k;
-// a pluck bends the start shape, order 1.
-func (b *builder) jump() int {
-	order := SmoothJump
-	note := func(j int) { order = min(order, j) }
+// smoothness is the least power of time by which the excitations make the
+// displacement grow anew somewhere, so that its derivative of that order, and no
+// lower one, jumps. A point force whose own derivative of order k jumps gives
+// k+1 on a string and k+3/2 on a stiff line (its wave spreads: u = t^(3/2) f(x/sqrt t)
+// after a step), a distributed one k+2, a support's displacement k. A pluck is a
+// force that is taken away. Where a start shape's derivative of order k jumps,
+// that of time does on a string, half of it on a stiff line.
+//
+// Source for the stiff line: Graff, Wave Motion in Elastic Solids (1975), sec.
+// 3.2, the beam under a point force (from memory).
+func (b *builder) smoothness() float64 {
+	least := float64(SmoothJump)
+	note := func(order float64) { least = math.Min(least, order) }
+	point := func(at Spot) float64 {
+		if b.stiffAt(at) {
+			return 1.5
+		}
+		return 1
+	}
 	for _, p := range b.net.Plucks {
 		if p.Until <= 0 {
-			note(1)
+			note(point(b.spot(p.At)))
 		}
 	}
 	for _, p := range b.m.Pushes {
-		note(1 + b.historyJump(p.Force))
+		note(point(p.At) + float64(b.historyJump(p.Force)))
 	}
 	for _, p := range b.m.Presses {
-		note(2 + b.historyJump(p.Force))
+		note(2 + float64(b.historyJump(p.Force)))
 	}
 	for range b.m.Rolls {
 		note(1)
 	}
 	for _, mv := range b.net.Moves {
-		note(int(mv.Kind) + b.historyJump(mv.Motion))
+		note(float64(int(mv.Kind) + b.historyJump(mv.Motion)))
 	}
 	for _, s := range b.net.Starts {
-		note(b.startJump(s))
+		order := float64(b.startJump(s))
+		if b.stiffAlong(s.Along) && order < SmoothJump {
+			order /= 2
+		}
+		note(order)
 	}
-	return order
+	return least
+}
+
+// stiffAt tells whether a point force there acts on bending stiffness: at a node
+// one piece with it is enough.
+func (b *builder) stiffAt(at Spot) bool {
+	if at.Node < 0 {
+		return b.m.Pieces[at.Piece].Bending > 0
+	}
+	for i := range b.m.Pieces {
+		if p := &b.m.Pieces[i]; p.Bending > 0 && (p.From == at.Node || p.To == at.Node) {
+			return true
+		}
+	}
+	return false
+}
+
+func (b *builder) stiffAlong(s scenario.SpanOf) bool {
+	for _, part := range b.along(s) {
+		if b.m.Pieces[part.Piece].Bending > 0 {
+			return true
+		}
+	}
+	return false
 }
 
 // historyJump is 0 where the history's value jumps at a break or at t = 0, 1

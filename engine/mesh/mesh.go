@@ -20,7 +20,8 @@ type Mesh struct {
 	// Jump is the lowest order of time or space derivative of the displacement
 	// that may jump somewhere (0: the displacement itself, 1: velocity and
 	// slope, as after a pluck, 2: acceleration, ...; SmoothJump: none).
-	// It follows from the excitations alone.
+	// It follows from the excitations alone. On a stiff line a released pluck
+	// leaves velocity and moment continuous: 2.
 	Jump int
 	// Band is an estimate of the highest frequency of note that the
 	// excitations feed in, Hz; 0 where they have none of their own (a pluck).

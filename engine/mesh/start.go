@@ -27,7 +27,7 @@ func (b *builder) starts() {
 			if a.End {
 				at = p.Length
 			}
-			z := p.Impedance()
+			z := max(p.Impedance(), 1e-300) // a rope that hangs free has none at its end
 			sum += z
 			n.Start += z * value(p.Start, at)
 			n.StartRate += z * value(p.StartRate, at)
