@@ -112,8 +112,10 @@ func (r *resolver) lineProperties(e *lineEntry) {
 			e.sideways = p.Choice.Text == "sideways"
 		case "at":
 			v := r.want(p.Value, plain, unit.Temperature, "a temperature")
-			if !v.bad {
-				r.inRange(v, p.Value, positive, "a temperature above absolute zero")
+			r.path("line."+e.name+".at", p.Value.Place())
+			if !v.bad && !r.inRange(v, p.Value, positive, "a temperature above absolute zero").bad {
+				line := &r.tmpl.Model.Lines[e.index]
+				line.Warm, line.Temperature = true, v.prog
 			}
 		}
 	}
@@ -250,6 +252,7 @@ func (r *resolver) addSegment(e *lineEntry, line *scenario.LineOf[formula.Progra
 		out.Stock = p.stock.stmt.Name.Text
 		out.MassPerLength, out.Axial, out.Strength, out.Bending = p.stock.mass, p.stock.axial, p.stock.strength, p.stock.bending
 		out.Viscous, out.Internal = p.stock.loss.viscous, p.stock.loss.internal
+		out.Expansion = p.stock.expansion
 		r.path(path+".mass", p.stock.massAt)
 		r.path(path+".axial", p.stock.axialAt)
 		r.path(path+".strength", p.stock.strongAt)

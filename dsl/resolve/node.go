@@ -82,6 +82,7 @@ func (n *nodeReader) property(p *syntax.Property) {
 		}
 	case "weighted":
 		n.line.weighted = true
+		r.tmpl.Model.Lines[n.line.index].Weighted = true
 		if n.line.sag.IsZero() {
 			r.warnAt(p.Span, "no-effect", "weighted has no effect here", "without `sag included` the tension stays as it is anyway", "")
 		}

@@ -12,19 +12,20 @@ import (
 
 // stockEntry is one stock with what a segment takes from it.
 type stockEntry struct {
-	stmt     *syntax.Stock
-	bad      bool // something in it was refused: its absences prove nothing
-	mass     formula.Program
-	massAt   diag.Span
-	axial    formula.Program
-	axialAt  diag.Span
-	strength formula.Program
-	strongAt diag.Span
-	bending  formula.Program // EI; the number 0 where nothing is said
-	bendAt   diag.Span
-	loss     lossSum
-	area     *formula.Program
-	young    *formula.Program
+	stmt      *syntax.Stock
+	bad       bool // something in it was refused: its absences prove nothing
+	mass      formula.Program
+	massAt    diag.Span
+	axial     formula.Program
+	axialAt   diag.Span
+	strength  formula.Program
+	strongAt  diag.Span
+	bending   formula.Program // EI; the number 0 where nothing is said
+	bendAt    diag.Span
+	loss      lossSum
+	expansion formula.Program // 1/K
+	area      *formula.Program
+	young     *formula.Program
 	// What EI can be from matter: wires that slide on one another, and one solid
 	// bar of the same metal area; nil where not known.
 	bendLow, bendHigh *formula.Program
@@ -83,6 +84,7 @@ func (r *resolver) resolveStock(e *stockEntry) {
 		}
 		got[word] = v.prog
 	}
+	e.expansion = got["expansion"]
 	r.stockStrength(e, said)
 	r.stockArea(e, said, got)
 	r.stockMass(e, said, got)

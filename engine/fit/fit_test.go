@@ -223,3 +223,24 @@ func TestNextReadingKeepsItsPromise(t *testing.T) {
 	again := solve(t, strings.Replace(text, "%s", rows+row(n.Mode), 1)+ask)
 	near(t, "half width after", 1.96*again.Best.Unknowns[0].U, n.To, 1e-3*n.To)
 }
+
+// A reading on a warm day tells the tension at the temperature of the line: taut
+// between fixed ends, EA expansion d less.
+func TestReadingAtAnotherTemperature(t *testing.T) {
+	text := strings.Replace(stringText("let mass = 0.00001 kg/m\nlet length = 100 m\n", "%s"), "axial 50 MN", "axial 50 MN\n expansion 12e-6 1/K", 1)
+	text = strings.Replace(text, " tension pull\n", " tension pull\n at 10 degC\n", 1)
+	warm := 50e6 * ((1+50e3/50e6)/(1+12e-6*25) - 1)
+	f := func(T float64) string { return scenarioNumber(math.Sqrt(T/0.00001) / 200) }
+	ask := "seek pull from 10 kN to 400 kN\n"
+	r := solve(t, strings.Replace(text, "%s", " frequency 1 = "+f(warm)+" Hz +- 0.1 % at 35 degC\n frequency 1 = "+f(50e3)+" Hz +- 0.1 % at 10 degC\n", 1)+ask)
+	near(t, "tension at 10 degC", r.Best.Unknowns[0].Value, 50e3, 1)
+	if r.Best.Chi2 > 1e-3 {
+		t.Errorf("the two days disagree: %g", r.Best.Chi2)
+	}
+	text = strings.Replace(text, " expansion 12e-6 1/K\n", "", 1)
+	_, err := New(templateOf(t, strings.Replace(text, "%s", " frequency 1 = 3 Hz +- 0.1 % at 35 degC\n", 1)+ask))
+	var p *scenario.PathError
+	if !errors.As(err, &p) || !strings.Contains(p.What, "expansion") {
+		t.Errorf("%v", err)
+	}
+}

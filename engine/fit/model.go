@@ -21,6 +21,7 @@ type config struct {
 	group    int
 	sag      bool
 	sideways bool
+	warm     *formula.Program // K; nil: at the line's own temperature
 	part     *scenario.Template
 	reads    map[int]bool
 
@@ -42,19 +43,23 @@ type prediction struct {
 
 // config finds or makes the config of a reading's statement.
 func (p *Problem) config(r *scenario.Reading, it *scenario.ReadingItem, path string) (int, error) {
-	if it.Warm {
-		return 0, &Error{Code: "not-yet", Path: path, What: "a reading at a temperature of its own cannot be fitted by this version yet", Hint: "leave the temperature out where it is that of the line"}
+	warm, err := p.warmth(r, it, path)
+	if err != nil {
+		return 0, err
 	}
 	first, last, err := p.stretch(r, it, path)
 	if err != nil {
 		return 0, err
 	}
 	for i, c := range p.configs {
-		if c.line == r.Line && c.sag == it.Sag && c.sideways == it.Sideways && c.first == first && c.last == last {
+		if c.line == r.Line && c.sag == it.Sag && c.sideways == it.Sideways && c.first == first && c.last == last && c.warmth() == text(warm) {
 			return i, nil
 		}
 	}
-	c := &config{line: r.Line, sag: it.Sag, sideways: it.Sideways, first: first, last: last, reads: map[int]bool{}}
+	c := &config{line: r.Line, sag: it.Sag, sideways: it.Sideways, first: first, last: last, warm: warm, reads: map[int]bool{}}
+	if warm != nil {
+		warm.LetsUsed(c.reads)
+	}
 	c.cut(p)
 	for _, other := range p.configs {
 		if other.group == c.group {
@@ -63,6 +68,43 @@ func (p *Problem) config(r *scenario.Reading, it *scenario.ReadingItem, path str
 	}
 	p.configs = append(p.configs, c)
 	return len(p.configs) - 1, nil
+}
+
+// text tells one temperature from another.
+func text(p *formula.Program) string {
+	if p == nil {
+		return ""
+	}
+	return p.String()
+}
+
+func (c *config) warmth() string { return text(c.warm) }
+
+// warmth is the temperature of a statement, nil where it says none or that of its
+// line. What the tension at that temperature follows from must be known.
+func (p *Problem) warmth(r *scenario.Reading, it *scenario.ReadingItem, path string) (*formula.Program, error) {
+	if !it.Warm {
+		return nil, nil
+	}
+	own := p.template.Model.Lines[r.Line].Temperature
+	for i := range p.template.Readings {
+		block := &p.template.Readings[i]
+		for k := range block.Items {
+			if path != fmt.Sprintf("reading.%s.%d", block.Name, k) {
+				continue
+			}
+			at := block.Items[k].Temperature
+			if p.template.Model.Lines[r.Line].Warm && at.String() == own.String() {
+				return nil, nil
+			}
+			net, err := p.template.Bind(p.start)
+			if err == nil {
+				_, err = statics.AtTemperature(&net.Lines[r.Line], it.Temperature)
+			}
+			return &at, err
+		}
+	}
+	return nil, nil
 }
 
 // stretch is the part of a line that a pulse runs up and down: between the held
@@ -206,6 +248,11 @@ func (c *config) predict(values []float64) prediction {
 		return prediction{err: err}
 	}
 	out := prediction{}
+	if c.warm != nil {
+		if net.Lines[c.own], err = statics.AtTemperature(&net.Lines[c.own], c.warm.Eval(values, nil)); err != nil {
+			return prediction{err: err}
+		}
+	}
 	line := &net.Lines[c.own]
 	if c.travel {
 		between := *line

@@ -300,7 +300,7 @@ func lineReads(l *scenario.LineOf[formula.Program], used map[int]bool) {
 			p.LetsUsed(used)
 		}
 	}
-	see(l.Incline)
+	see(l.Incline, l.Temperature)
 	for _, n := range l.Nodes {
 		see(n.Mass, n.Spring, n.Rotary)
 		for _, d := range n.Dashpots {
@@ -311,6 +311,6 @@ func lineReads(l *scenario.LineOf[formula.Program], used map[int]bool) {
 		}
 	}
 	for _, s := range l.Segments {
-		see(s.Length, s.MassPerLength, s.Tension, s.TensionRise, s.Bending, s.Internal, s.Axial, s.Viscous)
+		see(s.Length, s.MassPerLength, s.Tension, s.TensionRise, s.Bending, s.Internal, s.Axial, s.Viscous, s.Expansion)
 	}
 }

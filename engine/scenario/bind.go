@@ -152,7 +152,7 @@ func (t *Template) Bind(values []float64) (*Network, error) {
 }
 
 func (b *binder) line(l *LineOf[formula.Program]) Line {
-	out := Line{Name: l.Name, Sag: l.Sag, Incline: b.num(l.Incline, "line."+l.Name+".incline"), Nodes: make([]Node, len(l.Nodes)), Segments: make([]Segment, len(l.Segments))}
+	out := Line{Name: l.Name, Sag: l.Sag, Warm: l.Warm, Weighted: l.Weighted, Temperature: b.nonneg(l.Temperature, "line."+l.Name+".at"), Incline: b.num(l.Incline, "line."+l.Name+".incline"), Nodes: make([]Node, len(l.Nodes)), Segments: make([]Segment, len(l.Segments))}
 	base := "line." + l.Name + "."
 	for i := range l.Nodes { // in walking order, so that the first fault is the first in the text
 		out.Nodes[i] = b.node(&l.Nodes[i], base)
@@ -176,6 +176,7 @@ func (b *binder) segment(s *SegmentOf[formula.Program], base string) Segment {
 		Axial:         b.nonneg(s.Axial, path+"axial"),
 		Viscous:       b.nonneg(s.Viscous, path+"loss"),
 		Strength:      b.nonneg(s.Strength, path+"strength"),
+		Expansion:     b.num(s.Expansion, path+"expansion"),
 	}
 	b.tension(&out, path+"tension")
 	return out

@@ -25,6 +25,10 @@ type LineOf[V any] struct {
 	Segments []SegmentOf[V]
 	Incline  V    // rad, positive where the line rises in walking order
 	Sag      bool // with the shallow-cable term of Irvine and Caughey, vertical plane
+	// Temperature in K at which the tension holds; with Warm only.
+	Warm        bool
+	Temperature V
+	Weighted    bool // an end keeps the tension constant along the line
 }
 
 // NodeKind says what stands at a node.
@@ -83,6 +87,7 @@ type SegmentOf[V any] struct {
 	Axial         V // EA, N; 0 where not said
 	Viscous       V // N s/m^2: force per length and velocity
 	Strength      V // N; 0 where not said
+	Expansion     V // 1/K, with temperature; 0 where not said
 }
 
 // PlaceOf is a point of a line: a node, or a distance into a segment.
