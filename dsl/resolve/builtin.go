@@ -19,7 +19,7 @@ func (r *resolver) builtinStock(name string, used diag.Span) *stockEntry {
 	}
 	e := &stockEntry{
 		stmt: &syntax.Stock{At: syntax.At{Span: used}, Name: syntax.Label{At: syntax.At{Span: used}, Text: name}},
-		mass: formula.Const(s.Mass.SI), axial: formula.Const(s.Axial()), strength: formula.Const(s.Strength.SI),
+		mass: formula.Const(s.Mass.SI), axial: formula.Const(s.Axial()), strength: formula.Const(s.Strength.SI), diameter: formula.Const(s.Diameter.SI),
 	}
 	area, young := formula.Const(s.Area.SI), formula.Const(s.Young.SI)
 	e.area, e.young = &area, &young

@@ -101,6 +101,8 @@ func (r *resolver) lineProperties(e *lineEntry) {
 			r.path("line."+e.name+".tension", p.Value.Place())
 			e.tensAt, e.at = p.Value.Place(), p.Spot
 			e.tension = &v.prog
+			line := &r.tmpl.Model.Lines[e.index]
+			line.TensionSaid, line.SaidTension = !v.bad, v.prog
 			e.bad = e.bad || v.bad
 		case "incline":
 			r.lineIncline(e, p)
@@ -112,11 +114,12 @@ func (r *resolver) lineProperties(e *lineEntry) {
 			e.sideways = p.Choice.Text == "sideways"
 		case "at":
 			v := r.want(p.Value, plain, unit.Temperature, "a temperature")
-			r.path("line."+e.name+".at", p.Value.Place())
-			if !v.bad && !r.inRange(v, p.Value, positive, "a temperature above absolute zero").bad {
-				line := &r.tmpl.Model.Lines[e.index]
-				line.Warm, line.Temperature = true, v.prog
+			if !v.bad {
+				v = r.inRange(v, p.Value, positive, "a temperature above absolute zero")
 			}
+			line := &r.tmpl.Model.Lines[e.index]
+			line.Warm, line.Temperature = !v.bad, v.prog
+			r.path("line."+e.name+".at", p.Value.Place())
 		}
 	}
 }
@@ -251,8 +254,8 @@ func (r *resolver) addSegment(e *lineEntry, line *scenario.LineOf[formula.Progra
 	if p.stock != nil {
 		out.Stock = p.stock.stmt.Name.Text
 		out.MassPerLength, out.Axial, out.Strength, out.Bending = p.stock.mass, p.stock.axial, p.stock.strength, p.stock.bending
+		out.Diameter, out.Expansion = p.stock.diameter, p.stock.expansion
 		out.Viscous, out.Internal = p.stock.loss.viscous, p.stock.loss.internal
-		out.Expansion = p.stock.expansion
 		r.path(path+".mass", p.stock.massAt)
 		r.path(path+".axial", p.stock.axialAt)
 		r.path(path+".strength", p.stock.strongAt)

@@ -44,24 +44,16 @@ var quantityMeasures = map[string]scenario.MeasureKind{
 // otherMeasures are the rest that this version answers.
 var otherMeasures = map[string]bool{
 	"frequency": true, "damping": true, "tension": true, "wave_speed": true, "stored_energy": true, "arrival": true, "energy_left": true, "low": true, "high": true,
-}
-
-// laterMeasures are measures of the language that this version refuses.
-var laterMeasures = map[string]string{
-	"sag": "sag", "sag_place": "the place of the deepest sag", "take_up": "the travel of an anchor",
-	"reflected": "the reflected share of a wave", "passed": "the passed share of a wave", "absorbed": "the absorbed share of a wave", "taken": "the share that an end takes",
-	"response": "a steady response", "scruton": "the Scruton number",
+	"sag": true, "sag_place": true, "take_up": true, "reflected": true, "passed": true, "absorbed": true, "taken": true, "response": true, "scruton": true,
 }
 
 func isMeasure(name string) bool {
 	_, q := quantityMeasures[name]
-	_, later := laterMeasures[name]
-	return q || later || otherMeasures[name]
+	return q || otherMeasures[name]
 }
 
 func measureNames() []string {
 	out := append(known(quantityMeasures), known(otherMeasures)...)
-	out = append(out, known(laterMeasures)...)
 	sort.Strings(out)
 	return out
 }
@@ -84,10 +76,6 @@ func (r *resolver) energyLeft(n *syntax.Name, sc *scope) value {
 // measure compiles one measure.
 func (r *resolver) measure(c *syntax.Call, sc *scope) value {
 	name := c.Name.Text
-	if what, ok := laterMeasures[name]; ok {
-		r.notYet(c.Span, what, "")
-		return badValue
-	}
 	if kind, ok := quantityMeasures[name]; ok {
 		return r.quantityMeasure(c, sc, kind)
 	}
@@ -102,6 +90,24 @@ func (r *resolver) measure(c *syntax.Call, sc *scope) value {
 		return r.stretchMeasure(c, sc, scenario.StoredEnergy, unit.Energy)
 	case "arrival":
 		return r.arrival(c, sc)
+	case "reflected":
+		return r.shareMeasure(c, sc, scenario.Reflected)
+	case "passed":
+		return r.shareMeasure(c, sc, scenario.Passed)
+	case "absorbed":
+		return r.shareMeasure(c, sc, scenario.Absorbed)
+	case "taken":
+		return r.takenMeasure(c, sc)
+	case "response":
+		return r.responseMeasure(c, sc)
+	case "sag":
+		return r.sagMeasure(c, sc)
+	case "sag_place":
+		return r.stretchMeasure(c, sc, scenario.SagPlace, unit.Length)
+	case "take_up":
+		return r.takeUpMeasure(c, sc)
+	case "scruton":
+		return r.scrutonMeasure(c, sc)
 	case "low":
 		return r.endOf(c, sc, scenario.LowEnd)
 	case "high":
@@ -346,24 +352,22 @@ func (r *resolver) tensionMeasure(c *syntax.Call, sc *scope) value {
 	if !r.count(c, "tension(PLACE)", 1, 2) {
 		return badValue
 	}
-	if len(c.Args) == 2 {
-		r.want(c.Args[1].Value, plain, unit.Temperature, "a temperature")
-		r.notYet(c.Args[1].Span, "tension at another temperature", "")
-		return badValue
-	}
 	spot, ok := spotOf(c.Args[0])
 	if !ok {
 		r.errorAt(c.Args[0].Span, "wrong-place", "tension wants a place", "", "")
 		return badValue
 	}
 	m := blank(scenario.LineTension, c)
+	if len(c.Args) == 2 && !r.warmth(c, &m) {
+		return badValue
+	}
 	if spot.Offset != nil {
 		p, ok := r.place(spot, "tension")
 		if !ok {
 			return badValue
 		}
 		m.HasPlace, m.Place, m.Line = true, p, p.Line
-		return sc.measures.ask(m, unit.Force.Dim, 0)
+		return r.askTension(c, m, sc)
 	}
 	el, ok := r.find(spot.Name, "tension")
 	if !ok {
@@ -371,7 +375,7 @@ func (r *resolver) tensionMeasure(c *syntax.Call, sc *scope) value {
 	}
 	m.Line = el.line
 	if el.kind == lineKind {
-		return sc.measures.ask(m, unit.Force.Dim, 0)
+		return r.askTension(c, m, sc)
 	}
 	m.HasPlace = true
 	m.Place = placeOf{Line: el.line, Node: el.node, Segment: el.segment}
@@ -380,10 +384,10 @@ func (r *resolver) tensionMeasure(c *syntax.Call, sc *scope) value {
 		m.Segment = el.segment
 		m.Place.Offset = formula.Mul(formula.Const(0.5), r.tmpl.Model.Lines[el.line].Segments[el.segment].Length)
 	}
-	return sc.measures.ask(m, unit.Force.Dim, 0)
+	return r.askTension(c, m, sc)
 }
 
-// stretchMeasure compiles wave_speed(SEGMENT) and stored_energy(LINE).
+// stretchMeasure compiles wave_speed(SEGMENT), stored_energy(LINE) and sag_place(LINE).
 func (r *resolver) stretchMeasure(c *syntax.Call, sc *scope, kind scenario.MeasureKind, k unit.Kind) value {
 	if !r.count(c, c.Name.Text+"(NAME)", 1) {
 		return badValue
@@ -394,7 +398,7 @@ func (r *resolver) stretchMeasure(c *syntax.Call, sc *scope, kind scenario.Measu
 		return badValue
 	}
 	m := blank(kind, c)
-	span, ok := r.span(spot, c.Name.Text, kind == scenario.StoredEnergy)
+	span, ok := r.span(spot, c.Name.Text, kind != scenario.WaveSpeed)
 	if !ok {
 		return badValue
 	}

@@ -74,18 +74,13 @@ func (n *nodeReader) property(p *syntax.Property) {
 	case "tuned":
 		n.tuned(p)
 	case "axial":
-		r.quantity(p.Value, unit.Spring, positive, "axial", "")
+		n.node.AxialGive = r.quantity(p.Value, unit.Spring, positive, "axial", n.path+".axial")
 		if !n.line.sag.IsZero() && !n.line.sideways {
 			r.notYet(p.Span, "sag with an end that gives along the line", "")
-		} else {
-			r.warnAt(p.Span, "no-effect", "the give of an end along the line has no effect here", "without `sag included` the tension stays as it is", "")
 		}
 	case "weighted":
 		n.line.weighted = true
 		r.tmpl.Model.Lines[n.line.index].Weighted = true
-		if n.line.sag.IsZero() {
-			r.warnAt(p.Span, "no-effect", "weighted has no effect here", "without `sag included` the tension stays as it is anyway", "")
-		}
 	default:
 		n.refused(p)
 	}

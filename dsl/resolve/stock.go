@@ -20,10 +20,12 @@ type stockEntry struct {
 	axialAt   diag.Span
 	strength  formula.Program
 	strongAt  diag.Span
+	diameter  formula.Program // of the outside; the number 0 where nothing is said
+	expansion formula.Program // 1/K; likewise
+	grows     bool            // the expansion is said
 	bending   formula.Program // EI; the number 0 where nothing is said
 	bendAt    diag.Span
 	loss      lossSum
-	expansion formula.Program // 1/K
 	area      *formula.Program
 	young     *formula.Program
 	// What EI can be from matter: wires that slide on one another, and one solid
@@ -84,7 +86,8 @@ func (r *resolver) resolveStock(e *stockEntry) {
 		}
 		got[word] = v.prog
 	}
-	e.expansion = got["expansion"]
+	e.diameter = got["diameter"]
+	e.expansion, e.grows = got["expansion"], said["expansion"] != nil
 	r.stockStrength(e, said)
 	r.stockArea(e, said, got)
 	r.stockMass(e, said, got)

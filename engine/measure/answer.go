@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"math"
+	"strings"
 
 	"github.com/tautspan/tautspan/engine/compare"
 	"github.com/tautspan/tautspan/engine/doubt"
@@ -191,6 +192,11 @@ func (s *Session) numbers(ctx context.Context, e *expression, values []nominal) 
 		return nil, "", err
 	}
 	note := ""
+	for _, l := range s.own(e) {
+		if l.of.Kind == scenario.Scruton {
+			note = scrutonFormula
+		}
+	}
 	for i := range out {
 		switch {
 		case math.IsNaN(spans[i].value):
@@ -203,14 +209,26 @@ func (s *Session) numbers(ctx context.Context, e *expression, values []nominal) 
 		default:
 			out[i] = moved[i].Number(e.unit, bounds[i], exact...)
 			if moved[i].NotFirstOrder != "" {
-				note = "not first order: " + moved[i].NotFirstOrder
+				bent := "not first order: " + moved[i].NotFirstOrder
 				if moved[i].Samples != nil {
-					note += "; sampled"
+					bent += "; sampled"
 				}
+				note = joinNotes(note, bent)
 			}
 		}
 	}
 	return out, note, nil
+}
+
+// joinNotes puts two remarks together; the same one stands once.
+func joinNotes(a, b string) string {
+	switch {
+	case a == "" || a == b:
+		return b
+	case b == "" || strings.Contains(a, b):
+		return a
+	}
+	return a + "; " + b
 }
 
 // span is the value of f and the ends of its values over the intervals of its

@@ -34,7 +34,7 @@ func (l *leaf) bound(p *Point) *scenario.Measure {
 	m := l.of
 	out := &scenario.Measure{
 		Kind: m.Kind, Source: m.Source, Watch: m.Watch, Quantity: m.Quantity, Line: m.Line, Segment: m.Segment,
-		HasPlace: m.HasPlace, ModeFrom: m.ModeFrom, ModeTo: m.ModeTo, Below: m.Below,
+		HasPlace: m.HasPlace, Excite: m.Excite, After: m.After, ModeFrom: m.ModeFrom, ModeTo: m.ModeTo, Below: m.Below,
 	}
 	out.Place = scenario.Place{Line: m.Place.Line, Node: m.Place.Node, Segment: m.Place.Segment, Offset: m.Place.Offset.Eval(p.Values, nil)}
 	for _, a := range m.Args {
@@ -61,6 +61,18 @@ func (s *Session) exactFigure(p *Point, l *leaf) (figure, error) {
 		return figure{value: statics.StoredEnergy(&p.Network.Lines[m.Line])}, nil
 	case scenario.Arrival:
 		return p.arrival(m)
+	case scenario.Reflected, scenario.Passed, scenario.Absorbed, scenario.Taken:
+		return p.share(m)
+	case scenario.SteadyResponse:
+		return p.response(m)
+	case scenario.Sag, scenario.SagPlace:
+		return p.sag(m), nil
+	case scenario.TakeUp:
+		return figure{value: statics.TakeUp(p.Network, m.Line, m.Args[0])}, nil
+	case scenario.WarmTension:
+		return p.warmTension(m), nil
+	case scenario.Scruton:
+		return s.scruton(p, m)
 	}
 	return figure{}, fmt.Errorf("measure: %s is not known here", m.Source)
 }

@@ -21,8 +21,9 @@ func (r reads) place(p scenario.PlaceOf[formula.Program]) { r.see(p.Offset) }
 // structure sees what stands there: lines, ties and the mass of sensors.
 func (r reads) structure(m *scenario.ModelOf[formula.Program]) {
 	for i := range m.Lines {
+		r.see(m.Lines[i].Incline)
 		for _, n := range m.Lines[i].Nodes {
-			r.see(n.Mass, n.Spring)
+			r.see(n.Mass, n.Spring, n.Rotary)
 			for _, d := range n.Dashpots {
 				r.see(d.C, d.Through)
 			}
@@ -31,7 +32,7 @@ func (r reads) structure(m *scenario.ModelOf[formula.Program]) {
 			}
 		}
 		for _, s := range m.Lines[i].Segments {
-			r.see(s.Length, s.MassPerLength, s.Tension, s.Axial, s.Viscous)
+			r.see(s.Length, s.MassPerLength, s.Tension, s.TensionRise, s.Axial, s.Viscous, s.Bending, s.Internal)
 		}
 	}
 	for _, t := range m.Ties {
@@ -75,6 +76,29 @@ func (r reads) happenings(m *scenario.ModelOf[formula.Program]) {
 		r.place(w.At)
 	}
 	r.see(m.Run.For, m.Run.Every)
+}
+
+// places sees where something acts and where it is watched.
+func (r reads) places(m *scenario.ModelOf[formula.Program]) {
+	for _, p := range m.Pushes {
+		r.place(p.At)
+	}
+	for _, w := range m.Watches {
+		r.place(w.At)
+	}
+}
+
+// matter sees what only statics and the flow of air ask of a line.
+func (r reads) matter(m *scenario.ModelOf[formula.Program]) {
+	for i := range m.Lines {
+		r.see(m.Lines[i].SaidTension, m.Lines[i].Temperature)
+		for _, n := range m.Lines[i].Nodes {
+			r.see(n.AxialGive)
+		}
+		for _, s := range m.Lines[i].Segments {
+			r.see(s.Diameter, s.Expansion)
+		}
+	}
 }
 
 // exactInputs tells of each let whether it is an input without a doubt: a number
@@ -124,8 +148,13 @@ func (s *Session) seeExpression(e *expression, used reads) {
 		used.see(l.of.Args...)
 		used.place(l.of.Place)
 		used.structure(&s.template.Model)
-		if l.ofRun() || l.of.Kind == scenario.Arrival {
+		switch {
+		case l.ofRun() || l.of.Kind == scenario.Arrival:
 			used.happenings(&s.template.Model)
+		case l.of.Kind == scenario.SteadyResponse:
+			used.places(&s.template.Model)
+		case l.of.Kind == scenario.WarmTension || l.of.Kind == scenario.TakeUp || l.of.Kind == scenario.Scruton:
+			used.matter(&s.template.Model)
 		}
 	}
 }

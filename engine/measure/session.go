@@ -67,6 +67,7 @@ type Point struct {
 	lock  sync.Mutex
 	modes map[wantModes]*modesFound
 	trace *traced
+	sway  *swayed
 	runs  *runFigures
 }
 

@@ -152,8 +152,9 @@ func (t *Template) Bind(values []float64) (*Network, error) {
 }
 
 func (b *binder) line(l *LineOf[formula.Program]) Line {
-	out := Line{Name: l.Name, Sag: l.Sag, Warm: l.Warm, Weighted: l.Weighted, Temperature: b.nonneg(l.Temperature, "line."+l.Name+".at"), Incline: b.num(l.Incline, "line."+l.Name+".incline"), Nodes: make([]Node, len(l.Nodes)), Segments: make([]Segment, len(l.Segments))}
+	out := Line{Name: l.Name, Sag: l.Sag, TensionSaid: l.TensionSaid, Warm: l.Warm, Weighted: l.Weighted, Incline: b.num(l.Incline, "line."+l.Name+".incline"), Nodes: make([]Node, len(l.Nodes)), Segments: make([]Segment, len(l.Segments))}
 	base := "line." + l.Name + "."
+	out.SaidTension, out.Temperature = b.num(l.SaidTension, base+"tension"), b.nonneg(l.Temperature, base+"at")
 	for i := range l.Nodes { // in walking order, so that the first fault is the first in the text
 		out.Nodes[i] = b.node(&l.Nodes[i], base)
 		if i < len(l.Segments) {
@@ -176,6 +177,7 @@ func (b *binder) segment(s *SegmentOf[formula.Program], base string) Segment {
 		Axial:         b.nonneg(s.Axial, path+"axial"),
 		Viscous:       b.nonneg(s.Viscous, path+"loss"),
 		Strength:      b.nonneg(s.Strength, path+"strength"),
+		Diameter:      b.nonneg(s.Diameter, path+"diameter"),
 		Expansion:     b.num(s.Expansion, path+"expansion"),
 	}
 	b.tension(&out, path+"tension")
@@ -210,7 +212,7 @@ func (b *binder) node(n *NodeOf[formula.Program], base string) Node {
 	out := Node{
 		Name: n.Name, Kind: n.Kind, Fixed: n.Fixed, Absorbing: n.Absorbing, Holds: n.Holds,
 		Mass: b.nonneg(n.Mass, path+"mass"), Spring: b.nonneg(n.Spring, path+"spring"),
-		Clamped: n.Clamped, Rotary: b.nonneg(n.Rotary, path+"rotary"),
+		Clamped: n.Clamped, Rotary: b.nonneg(n.Rotary, path+"rotary"), AxialGive: b.nonneg(n.AxialGive, path+"axial"),
 	}
 	for _, d := range n.Dashpots {
 		bound := DashpotOf[float64]{C: b.nonneg(d.C, path+"dashpot"), Bracket: d.Bracket}

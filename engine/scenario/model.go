@@ -25,7 +25,11 @@ type LineOf[V any] struct {
 	Segments []SegmentOf[V]
 	Incline  V    // rad, positive where the line rises in walking order
 	Sag      bool // with the shallow-cable term of Irvine and Caughey, vertical plane
-	// Temperature in K at which the tension holds; with Warm only.
+	// SaidTension is the tension that the line says, N, at the place that it says;
+	// only with TensionSaid, else each segment says its own.
+	TensionSaid bool
+	SaidTension V
+	// Temperature at which the tension holds, K; only with Warm.
 	Warm        bool
 	Temperature V
 	Weighted    bool // an end keeps the tension constant along the line
@@ -56,8 +60,9 @@ type NodeOf[V any] struct {
 	Tuned     []TunedOf[V]
 	// On a line with bending a node also says how it turns: freely, not at all
 	// (Clamped), or against a rotary spring to ground.
-	Clamped bool
-	Rotary  V // N m/rad
+	Clamped   bool
+	Rotary    V // N m/rad
+	AxialGive V // N/m, spring of an end that gives along the line; 0: held
 }
 
 // DashpotOf is a dashpot to ground, perhaps through a bracket that gives.
@@ -87,7 +92,8 @@ type SegmentOf[V any] struct {
 	Axial         V // EA, N; 0 where not said
 	Viscous       V // N s/m^2: force per length and velocity
 	Strength      V // N; 0 where not said
-	Expansion     V // 1/K, with temperature; 0 where not said
+	Diameter      V // m, of its outside; 0 where not said
+	Expansion     V // 1/K; 0 where not said
 }
 
 // PlaceOf is a point of a line: a node, or a distance into a segment.

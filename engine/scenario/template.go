@@ -96,6 +96,16 @@ const (
 	SolverDifference                    // largest disagreement of the solvers on a watch's quantity
 	LowEnd                              // the lower one-sided 95 % end of Inner
 	HighEnd                             // the upper one
+	Reflected                           // share of displacement; of the joint at Place, Args[0] the frequency, Hz
+	Passed                              // share of displacement; likewise
+	Absorbed                            // share of power; likewise
+	Taken                               // share of power; of the support at Place, Args[0] the frequency, Hz
+	SteadyResponse                      // amplitude of a watch's quantity per unit of Excite; Args[0] the frequency, Hz
+	Sag                                 // m; at Place, or the deepest of Line
+	SagPlace                            // m from the start of Line
+	TakeUp                              // m; of Line, Args[0] the tension, N
+	WarmTension                         // N; as LineTension, Args[0] the temperature, K
+	Scruton                             // of Line, mode ModeFrom; Args[0] the density, kg/m^3
 )
 
 // MeasureOf is one measure with what it is taken of.
@@ -110,7 +120,9 @@ type MeasureOf[V any] struct {
 	Place    PlaceOf[V]
 	ModeFrom int // 1-based; 0 with Below
 	ModeTo   int
-	Below    bool // modes below Args[0] Hz
+	Below    bool   // modes below Args[0] Hz
+	Excite   string // of SteadyResponse
+	After    bool   // of the shares of a joint: the wave comes from after it
 	Args     []V
 	Inner    *InnerOf[V] // of LowEnd and HighEnd
 }

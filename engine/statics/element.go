@@ -130,6 +130,25 @@ func (e *element) displacement(v ends, s float64) float64 {
 	return p.a + p.b*s - v.w*s*s/(2*e.tension) + p.c*math.Exp(-k*s) + p.d*math.Exp(-k*(l-s))
 }
 
+// slopeAt is du/dx at s metres from the element's start.
+func (e *element) slopeAt(v ends, s float64) float64 {
+	if !e.beam() {
+		yl := e.climb(e.length)
+		flow := (v.u1 - v.u0) / yl // T u' at the start but for the load
+		return (flow + v.w*(e.centroid(e.length)/yl-s)) / (e.tension + e.rise*s)
+	}
+	if e.rise != 0 || e.k()*e.length < smallXi {
+		if s == 0 {
+			return v.t0
+		}
+		i, t := e.initial(v), e.termsAt(s)
+		return v.t0*t[0][1] + i.second*t[1][1] + i.third*t[2][1] + v.w*t[3][1]
+	}
+	k, l := e.k(), e.length
+	p := e.exponentials(v)
+	return p.b - v.w*s/e.tension - k*p.c*math.Exp(-k*s) + k*p.d*math.Exp(-k*(l-s))
+}
+
 // exponentials are the coefficients of a + b s - w s^2/(2T) + c e^{-ks} + d e^{-k(L-s)}.
 type exponentials struct{ a, b, c, d float64 }
 

@@ -153,6 +153,7 @@ type OverRow struct {
 type Collected struct {
 	Text  string       `json:"text"`
 	Value doubt.Number `json:"value"`
+	Note  string       `json:"note"` // a formula, or why first order was not enough
 }
 
 // ArrivalsDoc is the pulse ledger.

@@ -275,7 +275,7 @@ func worstVerdict(all []string) string {
 func collectedRows(list []measure.Collected) []Collected {
 	out := []Collected{}
 	for _, c := range list {
-		out = append(out, Collected{Text: c.Of.Source, Value: c.Value})
+		out = append(out, Collected{Text: c.Of.Source, Value: c.Value, Note: c.Note})
 	}
 	return out
 }

@@ -121,7 +121,7 @@ func (p *printer) sayCollected(list []app.Collected) {
 	t := newTable()
 	for i := range list {
 		c := &list[i]
-		t.add(c.Text, p.doubtful(&c.Value), p.because(&c.Value))
+		t.add(c.Text, p.doubtful(&c.Value), p.because(&c.Value), c.Note)
 	}
 	p.table(t)
 }
