@@ -82,10 +82,12 @@ func TestDocumentsFollowTheirSchemas(t *testing.T) {
 	}
 	printed(t, 1, "fit", "--json", filepath.Join("testdata", "fit", "hangers.taut"))
 	printed(t, 2, "fit", "--json", short)
+	printed(t, 0, "plan", "--json", shipped("hanger-survey"))
+	printed(t, 0, "plan", "--json", short)
 	printed(t, 0, "tidy", "--json", short)
 	printed(t, 0, "why", "--json", "scope")
 	printed(t, 0, "scenarios", "--json")
-	for _, command := range []string{"check", "modes", "respond", "arrivals", "run", "fit"} {
+	for _, command := range []string{"check", "modes", "respond", "arrivals", "run", "fit", "plan"} {
 		printed(t, 2, command, "--json", bad)
 		printed(t, 2, command, "--json", filepath.Join(dir, "missing.taut"))
 	}

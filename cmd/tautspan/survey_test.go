@@ -2,6 +2,8 @@ package main
 
 import (
 	"encoding/json"
+	"math"
+	"os"
 	"path/filepath"
 	"testing"
 )
@@ -68,6 +70,31 @@ func TestShippedSurveys(t *testing.T) {
 			t.Errorf("%s: %d alternatives", c.name, len(alternatives))
 		}
 	}
+}
+
+// A plan for the first two vibrations of a string puts the sensor where both
+// show alike, a third of the way, with sin(pi/3) of their largest; an eighth of a
+// period is a sample, and a pulse returns in 2 L/c.
+func TestPlanOfAString(t *testing.T) {
+	file := filepath.Join(t.TempDir(), "string.taut")
+	text := "tautspan 1\nstock w {\n mass 5 kg/m\n}\nline l {\n tension 50 kN\n support a fixed\n segment s w 100 m\n support b fixed\n}\n"
+	if err := os.WriteFile(file, []byte(text), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	doc := printed(t, 0, "plan", "--json", "--modes", "2", "--accuracy", "0.5 %", file)
+	line := doc["lines"].([]any)[0].(map[string]any)
+	for _, s := range line["sensors"].([]any) {
+		row := s.(map[string]any)
+		if row["reach"] != "anywhere" {
+			continue
+		}
+		x := numberOf(t, row["x_m"])
+		closeTo(t, "sensor", math.Min(x, 100-x), 100.0/3, 0.15) // places lie 0.25 m apart
+		closeTo(t, "least", numberOf(t, row["least"]), math.Sin(math.Pi/3), 5e-3)
+	}
+	closeTo(t, "record", numberOf(t, line["record_s"]), 1/(0.005*0.5), 1e-6)
+	closeTo(t, "sampling", numberOf(t, line["sampling_hz"]), 8*1.0, 1e-6)
+	closeTo(t, "return", numberOf(t, line["return_s"]), 2, 1e-9)
 }
 
 // numberOf is a number of a decoded document.

@@ -182,11 +182,35 @@ func (l *loaded) fitCautions(s *fit.Solution) []CautionNote {
 	if err != nil {
 		net = l.net
 	}
-	notes := cautions(net, formatEnergy)
-	return append([]CautionNote{
+	return l.surveyCautions(net)
+}
+
+// surveyCautions are those of the site and of the lines, each kind once but for
+// the energy of every line.
+func (l *loaded) surveyCautions(net *scenario.Network) []CautionNote {
+	out := l.siteCautions()
+	said := map[string]bool{}
+	for _, n := range out {
+		said[n.Code] = true
+	}
+	for _, n := range cautions(net, formatEnergy) {
+		if !said[n.Code] {
+			out = append(out, n)
+		}
+	}
+	return out
+}
+
+// siteCautions are the safety notes of readings on a line, and of what follows
+// from them.
+func (l *loaded) siteCautions() []CautionNote {
+	notes := []CautionNote{
 		{"changing-tension", "Never slacken or stress a line on the strength of this report alone: temporary supports or a second load path, step by step, by a method statement; neighbours take up what one line loses."},
 		{"height", "Do not climb a pole, mast or pylon for a reading before it is checked that it takes the added and unbalanced load; readings from the ground are to be preferred. No work under iced or galloping lines, in lightning or in high wind."},
-	}, notes...)
+		{"live-parts", "Treat a conductor, ground wire or contact wire as energised until authorised people have switched, tested and grounded it; parallel and crossing lines can carry induced voltage. No metal tape, rope or sensor lead near live parts."},
+		{"lock-out", "Do not strike, pluck or clamp a line of a hoist, lift, cableway or machine before the drive is locked out and the load is secured. A soft mallet and small taps, away from sockets, insulators, sheathing and fibre."},
+	}
+	return notes
 }
 
 // forceTable is one row a line that was read.

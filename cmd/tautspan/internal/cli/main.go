@@ -43,6 +43,7 @@ type grammar struct {
 	Respond   respondCmd   `cmd:"" help:"Steady vibration against frequency; shares of a wave reflected, passed, absorbed at joints and taken at ends."`
 	Arrivals  arrivalsCmd  `cmd:"" help:"The pulse ledger: which front reaches which watch, when, by which path, how strong."`
 	Run       runCmd       `cmd:"" help:"Solve with every solver that can, hold them against one another, judge the requirements."`
+	Plan      planCmd      `cmd:"" help:"Before the climb: frequencies, sensor places off the nodes, record length, the intervals to expect."`
 	Fit       fitCmd       `cmd:"" help:"Seek the lets that explain site readings: tension, stiffness, with intervals and verdicts."`
 	Stock     stockCmd     `cmd:"" help:"The built-in stock with its sources."`
 	Why       whyCmd       `cmd:"" help:"Explain a diagnostic by its code; 'why scope' says what this program does not answer."`
