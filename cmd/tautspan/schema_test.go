@@ -82,6 +82,10 @@ func TestDocumentsFollowTheirSchemas(t *testing.T) {
 	}
 	printed(t, 1, "fit", "--json", filepath.Join("testdata", "fit", "hangers.taut"))
 	printed(t, 2, "fit", "--json", short)
+	survey := filepath.Join(dir, "survey")
+	printed(t, 1, "fit", "--json", "--out", survey, shipped("guy-timing"))
+	printed(t, 0, "change", "--json", survey, survey)
+	printed(t, 2, "change", "--json", short, survey)
 	printed(t, 0, "plan", "--json", shipped("hanger-survey"))
 	printed(t, 0, "plan", "--json", short)
 	printed(t, 0, "tidy", "--json", short)

@@ -327,6 +327,11 @@ func (s *Solution) Joint() *Joint {
 	}
 	for _, name := range names {
 		list := byName[name]
+		if len(list) == 1 { // with its sign: what an error upward does
+			d := mat.Col(nil, list[0], c.gain)
+			out.names, out.d = append(out.names, name), append(out.d, d)
+			continue
+		}
 		part := mat.NewDense(n, len(list), nil)
 		for k, i := range list {
 			for a := range n {

@@ -75,7 +75,7 @@ func (l *loaded) fit(ctx context.Context, doc *FitDoc, want FitWant) error {
 	if err := l.judgeFit(ctx, doc, res); err != nil {
 		return err
 	}
-	l.forceTable(doc, res.Best)
+	l.forceTable(ctx, doc, res.Best)
 	if want.Write {
 		l.putIn(doc, res.Best)
 	}
@@ -214,12 +214,17 @@ func (l *loaded) siteCautions() []CautionNote {
 }
 
 // forceTable is one row a line that was read.
-func (l *loaded) forceTable(doc *FitDoc, s *fit.Solution) {
+func (l *loaded) forceTable(ctx context.Context, doc *FitDoc, s *fit.Solution) {
 	net, err := l.compiled.Template.Bind(s.Values)
 	if err != nil {
 		return
 	}
-	tensions := l.tensionsOf(s)
+	tensions, lets := l.figuresOf(ctx, s)
+	for i := range doc.Unknowns {
+		if lets[i] != nil {
+			doc.Unknowns[i].Parts = partsOf(lets[i])
+		}
+	}
 	for i := range net.Lines {
 		modes, read := 0, false
 		for k := range s.Residuals {
@@ -233,7 +238,8 @@ func (l *loaded) forceTable(doc *FitDoc, s *fit.Solution) {
 		if !read {
 			continue
 		}
-		row := FitLine{Line: net.Lines[i].Name, Mark: l.markOf(i), Length: statics.Length(&net.Lines[i]), Modes: modes, Where: "mean"}
+		row := FitLine{Line: net.Lines[i].Name, Mark: l.markOf(i), Length: statics.Length(&net.Lines[i]), Modes: modes, Where: "mean", Parts: []FitPart{}}
+		row.Temperature, row.PerKelvin = warmth(&net.Lines[i])
 		if n := tensions[i]; n != nil {
 			row.take(n)
 		}
@@ -250,6 +256,22 @@ func (f *FitLine) take(n *doubt.Number) {
 	}
 	factor := math.Exp(doubt.TwoSided * n.InputU / n.Value)
 	f.Tension, f.Low95, f.High95 = finite(n.Value), finite(n.Value/factor), finite(n.Value*factor)
+	f.Parts = partsOf(n)
+}
+
+// warmth is the temperature at which a line's tension holds, and how the tension
+// changes with it, by half a degree to both sides; nil where the scenario does
+// not say enough.
+func warmth(line *scenario.Line) (at, perKelvin *float64) {
+	if !line.Warm {
+		return nil, nil
+	}
+	up, err1 := statics.AtTemperature(line, line.Temperature+0.5)
+	down, err2 := statics.AtTemperature(line, line.Temperature-0.5)
+	if err1 != nil || err2 != nil {
+		return finite(line.Temperature), nil
+	}
+	return finite(line.Temperature), finite(statics.MeanTension(&up) - statics.MeanTension(&down))
 }
 
 // designOf takes design tension, verdict and action from the first requirement

@@ -1,6 +1,7 @@
 package app
 
 import (
+	"github.com/tautspan/tautspan/engine/doubt"
 	"github.com/tautspan/tautspan/engine/fit"
 )
 
@@ -37,19 +38,27 @@ func (d *FitDoc) Text() string { return d.text }
 
 // FitUnknown is a let as the fit leaves it.
 type FitUnknown struct {
-	Name      string   `json:"name"`
-	Value     float64  `json:"value"`
-	Unit      string   `json:"unit"`
-	Shown     string   `json:"shown_unit"` // as its let is written; "": none
-	Low95     *float64 `json:"low95"`
-	High95    *float64 `json:"high95"`
-	StandardU *float64 `json:"standard_u"` // in the unit of the value
-	From      *float64 `json:"from"`       // range sought in; null for a known
-	To        *float64 `json:"to"`
-	AtBound   bool     `json:"at_bound"`
-	Decided   bool     `json:"decided"`  // false: no reading decides it
-	Stated    *float64 `json:"stated"`   // known beforehand
-	StatedU   *float64 `json:"stated_u"` // its standard uncertainty
+	Name      string    `json:"name"`
+	Value     float64   `json:"value"`
+	Unit      string    `json:"unit"`
+	Shown     string    `json:"shown_unit"` // as its let is written; "": none
+	Low95     *float64  `json:"low95"`
+	High95    *float64  `json:"high95"`
+	StandardU *float64  `json:"standard_u"` // in the unit of the value
+	From      *float64  `json:"from"`       // range sought in; null for a known
+	To        *float64  `json:"to"`
+	AtBound   bool      `json:"at_bound"`
+	Decided   bool      `json:"decided"`  // false: no reading decides it
+	Stated    *float64  `json:"stated"`   // known beforehand
+	StatedU   *float64  `json:"stated_u"` // its standard uncertainty
+	Parts     []FitPart `json:"contributions"`
+}
+
+// FitPart is the change of a value for one standard uncertainty of what its
+// doubt comes from: a let that was known, or the readings of a block.
+type FitPart struct {
+	Source string  `json:"source"`
+	Change float64 `json:"change"`
 }
 
 // FitResidual is one reading held against the fitted line.
@@ -113,6 +122,11 @@ type FitLine struct {
 	Ratio   *float64 `json:"ratio"`
 	Verdict string   `json:"verdict"`
 	Action  string   `json:"next_action"`
+	// Temperature at which the tension holds, and how it changes with it; null
+	// where the scenario does not say.
+	Temperature *float64  `json:"temperature_k"`
+	PerKelvin   *float64  `json:"tension_per_kelvin"`
+	Parts       []FitPart `json:"contributions"`
 }
 
 func emptyFit() *FitDoc {
@@ -124,7 +138,7 @@ func emptyFit() *FitDoc {
 }
 
 func (l *loaded) unknownRow(u *fit.Unknown) FitUnknown {
-	row := FitUnknown{Name: u.Name, Value: u.Value, Unit: u.Unit, Shown: l.compiled.WrittenUnit(u.Name), Low95: finite(u.Low95), High95: finite(u.High95), AtBound: u.AtBound, Decided: !u.Undecided}
+	row := FitUnknown{Name: u.Name, Value: u.Value, Unit: u.Unit, Shown: l.compiled.WrittenUnit(u.Name), Low95: finite(u.Low95), High95: finite(u.High95), AtBound: u.AtBound, Decided: !u.Undecided, Parts: []FitPart{}}
 	if row.StandardU = finite(u.U); u.Log {
 		row.StandardU = finite(u.U * u.Value)
 	}
@@ -149,6 +163,16 @@ func (l *loaded) residualRow(r *fit.Residual) FitResidual {
 		row.Count = &r.Order
 	}
 	return row
+}
+
+func partsOf(n *doubt.Number) []FitPart {
+	out := []FitPart{}
+	for _, c := range n.Contributions {
+		if c.Change == c.Change && c.Change != 0 {
+			out = append(out, FitPart{c.Input, c.Change})
+		}
+	}
+	return out
 }
 
 func planeWord(sideways bool) string {

@@ -15,27 +15,32 @@ import (
 	"github.com/tautspan/tautspan/engine/scenario"
 )
 
-// tensionsOf are the mean tensions of all lines with the doubt of a solution.
-func (l *loaded) tensionsOf(s *fit.Solution) []*doubt.Number {
+// figuresOf are the mean tensions of all lines and the sought lets with the doubt
+// of a solution; nil where it cannot be carried.
+func (l *loaded) figuresOf(ctx context.Context, s *fit.Solution) (tensions, lets []*doubt.Number) {
 	t := *l.compiled.Template
 	t.Requires, t.Collects = nil, nil
 	for i := range t.Model.Lines {
 		m := scenario.MeasureOf[formula.Program]{Kind: scenario.LineTension, Source: "tension(" + t.Model.Lines[i].Name + ")", Watch: -1, Line: i, Segment: -1}
 		t.Collects = append(t.Collects, scenario.Collect{Source: m.Source, Unit: "N", Value: formula.Arg(0), Measures: []scenario.MeasureOf[formula.Program]{m}})
 	}
-	out := make([]*doubt.Number, len(t.Model.Lines))
+	for i := range s.Unknowns {
+		t.Collects = append(t.Collects, scenario.Collect{Source: s.Unknowns[i].Name, Unit: s.Unknowns[i].Unit, Value: formula.Let(s.Unknowns[i].Let)})
+	}
+	all := make([]*doubt.Number, len(t.Collects))
 	session, err := measure.New(&t, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples, Joint: s.Joint()})
+	if err == nil {
+		var answers *measure.Answers
+		if answers, err = session.Answer(ctx, nil); err == nil {
+			for i := range answers.Collected {
+				all[i] = &answers.Collected[i].Value
+			}
+		}
+	}
 	if err != nil {
-		return out
+		l.warn("doubt-not-carried", err.Error())
 	}
-	answers, err := session.Answer(context.Background(), nil)
-	if err != nil {
-		return out
-	}
-	for i := range answers.Collected {
-		out[i] = &answers.Collected[i].Value
-	}
-	return out
+	return all[:len(t.Model.Lines)], all[len(t.Model.Lines):]
 }
 
 // markOf is the mark that a line's readings give it, or its name.

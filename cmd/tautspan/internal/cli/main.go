@@ -45,6 +45,7 @@ type grammar struct {
 	Run       runCmd       `cmd:"" help:"Solve with every solver that can, hold them against one another, judge the requirements."`
 	Plan      planCmd      `cmd:"" help:"Before the climb: frequencies, sensor places off the nodes, record length, the intervals to expect."`
 	Fit       fitCmd       `cmd:"" help:"Seek the lets that explain site readings: tension, stiffness, with intervals and verdicts."`
+	Change    changeCmd    `cmd:"" help:"Hold two surveys against one another: differences with intervals, temperature taken out."`
 	Stock     stockCmd     `cmd:"" help:"The built-in stock with its sources."`
 	Why       whyCmd       `cmd:"" help:"Explain a diagnostic by its code; 'why scope' says what this program does not answer."`
 	Plugins   pluginsCmd   `cmd:"" help:"Solvers, loads and laws of others: what is installed and trusted."`
