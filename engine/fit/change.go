@@ -71,9 +71,13 @@ func Between(first, second Figure, before, after map[string]Known) Difference {
 	}
 	sort.Strings(d.Common)
 	d.U = math.Sqrt(own)
-	d.LogU = math.Sqrt(relative)
+	d.LogU = math.Min(math.Sqrt(relative), unbounded)
 	return d
 }
+
+// unbounded is the standard uncertainty of a logarithm that stands for not
+// knowing anything; twice as much would leave the range of numbers.
+const unbounded = 300
 
 // Ratio is second over first, moved by so many standard uncertainties of its
 // logarithm.

@@ -148,7 +148,12 @@ func (c *cover) invert() {
 	}
 	var svd mat.SVD
 	c.plain = mat.NewSymDense(n, nil)
-	if !svd.Factorize(scaled, mat.SVDThin) {
+	if !svd.Factorize(scaled, mat.SVDThin) { // has not been seen: nothing is decided then
+		for k := range n {
+			d := make([]float64, n)
+			d[k] = 1
+			c.open = append(c.open, direction{d, c.p.reach(d)})
+		}
 		return
 	}
 	var v mat.Dense
@@ -213,7 +218,8 @@ func (c *cover) atBound(i int) bool {
 	return c.s.x[i] <= lo+slack || c.s.x[i] >= hi-slack
 }
 
-// interval is the 95 % interval of a sought let, never beyond its range.
+// interval is the 95 % interval of a sought let, never beyond its range. On lines
+// with losses, whose model is slow, the curvature has to do.
 func (c *cover) interval(i int) (low, high float64) {
 	u := &c.p.unknowns[i]
 	lo, hi := u.bounds()
@@ -222,7 +228,7 @@ func (c *cover) interval(i int) (low, high float64) {
 	switch {
 	case c.undecided(i):
 		a, b = lo, hi
-	case c.atBound(i) || c.sd(i) > profiled || a < lo || b > hi:
+	case c.atBound(i) || !c.p.lossy() && (c.sd(i) > profiled || a < lo || b > hi):
 		a, b = c.profile(i, -1), c.profile(i, 1)
 	}
 	return u.value(math.Max(a, lo)), u.value(math.Min(b, hi))

@@ -10,6 +10,8 @@ import (
 	"testing/fstest"
 
 	"github.com/tautspan/tautspan/dsl"
+	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/modal"
 	"github.com/tautspan/tautspan/engine/scenario"
 )
 
@@ -271,4 +273,40 @@ func TestExpectedIntervals(t *testing.T) {
 	// 47 %, as was measured on a prototype with peaks of 0.2 %.
 	near(t, "prototype, tension", expected[0].HalfWidth[0]/1.96, 0.025, 0.002)
 	near(t, "prototype, stiffness", expected[0].HalfWidth[1]/1.96, 0.47, 0.03)
+}
+
+// Two lines tied to one another are fitted as one network, with a dashpot whose
+// loss the search leaves out and the end takes in.
+func TestTiedLinesWithADashpot(t *testing.T) {
+	text := func(pull, knob string) string {
+		return "let pull = " + pull + "\nlet knob = " + knob + "\nstock w {\n mass 5 kg/m\n}\n" +
+			"line l {\n tension pull\n support a fixed\n segment s w 10 m\n joint j dashpot knob\n segment z w 90 m\n support b fixed\n}\n" +
+			"line k {\n tension 60 kN\n support a fixed\n segment s w 80 m\n support b fixed\n}\n" +
+			"tie c from l.z 30 m to k.s 40 m spring 20 kN/m\n"
+	}
+	tmpl := templateOf(t, text("50 kN", "300 N*s/m"))
+	values, err := tmpl.Values(nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	net, err := tmpl.Bind(values)
+	if err != nil {
+		t.Fatal(err)
+	}
+	m, err := mesh.Build(net)
+	if err != nil {
+		t.Fatal(err)
+	}
+	res, err := modal.Find(m, modal.Want{Count: 6})
+	if err != nil {
+		t.Fatal(err)
+	}
+	rows := ""
+	for i, mode := range res.Modes {
+		rows += fmt.Sprintf(" frequency %d = %.12g Hz +- 0.2 %%\n", i+1, mode.DampedFrequency)
+	}
+	rows += fmt.Sprintf(" decay 2 = %.12g %% +- 0.1 %%\n", 100*res.Modes[1].DampingRatio)
+	r := solve(t, text("40 kN", "100 N*s/m")+"reading r of l {\n"+rows+"}\nseek pull from 10 kN to 200 kN\nseek knob from 20 N*s/m to 5 kN*s/m\n")
+	near(t, "tension", r.Best.Unknowns[0].Value, 50e3, 0.05)
+	near(t, "dashpot", r.Best.Unknowns[1].Value, 300, 1e-3)
 }

@@ -4,6 +4,8 @@ import (
 	"math"
 
 	"gonum.org/v1/gonum/mat"
+
+	"github.com/tautspan/tautspan/engine/scenario"
 )
 
 // residuals are the weighted differences of a pairing at x: one for each paired
@@ -12,17 +14,26 @@ import (
 func (p *Problem) residuals(x []float64, q []prediction, modes pairing, widen float64) []float64 {
 	out := make([]float64, 0, len(p.obs)+len(p.unknowns))
 	for i := range p.obs {
-		o := &p.obs[i]
 		if modes[i] == 0 {
 			continue
 		}
-		r := (o.value - o.shift(x) - q[o.config].of(o, modes[i])) / math.Hypot(o.u, widen*o.value)
+		r := p.residual(i, x, q, modes[i], widen)
 		if math.IsNaN(r) || math.IsInf(r, 0) {
 			return nil
 		}
 		out = append(out, r)
 	}
 	return p.priors(x, out)
+}
+
+// residual is one weighted difference; 0 for a damping ratio while losses are
+// left out.
+func (p *Problem) residual(i int, x []float64, q []prediction, mode int, widen float64) float64 {
+	o := &p.obs[i]
+	if p.rough && o.kind == scenario.DecayReading {
+		return 0
+	}
+	return (o.value - o.shift(x) - q[o.config].of(o, mode)) / math.Hypot(o.u, widen*o.value)
 }
 
 // priors appends the residuals of what is known beforehand.
@@ -95,7 +106,7 @@ func (p *Problem) again(x []float64, k int, q []prediction) []prediction {
 			out[c] = prediction{err: err}
 			continue
 		}
-		out[c] = p.configs[c].predict(values)
+		out[c] = p.configs[c].predict(values, p.rough)
 	}
 	return out
 }

@@ -241,8 +241,56 @@ func (c *config) quick() bool {
 	return level && rise == 0 && l.Nodes[0].Fixed && l.Nodes[1].Fixed
 }
 
-// predict evaluates the config at values of all lets.
-func (c *config) predict(values []float64) prediction {
+// lossy tells whether the vibrations of the config wait for complex roots: it is
+// asked for damping, or dashpots stand on its lines.
+func (c *config) lossy() bool {
+	if c.decays {
+		return true
+	}
+	for i := range c.part.Model.Lines {
+		for k := range c.part.Model.Lines[i].Nodes {
+			n := &c.part.Model.Lines[i].Nodes[k]
+			lossy := len(n.Dashpots) > 0 || n.Absorbing
+			for _, t := range n.Tuned {
+				d, constant := t.Dashpot.IsConst()
+				lossy = lossy || !constant || d != 0
+			}
+			if lossy {
+				return true
+			}
+		}
+	}
+	for _, t := range c.part.Model.Ties {
+		if d, constant := t.Dashpot.IsConst(); !constant || d != 0 {
+			return true
+		}
+	}
+	return false
+}
+
+// strip takes every loss away.
+func strip(net *scenario.Network) {
+	for i := range net.Lines {
+		line := &net.Lines[i]
+		for k := range line.Segments {
+			line.Segments[k].Viscous, line.Segments[k].Internal = 0, 0
+		}
+		for k := range line.Nodes {
+			n := &line.Nodes[k]
+			n.Dashpots, n.Absorbing = nil, false
+			n.Tuned = append([]scenario.TunedOf[float64](nil), n.Tuned...)
+			for t := range n.Tuned {
+				n.Tuned[t].Dashpot = 0
+			}
+		}
+	}
+	for i := range net.Ties {
+		net.Ties[i].Dashpot = 0
+	}
+}
+
+// predict evaluates the config at values of all lets; rough leaves losses out.
+func (c *config) predict(values []float64, rough bool) prediction {
 	net, err := c.part.Bind(values)
 	if err != nil {
 		return prediction{err: err}
@@ -262,7 +310,10 @@ func (c *config) predict(values []float64) prediction {
 	if c.modes == 0 && c.below == 0 {
 		return out
 	}
-	if !c.decays {
+	switch {
+	case rough:
+		strip(net)
+	case !c.decays:
 		c.lighten(net)
 	}
 	m, err := mesh.Build(net)
@@ -397,7 +448,7 @@ func (p *Problem) predict(x []float64) []prediction {
 			out[i].err = err
 			continue
 		}
-		out[i] = c.predict(values)
+		out[i] = c.predict(values, p.rough)
 	}
 	return out
 }

@@ -69,7 +69,7 @@ func (p *Problem) next(s *Solution) *Next {
 				n.From, n.To = c.relative(i, before), c.relative(i, after)
 			}
 		}
-		if gain > gainBest && n.Let != "" {
+		if gain > gainBest && n.Let != "" && !math.IsInf(n.From, 0) && !math.IsNaN(n.To) {
 			gainBest, best = gain, &n
 		}
 	}
@@ -202,7 +202,7 @@ func (p *Problem) furtherModes(s *Solution, c int, share float64) []candidate {
 		}
 	}
 	cfg.modes, cfg.below = min(top+beyond, mostModes), 0
-	at := cfg.predict(s.Values)
+	at := cfg.predict(s.Values, false)
 	if at.err != nil {
 		return nil
 	}
@@ -250,7 +250,7 @@ func (p *Problem) slopesOf(s *Solution, cfg *config, of func(*prediction) []floa
 			if err != nil {
 				return nil
 			}
-			q := cfg.predict(values)
+			q := cfg.predict(values, false)
 			if q.err != nil {
 				return nil
 			}

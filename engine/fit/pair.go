@@ -78,7 +78,7 @@ func (p *Problem) pair(x []float64, q []prediction, widen float64) (pairing, flo
 			continue
 		}
 		modes[i] = max(o.order, 1)
-		r := (o.value - o.shift(x) - q[o.config].of(o, o.order)) / math.Hypot(o.u, widen*o.value)
+		r := p.residual(i, x, q, o.order, widen)
 		if math.IsNaN(r) {
 			return modes, math.Inf(1)
 		}

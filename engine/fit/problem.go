@@ -84,6 +84,7 @@ type Problem struct {
 	obs      []observation
 	lists    []list
 	configs  []*config
+	rough    bool   // predict without losses, while a search is far from its end
 	mayDrop  []bool // by observation: a numbered frequency that may be a stranger
 }
 

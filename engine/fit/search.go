@@ -24,7 +24,8 @@ const (
 
 // size is how wide a search is.
 type size struct {
-	follow int // starts that are followed to the end
+	follow int // starts that are led to a minimum
+	finish int // minima that are settled with everything free
 	keep   int // starts kept of each group of lines and point of the shared lets
 	coarse int // values of the second of a group's unknowns
 }
@@ -32,8 +33,8 @@ type size struct {
 // Single spans are evaluated in some 20 microseconds, other lines in some
 // hundred times that.
 var (
-	wide   = size{follow: 40, keep: 8, coarse: 9}
-	narrow = size{follow: 14, keep: 4, coarse: 4}
+	wide   = size{follow: 40, finish: 20, keep: 8, coarse: 9}
+	narrow = size{follow: 14, finish: 5, keep: 4, coarse: 4}
 )
 
 // size settles how wide to search.
@@ -61,41 +62,73 @@ type start struct {
 	cost float64
 }
 
-// search finds the minima within `ambiguous` of the lowest, lowest first.
+// search finds the minima within `ambiguous` of the lowest, lowest first: every
+// start is led to a minimum with what is known beforehand standing still and, on
+// lines with losses, with the model without them; then the best of these with
+// everything.
 func (p *Problem) search(ctx context.Context) ([]solution, error) {
-	var found []solution
+	p.rough = p.lossy()
+	var led []solution
 	best := math.Inf(1)
 	for _, s := range p.starts() {
 		if err := ctx.Err(); err != nil {
 			return nil, err
 		}
-		sol, ok := p.follow(s.x, best)
-		if !ok {
-			continue
+		if sol, ok := p.lead(s.x, best); ok {
+			best = math.Min(best, sol.cost)
+			led = p.keep(led, sol)
 		}
-		best = math.Min(best, sol.cost)
-		found = append(found, sol)
 	}
-	sort.SliceStable(found, func(a, b int) bool { return found[a].cost < found[b].cost })
-	var kept []solution
-	for _, s := range found {
-		if s.cost > best+ambiguous {
+	p.rough = false
+	sort.SliceStable(led, func(a, b int) bool { return led[a].cost < led[b].cost })
+	var found []solution
+	for i := range led {
+		if err := ctx.Err(); err != nil {
+			return nil, err
+		}
+		if led[i].cost > led[0].cost+hopeless || i == p.size().finish {
 			break
 		}
-		known := false
-		for i := range kept {
-			known = known || p.same(&kept[i], &s)
-		}
-		if !known {
-			kept = append(kept, s)
+		if sol, ok := p.settle(led[i].x); ok {
+			found = p.keep(found, sol)
 		}
 	}
-	return kept, nil
+	sort.SliceStable(found, func(a, b int) bool { return found[a].cost < found[b].cost })
+	for i := range found {
+		if found[i].cost > found[0].cost+ambiguous {
+			return found[:i], nil
+		}
+	}
+	return found, nil
 }
 
-// follow leads a start to a minimum, by narrowing uncertainties; first without
-// moving what is known beforehand. False where it comes to nothing.
-func (p *Problem) follow(x []float64, best float64) (solution, bool) {
+// keep enters a solution unless it is one of those at hand; of two that are one
+// the better stays.
+func (p *Problem) keep(list []solution, s solution) []solution {
+	for i := range list {
+		if p.same(&list[i], &s) {
+			if s.cost < list[i].cost {
+				list[i] = s
+			}
+			return list
+		}
+	}
+	return append(list, s)
+}
+
+// lossy tells whether any config's frequencies wait for complex roots.
+func (p *Problem) lossy() bool {
+	for _, c := range p.configs {
+		if c.lossy() {
+			return true
+		}
+	}
+	return false
+}
+
+// lead leads a start to a minimum by narrowing uncertainties, with what is known
+// beforehand standing still. False where it comes to nothing.
+func (p *Problem) lead(x []float64, best float64) (solution, bool) {
 	known := make([]bool, len(x))
 	for i := range p.unknowns {
 		known[i] = !p.unknowns[i].sought
@@ -108,6 +141,13 @@ func (p *Problem) follow(x []float64, best float64) (solution, bool) {
 		}
 		x, q, _ = p.descend(x, q, modes, w, 8, known)
 	}
+	modes, cost := p.pair(x, q, 0)
+	return solution{x: x, q: q, modes: modes, cost: cost}, !math.IsInf(cost, 1)
+}
+
+// settle goes on from there with everything free until the pairing stands.
+func (p *Problem) settle(x []float64) (solution, bool) {
+	q := p.predict(x)
 	var s solution
 	for round := 0; round < 8; round++ {
 		modes, cost := p.pair(x, q, 0)
@@ -362,7 +402,7 @@ func (p *Problem) screen(x []float64, group int) float64 {
 	q := make([]prediction, len(p.configs))
 	for i, c := range p.configs {
 		if c.group == group {
-			if q[i] = c.predict(values); q[i].err != nil {
+			if q[i] = c.predict(values, p.rough); q[i].err != nil {
 				return math.Inf(1)
 			}
 		}
@@ -380,7 +420,7 @@ func (p *Problem) screen(x []float64, group int) float64 {
 		if o.list >= 0 || p.configs[o.config].group != group {
 			continue
 		}
-		r := (o.value - q[o.config].of(o, o.order)) / math.Hypot(o.u, widen*o.value)
+		r := p.residual(i, x, q, o.order, widen)
 		if math.IsNaN(r) {
 			return math.Inf(1)
 		}

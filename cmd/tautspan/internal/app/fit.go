@@ -71,6 +71,13 @@ func (l *loaded) fit(ctx context.Context, doc *FitDoc, want FitWant) error {
 		return l.refuseFit(ctx, err)
 	}
 	doc.Exact = append(doc.Exact, p.Exact()...)
+	if f := l.compiled.Template.Fit; f != nil {
+		for _, u := range f.Uses {
+			if u.History {
+				doc.Notes = append(doc.Notes, "history is left out: this version does not fit records step by step")
+			}
+		}
+	}
 	l.fitted(doc, res)
 	if err := l.judgeFit(ctx, doc, res); err != nil {
 		return err

@@ -168,7 +168,7 @@ func (l *loaded) residualRow(r *fit.Residual) FitResidual {
 func partsOf(n *doubt.Number) []FitPart {
 	out := []FitPart{}
 	for _, c := range n.Contributions {
-		if c.Change == c.Change && c.Change != 0 {
+		if finite(c.Change) != nil && c.Change != 0 {
 			out = append(out, FitPart{c.Input, c.Change})
 		}
 	}
