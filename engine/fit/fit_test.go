@@ -310,3 +310,44 @@ func TestTiedLinesWithADashpot(t *testing.T) {
 	near(t, "tension", r.Best.Unknowns[0].Value, 50e3, 0.05)
 	near(t, "dashpot", r.Best.Unknowns[1].Value, 300, 1e-3)
 }
+
+// Peaks of a record come without numbers; a damping ratio goes with its peak, and
+// counts where the fit asks for decays.
+func TestPeaksOfARecord(t *testing.T) {
+	lets := plainLets + "let lossy = 1 N*s/m^2\n"
+	text := strings.Replace(stringText(lets, ""), "axial 50 MN", "loss viscous lossy", 1)
+	text = text[:strings.Index(text, "reading r")] + "seek pull from 1 kN to 1 MN\nseek lossy from 0.01 N*s/m^2 to 10 N*s/m^2\n"
+	tmpl := templateOf(t, text)
+	omega := 2 * math.Pi * 0.5
+	peaks := Peaks{Reading: "rec", Frequency: []float64{0.5, 0.77, 1.0, 1.5}, U: []float64{0.001, 0.001, 0.002, 0.003},
+		Damping: []float64{0.3 / (2 * 5 * omega), 0.02, 0, 0.3 / (2 * 5 * 3 * omega)}, DampingU: []float64{1e-4, 1e-4, 0, 1e-4}}
+	for _, decays := range []bool{false, true} {
+		if decays {
+			tmpl.Fit = &scenario.Fit{Uses: []scenario.FitUse{
+				{Kinds: []scenario.ReadingKind{scenario.FrequencyReading, scenario.PeaksReading}}, {Kinds: []scenario.ReadingKind{scenario.DecayReading}}}}
+		}
+		p, err := New(tmpl, peaks)
+		if err != nil {
+			t.Fatal(err)
+		}
+		r, err := p.Solve(context.Background())
+		if err != nil {
+			t.Fatal(err)
+		}
+		near(t, "tension", r.Best.Unknowns[0].Value, 50e3, 20)
+		if lossy := r.Best.Unknowns[1]; !decays {
+			if !lossy.Undecided {
+				t.Errorf("a loss that frequencies do not tell: %+v", lossy)
+			}
+			continue
+		}
+		near(t, "loss", r.Best.Unknowns[1].Value, 0.3, 1e-3)
+		modes := []int{}
+		for _, row := range r.Best.Residuals {
+			modes = append(modes, row.Mode)
+		}
+		if fmt.Sprint(modes) != "[1 1 0 0 2 3 3]" {
+			t.Errorf("modes %v", modes)
+		}
+	}
+}

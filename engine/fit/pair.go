@@ -78,7 +78,12 @@ func (p *Problem) pair(x []float64, q []prediction, widen float64) (pairing, flo
 			continue
 		}
 		modes[i] = max(o.order, 1)
-		r := p.residual(i, x, q, o.order, widen)
+		if o.peak >= 0 { // goes with its peak, or falls with it
+			if modes[i] = modes[o.peak]; modes[i] == 0 {
+				continue
+			}
+		}
+		r := p.residual(i, x, q, modes[i], widen)
 		if math.IsNaN(r) {
 			return modes, math.Inf(1)
 		}
@@ -163,7 +168,7 @@ func (p *Problem) drops() {
 func (p *Problem) extras(modes pairing) float64 {
 	cost := 0.0
 	for i := range p.obs {
-		if modes[i] == 0 {
+		if modes[i] == 0 && p.obs[i].peak < 0 {
 			cost += strangerCost
 		}
 	}

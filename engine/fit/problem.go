@@ -63,6 +63,7 @@ type observation struct {
 	config  int
 	order   int // 0: not known, paired within its list
 	list    int // index into lists, -1
+	peak    int // observation whose mode this damping ratio has, -1
 	value   float64
 	u       float64
 	shared  int     // unknown that holds the shared error, -1
@@ -101,8 +102,8 @@ func (e *Error) Error() string { return e.What }
 
 // New makes the fit of a template ready: of all readings where it has no fit
 // statement. It returns an *Error or a *scenario.PathError where there is nothing
-// that can be fitted.
-func New(t *scenario.Template) (*Problem, error) {
+// that can be fitted. records are what the spectra of records hold beside that.
+func New(t *scenario.Template, records ...Peaks) (*Problem, error) {
 	if len(t.Seeks) == 0 {
 		return nil, &Error{Code: "nothing-sought", What: "nothing is sought: no let is made unknown", Hint: "seek NAME from A to B"}
 	}
@@ -122,6 +123,12 @@ func New(t *scenario.Template) (*Problem, error) {
 	if err := p.observe(readings); err != nil {
 		return nil, err
 	}
+	for i := range records {
+		if err := p.observePeaks(&records[i]); err != nil {
+			return nil, err
+		}
+	}
+	p.sortLists()
 	if len(p.obs) == 0 {
 		return nil, &Error{Code: "nothing-read", Path: "fit", What: "there is no reading to fit to", Hint: "reading NAME of LINE { frequency 1 = 1.01 Hz +- 0.4 % }"}
 	}
@@ -178,7 +185,7 @@ func (p *Problem) observe(readings []scenario.Reading) error {
 				at = l
 			}
 			for n, v := range it.Values {
-				o := observation{reading: r.Name, item: it, kind: it.Kind, config: c, order: it.Order, list: at, value: v, u: it.U[n], shared: -1}
+				o := observation{reading: r.Name, item: it, kind: it.Kind, config: c, order: it.Order, list: at, peak: -1, value: v, u: it.U[n], shared: -1}
 				if it.Shared > 0 {
 					if _, known := shared[it.Kind]; !known {
 						shared[it.Kind] = len(p.unknowns)
@@ -194,10 +201,61 @@ func (p *Problem) observe(readings []scenario.Reading) error {
 			p.need(c, it)
 		}
 	}
+	return nil
+}
+
+func (p *Problem) sortLists() {
 	for i := range p.lists {
 		l := &p.lists[i]
 		sort.SliceStable(l.obs, func(a, b int) bool { return p.obs[l.obs[a]].value < p.obs[l.obs[b]].value })
 	}
+}
+
+// Peaks are the peaks of one channel of a record, without order numbers: what a
+// reading of peaks says, with the damping ratios that their decays show.
+type Peaks struct {
+	Reading   string // name of the record
+	Line      int
+	Sideways  bool
+	Sag       bool      // the sag term of the line counts in that plane
+	Frequency []float64 // Hz
+	U         []float64 // Hz
+	Damping   []float64 // ratio; 0 where none is known
+	DampingU  []float64
+}
+
+// observePeaks turns the peaks of a record into observations.
+func (p *Problem) observePeaks(r *Peaks) error {
+	use := p.template.Fit
+	if use == nil {
+		use = &scenario.Fit{}
+	}
+	if !use.Takes(scenario.PeaksReading, 0) {
+		return nil
+	}
+	it := &scenario.ReadingItem{Kind: scenario.PeaksReading, Values: r.Frequency, Sideways: r.Sideways, Sag: r.Sag}
+	c, err := p.config(&scenario.Reading{Name: r.Reading, Line: r.Line}, it, "record."+r.Reading)
+	if err != nil {
+		return err
+	}
+	l := list{}
+	l.from, l.to = use.Orders(scenario.PeaksReading)
+	p.need(c, it)
+	// A record always shows decays; they count only where the fit says so, since a
+	// line without losses of its own could not explain them.
+	decays := len(use.Uses) > 0 && use.Takes(scenario.DecayReading, 0)
+	damped := false
+	for i, f := range r.Frequency {
+		at := len(p.obs)
+		l.obs = append(l.obs, at)
+		p.obs = append(p.obs, observation{reading: r.Reading, item: it, kind: scenario.PeaksReading, config: c, list: len(p.lists), peak: -1, value: f, u: r.U[i], shared: -1})
+		if i < len(r.Damping) && r.Damping[i] > 0 && decays {
+			damped = true
+			p.obs = append(p.obs, observation{reading: r.Reading, item: it, kind: scenario.DecayReading, config: c, list: -1, peak: at, value: r.Damping[i], u: r.DampingU[i], shared: -1})
+		}
+	}
+	p.configs[c].decays = p.configs[c].decays || damped
+	p.lists = append(p.lists, l)
 	return nil
 }
 

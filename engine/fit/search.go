@@ -33,8 +33,8 @@ type size struct {
 // Single spans are evaluated in some 20 microseconds, other lines in some
 // hundred times that.
 var (
-	wide   = size{follow: 40, finish: 20, keep: 8, coarse: 9}
-	narrow = size{follow: 14, finish: 5, keep: 4, coarse: 4}
+	wide   = size{follow: 60, finish: 20, keep: 12, coarse: 9}
+	narrow = size{follow: 24, finish: 5, keep: 8, coarse: 4}
 )
 
 // size settles how wide to search.
@@ -263,14 +263,15 @@ func (p *Problem) split() (shared []int, private []own) {
 		}
 	}
 	for g := range private {
-		p.byInfluence(private[g].unknowns)
+		private[g].unknowns = p.byInfluence(private[g].unknowns)
 	}
 	return shared, private
 }
 
 // byInfluence orders unknowns by how much they move what is read, looked at in
-// the middle of their ranges.
-func (p *Problem) byInfluence(list []int) {
+// the middle of their ranges, and leaves out those that do not move it at all:
+// losses, where the search leaves them out.
+func (p *Problem) byInfluence(list []int) []int {
 	x := make([]float64, len(p.unknowns))
 	for _, i := range p.sought {
 		lo, hi := p.unknowns[i].bounds()
@@ -295,6 +296,11 @@ func (p *Problem) byInfluence(list []int) {
 		}
 	}
 	sort.SliceStable(list, func(a, b int) bool { return pull[list[a]] > pull[list[b]] })
+	n := len(list)
+	for n > 1 && pull[list[n-1]] == 0 {
+		n--
+	}
+	return list[:n]
 }
 
 // grid varies unknowns around a point: a full grid of n values each for up to
@@ -417,7 +423,7 @@ func (p *Problem) screen(x []float64, group int) float64 {
 	}
 	for i := range p.obs {
 		o := &p.obs[i]
-		if o.list >= 0 || p.configs[o.config].group != group {
+		if o.list >= 0 || o.peak >= 0 || p.configs[o.config].group != group {
 			continue
 		}
 		r := p.residual(i, x, q, o.order, widen)
