@@ -83,20 +83,22 @@ func covered(t testing.TB, trials int, seed uint64, more float64) (pull, stiff i
 // The intervals hold the truth as often as they say. The full count is that of
 // BenchmarkCoverage; here a part of it, whose own scatter is 3 %.
 func TestCoverage(t *testing.T) {
-	const trials = 60
+	const trials = 40
 	pull, stiff := covered(t, trials, 7, 1)
-	// 95 % of 60 is 57; below 52 or never a miss in both is less likely than 1 %.
-	if pull < 52 || stiff < 52 || pull+stiff == 2*trials {
+	// 95 % of 40 is 38; below 34 is less likely than 1 %, and so is no miss at all in
+	// both at the 97 % that the benchmark counts.
+	if pull < 34 || stiff < 34 || pull+stiff == 2*trials {
 		t.Errorf("tension inside %d times, stiffness %d, of %d", pull, stiff, trials)
 	}
 }
 
-// Peaks that scatter twice as much as they say widen the intervals: without
-// that they would hold the truth in two of three surveys.
+// Peaks that scatter twice as much as they say are paired with their scatter and
+// widen the intervals: without either these would hold the truth in two surveys
+// of three; counted over 400 they hold it in 87 %.
 func TestCoverageOfPeaksThatSayTooLittle(t *testing.T) {
-	const trials = 60
+	const trials = 40
 	pull, stiff := covered(t, trials, 8, 2)
-	if pull < 45 || stiff < 45 {
+	if pull < 30 || stiff < 30 {
 		t.Errorf("tension inside %d times, stiffness %d, of %d", pull, stiff, trials)
 	}
 }

@@ -316,7 +316,7 @@ func TestTiedLinesWithADashpot(t *testing.T) {
 func TestPeaksOfARecord(t *testing.T) {
 	lets := plainLets + "let lossy = 1 N*s/m^2\n"
 	text := strings.Replace(stringText(lets, ""), "axial 50 MN", "loss viscous lossy", 1)
-	text = text[:strings.Index(text, "reading r")] + "seek pull from 1 kN to 1 MN\nseek lossy from 0.01 N*s/m^2 to 10 N*s/m^2\n"
+	text = text[:strings.Index(text, "reading r")] + "seek pull from 10 kN to 400 kN\nseek lossy from 0.01 N*s/m^2 to 10 N*s/m^2\n"
 	tmpl := templateOf(t, text)
 	omega := 2 * math.Pi * 0.5
 	peaks := Peaks{Reading: "rec", Frequency: []float64{0.5, 0.77, 1.0, 1.5}, U: []float64{0.001, 0.001, 0.002, 0.003},

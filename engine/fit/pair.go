@@ -87,6 +87,7 @@ func (p *Problem) pair(x []float64, q []prediction, widen float64) (pairing, flo
 		if math.IsNaN(r) {
 			return modes, math.Inf(1)
 		}
+		r /= p.slack
 		if p.droppable(i) && r*r > strangerCost {
 			modes[i] = 0
 			cost += strangerCost
@@ -114,7 +115,7 @@ func (p *Problem) pairList(l *list, q []prediction, widen float64, modes pairing
 	}
 	read, u := make([]float64, len(l.obs)), make([]float64, len(l.obs))
 	for k, i := range l.obs {
-		read[k], u[k] = p.obs[i].value, math.Hypot(p.obs[i].u, widen*p.obs[i].value)
+		read[k], u[k] = p.obs[i].value, p.slack*math.Hypot(p.obs[i].u, widen*p.obs[i].value)
 	}
 	at, cost := align(read, u, model)
 	for k, i := range l.obs {

@@ -85,8 +85,9 @@ type Problem struct {
 	obs      []observation
 	lists    []list
 	configs  []*config
-	rough    bool   // predict without losses, while a search is far from its end
-	mayDrop  []bool // by observation: a numbered frequency that may be a stranger
+	slack    float64 // how many times worse than they say readings are taken to be while they are paired
+	rough    bool    // predict without losses, while a search is far from its end
+	mayDrop  []bool  // by observation: a numbered frequency that may be a stranger
 }
 
 // Error is a fit that cannot be made, with the path of what is at fault.
@@ -119,7 +120,7 @@ func New(t *scenario.Template, records ...Peaks) (*Problem, error) {
 	if err != nil {
 		return nil, err
 	}
-	p := &Problem{template: t, start: values}
+	p := &Problem{template: t, start: values, slack: 1}
 	if err := p.observe(readings); err != nil {
 		return nil, err
 	}

@@ -247,9 +247,6 @@ func (p *Problem) remarks(c *cover, out *Solution) []string {
 			add("the readings pull %s by %.1f of its standard uncertainties: hold it against its source", u.Name, math.Abs(u.PriorPulled))
 		}
 	}
-	if n := p.nearMisses(c.s); n > 1 {
-		add("%d strangers lie near vibrations of the line that nothing else was paired with: the readings may be worse than they say", n)
-	}
 	if c.scatter > 1.5 {
 		add("the readings scatter %.1f times as much as their doubt says, and count so much less; a wrong order number, end or length does the same", c.scatter)
 	}
@@ -260,33 +257,6 @@ func (p *Problem) remarks(c *cover, out *Solution) []string {
 		add("the slopes of the model do not settle at the solution, so that the intervals are rough")
 	}
 	return notes
-}
-
-// nearMisses counts strangers that lie within a fifth of the way to the next of a
-// vibration that nothing was paired with.
-func (p *Problem) nearMisses(s *solution) int {
-	n := 0
-	for l := range p.lists {
-		taken := map[int]bool{}
-		for _, i := range p.lists[l].obs {
-			taken[s.modes[i]] = true
-		}
-		for _, i := range p.lists[l].obs {
-			o := &p.obs[i]
-			f := s.q[o.config].frequency
-			for m := range f {
-				gap := f[m]
-				if m > 0 {
-					gap -= f[m-1]
-				}
-				if s.modes[i] == 0 && !taken[m+1] && math.Abs(o.value-f[m]) < gap/5 {
-					n++
-					break
-				}
-			}
-		}
-	}
-	return n
 }
 
 // Joint is the doubt of a solution carried to the lets: every let for

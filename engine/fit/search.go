@@ -4,6 +4,7 @@ import (
 	"context"
 	"math"
 	"math/rand/v2"
+	"slices"
 	"sort"
 )
 
@@ -93,6 +94,7 @@ func (p *Problem) search(ctx context.Context) ([]solution, error) {
 			found = p.keep(found, sol)
 		}
 	}
+	found = p.loosen(found)
 	sort.SliceStable(found, func(a, b int) bool { return found[a].cost < found[b].cost })
 	for i := range found {
 		if found[i].cost > found[0].cost+ambiguous {
@@ -100,6 +102,49 @@ func (p *Problem) search(ctx context.Context) ([]solution, error) {
 		}
 	}
 	return found, nil
+}
+
+// slacks are how many times worse than they say readings may be taken to be.
+var slacks = [...]float64{1.5, 2, 3, 4}
+
+// loosen asks whether the readings are worse than they say: three standard
+// uncertainties, beyond which a reading is a stranger, would then throw out the
+// very ones that show it. With all of them s times as uncertain the likelihood
+// costs 2 ln s for each,
+//
+//	sum r^2/s^2 + 2 n ln s + strangers + passed over,
+//
+// and where that is less for some s > 1 than for 1, solutions are paired with it.
+// Residuals and intervals go on to use what the readings say, widened by their
+// scatter. Source: the likelihood of a normal distribution of unknown width.
+func (p *Problem) loosen(found []solution) []solution {
+	if len(found) == 0 || len(p.lists) == 0 && !slices.Contains(p.mayDrop, true) {
+		return found
+	}
+	best := 0
+	for i := range found {
+		if found[i].cost < found[best].cost {
+			best = i
+		}
+	}
+	least, slack := found[best].cost, 1.0
+	for _, s := range slacks {
+		p.slack = s
+		if sol, ok := p.settle(found[best].x); ok && sol.cost < least {
+			least, slack = sol.cost, s
+		}
+	}
+	p.slack = slack
+	if slack == 1 {
+		return found
+	}
+	var out []solution
+	for i := range found {
+		if sol, ok := p.settle(found[i].x); ok {
+			out = p.keep(out, sol)
+		}
+	}
+	return out
 }
 
 // keep enters a solution unless it is one of those at hand; of two that are one
@@ -164,8 +209,22 @@ func (p *Problem) settle(x []float64) (solution, bool) {
 		return solution{}, false
 	}
 	s.x, s.q = x, q
-	s.cost = s.sum + p.extras(s.modes)
+	s.cost = p.total(s.sum, s.modes)
 	return s, true
+}
+
+// total is the cost of a sum of squares with a pairing.
+func (p *Problem) total(sum float64, modes pairing) float64 {
+	if p.slack == 1 {
+		return sum + p.extras(modes)
+	}
+	paired := 0.0
+	for _, m := range modes {
+		if m != 0 {
+			paired++
+		}
+	}
+	return sum/(p.slack*p.slack) + 2*paired*math.Log(p.slack) + p.extras(modes)
 }
 
 func equal(a, b pairing) bool {
@@ -198,7 +257,7 @@ func (p *Problem) same(a, b *solution) bool {
 		mid[i] = (a.x[i] + b.x[i]) / 2
 	}
 	r := p.residuals(mid, p.predict(mid), a.modes, 0)
-	return r != nil && square(r)+p.extras(a.modes) <= math.Max(a.cost, b.cost)+1
+	return r != nil && p.total(square(r), a.modes) <= math.Max(a.cost, b.cost)+1
 }
 
 // starts screens the ranges of the sought lets and gives the points that are
