@@ -112,6 +112,7 @@ func (r *resolver) lineProperties(e *lineEntry) {
 			r.notYet(p.Span, "tension that grows with amplitude", "")
 		case "plane":
 			e.sideways = p.Choice.Text == "sideways"
+			r.tmpl.Model.Lines[e.index].Sideways = e.sideways
 		case "at":
 			v := r.want(p.Value, plain, unit.Temperature, "a temperature")
 			if !v.bad {

@@ -116,6 +116,7 @@ func (p *Problem) again(x []float64, k int, q []prediction) []prediction {
 const (
 	mostSteps = 60
 	lastGain  = 1e-10
+	leadGain  = 1e-2 // while a start is led to a minimum
 )
 
 // descend lowers the cost of a pairing by Levenberg and Marquardt's method with
@@ -161,7 +162,11 @@ func (p *Problem) descend(x []float64, q []prediction, modes pairing, widen floa
 		gain := (f - nf) / math.Max(predicted, math.SmallestNonzeroFloat64)
 		mu *= math.Max(1.0/3, 1-math.Pow(2*math.Min(gain, 1)-1, 3))
 		nu = 2
-		small := f-nf <= lastGain*(1e-3+f)
+		enough := lastGain
+		if p.leading {
+			enough = leadGain
+		}
+		small := f-nf <= enough*(1e-3+f)
 		x, q, r, f, j = to, nq, nr, nf, nil
 		if small {
 			break

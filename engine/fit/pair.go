@@ -17,12 +17,20 @@ type pairing []int
 // align pairs frequencies that were read, rising, with those of the model,
 // rising, in order: the pairs that cost least, counting ((read - model)/u)^2 for
 // a pair, strangerCost for a reading left over and missingCost for a vibration
-// passed over below the highest that is paired. It returns for each reading the
+// passed over below the highest that is paired; dear is what pairing with each
+// vibration costs beside its residual, nil for nothing. It returns for each reading the
 // index of its vibration, -1 for a stranger, and the cost.
 //
 // Method: dynamic programming over prefixes of both lists, as sequences are
 // aligned; exact, in len(read)*len(model) steps.
-func align(read, u, model []float64) (mode []int, cost float64) {
+func align(read, u, model, dear []float64) (mode []int, cost float64) {
+	pair := func(i, j int) float64 {
+		d := (read[i-1] - model[j-1]) / u[i-1]
+		if dear == nil {
+			return d * d
+		}
+		return d*d + dear[j-1]
+	}
 	n, m := len(read), len(model)
 	best := make([]float64, (n+1)*(m+1))
 	for j := 1; j <= m; j++ {
@@ -32,8 +40,7 @@ func align(read, u, model []float64) (mode []int, cost float64) {
 		row, above := best[i*(m+1):(i+1)*(m+1)], best[(i-1)*(m+1):i*(m+1)]
 		row[0] = above[0] + strangerCost
 		for j := 1; j <= m; j++ {
-			d := (read[i-1] - model[j-1]) / u[i-1]
-			row[j] = math.Min(above[j-1]+d*d, math.Min(above[j]+strangerCost, row[j-1]+missingCost))
+			row[j] = math.Min(above[j-1]+pair(i, j), math.Min(above[j]+strangerCost, row[j-1]+missingCost))
 		}
 	}
 	last := best[n*(m+1):]
@@ -47,8 +54,7 @@ func align(read, u, model []float64) (mode []int, cost float64) {
 	for i, j := n, at; i > 0; {
 		here := best[i*(m+1)+j]
 		if j > 0 {
-			d := (read[i-1] - model[j-1]) / u[i-1]
-			if here == best[(i-1)*(m+1)+j-1]+d*d {
+			if here == best[(i-1)*(m+1)+j-1]+pair(i, j) {
 				i, j = i-1, j-1
 				mode[i] = j
 				continue
@@ -98,6 +104,18 @@ func (p *Problem) pair(x []float64, q []prediction, widen float64) (pairing, flo
 	return modes, cost
 }
 
+// telling is how much it tells that a peak lies within a share of vibration n:
+// twice the logarithm of how seldom that is by chance, vibrations lying f/n apart,
+//
+//	-2 ln(root(2 pi) share n),
+//
+// at most what a stranger costs. While uncertainties are widened, a pairing costs
+// what it does not tell: within three per cent of the twentieth vibration lies
+// anything, so that high peaks wait until low ones have narrowed the search.
+func telling(n int, share float64) float64 {
+	return math.Min(math.Max(-2*math.Log(math.Sqrt(2*math.Pi)*share*float64(n)), 0), strangerCost)
+}
+
 // pairList pairs one list of peaks.
 func (p *Problem) pairList(l *list, q []prediction, widen float64, modes pairing) float64 {
 	if len(l.obs) == 0 {
@@ -117,7 +135,14 @@ func (p *Problem) pairList(l *list, q []prediction, widen float64, modes pairing
 	for k, i := range l.obs {
 		read[k], u[k] = p.obs[i].value, p.slack*math.Hypot(p.obs[i].u, widen*p.obs[i].value)
 	}
-	at, cost := align(read, u, model)
+	var dear []float64
+	if widen > 0 {
+		dear = make([]float64, len(model))
+		for j := range dear {
+			dear[j] = strangerCost - telling(first+j+1, widen)
+		}
+	}
+	at, cost := align(read, u, model, dear)
 	for k, i := range l.obs {
 		modes[i] = at[k] + 1
 		if at[k] >= 0 {

@@ -46,7 +46,7 @@ func TestAlignIsTheBest(t *testing.T) {
 		for i := range u {
 			u[i] = 0.05 + 0.3*r.Float64()
 		}
-		mode, cost := align(read, u, model)
+		mode, cost := align(read, u, model, nil)
 		if want := alignAll(read, u, model); math.Abs(cost-want) > 1e-9 {
 			t.Fatalf("trial %d: cost %g, best is %g", trial, cost, want)
 		}

@@ -13,11 +13,10 @@ import (
 // the high ones as it comes nearer.
 var widenings = [...]float64{0.03, 0.015, 0.007, 0.003, 0.001, 0}
 
-// How a search is sized. Chosen: a step of 8 % of tension moves frequencies by
-// 4 %, so that no start is further than 2 % off, within the first widening.
+// How a search is sized. Chosen: what a step of the fine unknown moves frequencies
+// by is within the widening of the screening.
 const (
-	fineRatio    = 1.08
-	mostFine     = 100
+	mostFine     = 160
 	seedOfStarts = 1
 	ambiguous    = 9  // solutions within this cost of the best are all told
 	hopeless     = 60 // above the best: a start that is given up half way
@@ -25,17 +24,19 @@ const (
 
 // size is how wide a search is.
 type size struct {
-	follow int // starts that are led to a minimum
-	finish int // minima that are settled with everything free
-	keep   int // starts kept of each group of lines and point of the shared lets
-	coarse int // values of the second of a group's unknowns
+	follow int     // starts that are led to a minimum
+	finish int     // minima that are settled with everything free
+	keep   int     // starts kept of each group of lines and point of the shared lets
+	coarse int     // values of the second of a group's unknowns
+	ratio  float64 // between values of a group's first unknown
+	widen  float64 // of the screening, as a share of the value
 }
 
 // Single spans are evaluated in some 20 microseconds, other lines in some
 // hundred times that.
 var (
-	wide   = size{follow: 60, finish: 20, keep: 12, coarse: 9}
-	narrow = size{follow: 24, finish: 5, keep: 8, coarse: 4}
+	wide   = size{follow: 30, finish: 12, keep: 12, coarse: 5, ratio: 1.05, widen: 0.02}
+	narrow = size{follow: 24, finish: 5, keep: 8, coarse: 4, ratio: 1.08, widen: 0.03}
 )
 
 // size settles how wide to search.
@@ -68,7 +69,7 @@ type start struct {
 // lines with losses, with the model without them; then the best of these with
 // everything.
 func (p *Problem) search(ctx context.Context) ([]solution, error) {
-	p.rough = p.lossy()
+	p.rough, p.leading = p.lossy(), true
 	var led []solution
 	best := math.Inf(1)
 	for _, s := range p.starts() {
@@ -80,7 +81,7 @@ func (p *Problem) search(ctx context.Context) ([]solution, error) {
 			led = p.keep(led, sol)
 		}
 	}
-	p.rough = false
+	p.rough, p.leading = false, false
 	sort.SliceStable(led, func(a, b int) bool { return led[a].cost < led[b].cost })
 	var found []solution
 	for i := range led {
@@ -399,7 +400,7 @@ func (p *Problem) grid(x []float64, list []int, n int) [][]float64 {
 
 // scan searches one group with everything shared standing still: finely over
 // the unknown that moves most, coarsely over the others. It gives the lowest
-// minima along the fine one.
+// minima along the fine one, apart from one another in either.
 func (p *Problem) scan(x []float64, g own) []start {
 	if len(g.unknowns) == 0 {
 		return []start{{x, p.screen(x, g.group)}}
@@ -433,7 +434,11 @@ func (p *Problem) scan(x []float64, g own) []start {
 	for _, s := range out {
 		near := false
 		for _, k := range kept {
-			near = near || math.Abs(k.x[fine]-s.x[fine]) < 0.06
+			close := math.Abs(k.x[fine]-s.x[fine]) < 0.06
+			for _, i := range coarse {
+				close = close && math.Abs(k.x[i]-s.x[i]) < 0.7
+			}
+			near = near || close
 		}
 		if !near && len(kept) < p.size().keep {
 			kept = append(kept, s)
@@ -454,7 +459,7 @@ func (p *Problem) fineSteps(i, group int) int {
 		return 12
 	}
 	lo, hi := p.unknowns[i].bounds()
-	return min(max(int(math.Ceil((hi-lo)/math.Log(fineRatio))), 4), mostFine)
+	return min(max(int(math.Ceil((hi-lo)/math.Log(p.size().ratio))), 4), mostFine)
 }
 
 // screen is the widened cost of a group's readings: that of the pairing for
@@ -472,7 +477,7 @@ func (p *Problem) screen(x []float64, group int) float64 {
 			}
 		}
 	}
-	const widen = 0.03
+	widen := p.size().widen
 	cost := 0.0
 	modes := make(pairing, len(p.obs))
 	for l := range p.lists {

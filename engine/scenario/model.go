@@ -25,6 +25,7 @@ type LineOf[V any] struct {
 	Segments []SegmentOf[V]
 	Incline  V    // rad, positive where the line rises in walking order
 	Sag      bool // with the shallow-cable term of Irvine and Caughey, vertical plane
+	Sideways bool // looked at across its vertical plane
 	// SaidTension is the tension that the line says, N, at the place that it says;
 	// only with TensionSaid, else each segment says its own.
 	TensionSaid bool

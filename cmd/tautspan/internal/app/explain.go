@@ -20,6 +20,7 @@ The answers stand as if their inputs were exact. Make the doubt smaller, or see 
 		"nothing-sought":              `A fit moves the lets that a seek statement makes unknown: seek NAME from A to B. None is said.`,
 		"no-solution":                 `Over the whole ranges of the sought lets no point was found at which the lines can be computed and held against every reading. Look at the ranges first: a range in another unit, or one that leaves no tension at an end of an inclined line.`,
 		"wants-place":                 `A joint holds the line between its ends, so that a pulse runs up and down a part of it only. Say a place inside that part behind "at".`,
+		"unreadable-record":           `A record that the fit names cannot be read, or holds nothing that could be fitted. The message says why; 'tautspan peaks FILE' looks at the file alone.`,
 		"no-survey":                   `A change is between two results of 'tautspan fit': result folders written with --out, or documents printed with --json. The message says what is wrong with this one.`,
 		"failed":                      `Something outside the scenario failed: a file that cannot be read or written, a limit on memory or work, no solver that can answer. The message says what.`,
 		"no-fronts":                   `The pulse ledger follows fronts on taut strings only. The message names what it cannot follow.`,

@@ -38,7 +38,7 @@ func (a *App) Fit(ctx context.Context, in Input, want FitWant) (*FitDoc, Status,
 		}
 	}
 	if !l.failed() {
-		if err := l.fit(ctx, doc, want); err != nil {
+		if err := l.fit(ctx, in, doc, want); err != nil {
 			if ctx.Err() != nil {
 				return doc, Interrupted, nil
 			}
@@ -61,8 +61,12 @@ func (a *App) Fit(ctx context.Context, in Input, want FitWant) (*FitDoc, Status,
 	return doc, NotAsAsked, nil
 }
 
-func (l *loaded) fit(ctx context.Context, doc *FitDoc, want FitWant) error {
-	p, err := fit.New(l.compiled.Template)
+func (l *loaded) fit(ctx context.Context, in Input, doc *FitDoc, want FitWant) error {
+	records, err := l.records(in, doc)
+	if err != nil || l.failed() {
+		return err
+	}
+	p, err := fit.New(l.compiled.Template, records...)
 	var res *fit.Result
 	if err == nil {
 		res, err = p.Solve(ctx)
