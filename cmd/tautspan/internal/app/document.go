@@ -252,6 +252,8 @@ type RequirementRow struct {
 	Verdict string       `json:"verdict"`
 	Margin  *float64     `json:"margin"`
 	Settle  string       `json:"settle"`
+
+	of int // which of the scenario's requirements; used by a fit
 }
 
 // EnergyRow is the energy account of one solver.

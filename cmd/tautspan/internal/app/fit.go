@@ -40,6 +40,7 @@ func (a *App) Fit(ctx context.Context, in Input, want FitWant) (*FitDoc, Status,
 	if !l.failed() {
 		if err := l.fit(ctx, in, doc, want); err != nil {
 			if ctx.Err() != nil {
+				doc.Head = l.head
 				return doc, Interrupted, nil
 			}
 			return nil, Defect, err
@@ -124,13 +125,19 @@ func (l *loaded) judgeFit(ctx context.Context, doc *FitDoc, res *fit.Result) err
 		return err
 	}
 	for i := range answers.Requirements {
-		doc.Requirements = append(doc.Requirements, requirementRow(&answers.Requirements[i]))
+		row := requirementRow(&answers.Requirements[i])
+		for k := range l.compiled.Template.Requires {
+			if &l.compiled.Template.Requires[k] == answers.Requirements[i].Of {
+				row.of = k
+			}
+		}
+		doc.Requirements = append(doc.Requirements, row)
 	}
 	doc.Collected = collectedRows(answers.Collected)
 	for _, w := range answers.Waiting {
 		doc.Notes = append(doc.Notes, w+" waits for a run")
 	}
-	split := false
+	waiting := len(answers.Requirements) < len(l.compiled.Template.Requires)
 	for k, s := range res.Alternatives {
 		other, err := l.answersOf(ctx, s)
 		if err != nil {
@@ -142,17 +149,17 @@ func (l *loaded) judgeFit(ctx context.Context, doc *FitDoc, res *fit.Result) err
 			if mine := &doc.Requirements[i]; mine.Verdict != row.Verdict && mine.Verdict != "undecided" {
 				mine.Settle = joinSentences(fmt.Sprintf("another solution that explains the readings about as well would be %s: know more of the sought lets beforehand, or take a reading that tells the solutions apart", row.Verdict), mine.Settle)
 				mine.Verdict = "undecided"
-				split = true
 			}
 		}
 	}
-	doc.Verdict = fitVerdict(doc, split)
+	doc.Verdict = fitVerdict(doc, waiting)
 	doc.Cautions = append(doc.Cautions, l.fitCautions(res.Best)...)
 	return nil
 }
 
-// fitVerdict is the worst of a fit: a requirement, an ambiguous or undecided let.
-func fitVerdict(doc *FitDoc, split bool) string {
+// fitVerdict is the worst of a fit: a requirement, one that waits for a run, an
+// ambiguous or undecided let.
+func fitVerdict(doc *FitDoc, waiting bool) string {
 	rank := []string{"fitted", "met", "undecided", "ambiguous", "not met"}
 	worst := 0
 	see := func(v string) {
@@ -164,6 +171,9 @@ func fitVerdict(doc *FitDoc, split bool) string {
 	}
 	for i := range doc.Requirements {
 		see(doc.Requirements[i].Verdict)
+	}
+	if waiting {
+		see("undecided")
 	}
 	if len(doc.Alternatives) > 0 {
 		see("ambiguous")
@@ -289,12 +299,12 @@ func warmth(line *scenario.Line) (at, perKelvin *float64) {
 // on the tension of a line.
 func (l *loaded) designOf(doc *FitDoc, line int, row *FitLine) {
 	row.Action = "say what is required of it"
-	for i := range l.compiled.Template.Requires {
-		q := &l.compiled.Template.Requires[i]
-		if i >= len(doc.Requirements) || q.Unit != "N" || !l.isTensionOf(q, line) {
+	for i := range doc.Requirements {
+		r := &doc.Requirements[i]
+		q := &l.compiled.Template.Requires[r.of]
+		if q.Unit != "N" || !l.isTensionOf(q, line) {
 			continue
 		}
-		r := &doc.Requirements[i]
 		if len(q.Measures) == 1 && q.Measures[0].HasPlace {
 			row.take(&r.Value)
 			row.Where = strings.TrimSuffix(strings.TrimPrefix(q.Measures[0].Source, "tension("), ")")

@@ -68,29 +68,57 @@ func (p *printer) sayExpected(d *app.PlanDoc) {
 		return
 	}
 	p.line("\nhalf width of 95 %% to be expected, frequencies read to %s", percent(d.Accuracy))
-	t := newTable(append([]string{"peaks of each line"}, d.Unknowns...)...)
-	for i := range d.Unknowns {
-		t.flush(i + 1)
-	}
-	t.flush(0)
-	for _, e := range d.Expected {
-		row := []string{fmt.Sprint(e.Peaks)}
-		for k, h := range e.HalfWidth {
-			switch {
-			case !e.Relative[k]:
-				row = append(row, trimNumber(h, 2))
-			case h > 1:
-				row = append(row, "open")
-			default:
-				row = append(row, percent(round2(h)))
+	if len(d.Unknowns) <= fewUnknowns {
+		t := newTable(append([]string{"peaks of each line"}, d.Unknowns...)...)
+		t.flush(0)
+		for _, e := range d.Expected {
+			row := []string{fmt.Sprint(e.Peaks)}
+			for k := range e.HalfWidth {
+				row = append(row, halfWidth(&e, k))
 			}
+			t.add(row...)
 		}
-		t.add(row...)
+		for i := range d.Unknowns {
+			t.flush(i + 1)
+		}
+		p.table(t)
+	} else {
+		head := []string{"peaks of each line"}
+		for _, e := range d.Expected {
+			head = append(head, fmt.Sprint(e.Peaks))
+		}
+		t := newTable(head...)
+		for k, name := range d.Unknowns {
+			row := []string{name}
+			for i := range d.Expected {
+				row = append(row, halfWidth(&d.Expected[i], k))
+			}
+			t.add(row...)
+		}
+		for i := range d.Expected {
+			t.flush(i + 1)
+		}
+		p.table(t)
 	}
-	p.table(t)
 	if open := d.Expected[len(d.Expected)-1].Open; len(open) > 0 {
 		for _, o := range open {
 			p.prose("  ", o)
 		}
+	}
+}
+
+// fewUnknowns is how many lets stand beside one another in a table; more stand
+// below one another.
+const fewUnknowns = 6
+
+// halfWidth is one expected half width, as a share where it is one.
+func halfWidth(e *app.PlanExpected, k int) string {
+	switch h := e.HalfWidth[k]; {
+	case !e.Relative[k]:
+		return trimNumber(h, 2)
+	case h > 1:
+		return "open"
+	default:
+		return percent(round2(h))
 	}
 }
