@@ -122,7 +122,7 @@ func (r *resolver) readingItem(it *syntax.ReadingItem, line *lineEntry) (scenari
 		v := value{prog: out.Values[0], dim: k.of.Dim, percent: k.of == unit.Share}
 		d, good := r.doubt(it.Shared, v)
 		if ok = good; ok {
-			out.Shared = d.StandardU
+			out.Shared, out.SharedAsTaken = d.StandardU, d.AsTaken
 		}
 	} else if it.Shared != nil && len(it.Values) > 1 {
 		r.errorAt(it.Shared.Span, "misplaced", "a shared doubt stands behind one value", "these are several", "")
@@ -149,7 +149,7 @@ func (r *resolver) readingPlane(it *syntax.ReadingItem, line *lineEntry, out *sc
 func (r *resolver) readingDoubt(it *syntax.ReadingItem, e syntax.Expr, v value, out *scenario.ReadingItemOf[formula.Program]) (formula.Program, bool) {
 	if it.Doubt == nil {
 		u, words := assumed(out.Kind, v.prog)
-		out.Assumed = words
+		out.Assumed, out.AsTaken = words, words
 		return u, true
 	}
 	d, ok := r.doubt(it.Doubt, v)
@@ -160,6 +160,7 @@ func (r *resolver) readingDoubt(it *syntax.ReadingItem, e syntax.Expr, v value, 
 		r.errorAt(it.Doubt.Span, "not-positive", "a reading has some doubt", "one without cannot be weighed against others", "")
 		return formula.Program{}, false
 	}
+	out.AsTaken = d.AsTaken
 	return d.StandardU, true
 }
 

@@ -43,6 +43,9 @@ type ReadingItemOf[V any] struct {
 	Source string // as written
 	Values []V    // SI
 	U      []V    // standard uncertainty of each value, same unit
+	// AsTaken is the doubt of the last value in words, and that of the shared part,
+	// for check to repeat.
+	AsTaken, SharedAsTaken string
 	// Assumed says in words what stands for a doubt that was not said; "" where
 	// one was.
 	Assumed string
@@ -155,7 +158,7 @@ func (t *Template) BindReadings(net *Network) ([]Reading, error) {
 			it := &r.Items[k]
 			path := fmt.Sprintf("reading.%s.%d", r.Name, k)
 			item := ReadingItem{
-				Kind: it.Kind, Order: it.Order, Source: it.Source, Assumed: it.Assumed, Shared: b.nonneg(it.Shared, path),
+				Kind: it.Kind, Order: it.Order, Source: it.Source, AsTaken: it.AsTaken, SharedAsTaken: it.SharedAsTaken, Assumed: it.Assumed, Shared: b.nonneg(it.Shared, path),
 				Sideways: it.Sideways, Sag: it.Sag, Warm: it.Warm, Temperature: b.nonneg(it.Temperature, path), HasPlace: it.HasPlace,
 			}
 			for n, v := range it.Values {

@@ -26,7 +26,7 @@ func (a *App) Check(in Input) (*CheckDoc, Status, error) {
 	if !l.failed() && l.net != nil {
 		l.tryLoads()
 	}
-	doc := &CheckDoc{Solvers: []SolverCan{}, Lines: []LineFacts{}, Lets: []LetFacts{}, Plucks: []PluckFacts{}, Cautions: []CautionNote{}}
+	doc := &CheckDoc{Solvers: []SolverCan{}, Lines: []LineFacts{}, Lets: []LetFacts{}, Plucks: []PluckFacts{}, Cautions: []CautionNote{}, Readings: []ReadingFacts{}, Sought: []SoughtFacts{}}
 	if !l.failed() && l.net != nil {
 		l.facts(doc)
 	}
@@ -40,6 +40,7 @@ func (a *App) Check(in Input) (*CheckDoc, Status, error) {
 
 func (l *loaded) facts(doc *CheckDoc) {
 	doc.Lets = l.letFacts()
+	doc.Readings, doc.Sought = l.surveyFacts()
 	if len(l.net.Lines) == 0 {
 		return
 	}
@@ -161,6 +162,38 @@ func (l *loaded) letFacts() []LetFacts {
 		out = append(out, f)
 	}
 	return out
+}
+
+// surveyFacts are the readings with their doubts as they were taken, and what is
+// sought in them.
+func (l *loaded) surveyFacts() ([]ReadingFacts, []SoughtFacts) {
+	readings, sought := []ReadingFacts{}, []SoughtFacts{}
+	t := l.compiled.Template
+	blocks, err := t.BindReadings(l.net)
+	if err != nil {
+		l.refuse(err)
+		return readings, sought
+	}
+	for i := range blocks {
+		for k := range blocks[i].Items {
+			it := &blocks[i].Items[k]
+			f := ReadingFacts{
+				Reading: blocks[i].Name, Line: l.net.Lines[blocks[i].Line].Name, Kind: it.Kind.String(), Plane: planeWord(it.Sideways), Unit: it.Kind.Unit(),
+				Values: it.Values, StandardU: it.U, SharedU: it.Shared, AsTaken: it.AsTaken, SharedAsTaken: it.SharedAsTaken,
+			}
+			if it.Order > 0 {
+				f.Number = &it.Order
+			}
+			if it.Warm {
+				f.Temperature = &it.Temperature
+			}
+			readings = append(readings, f)
+		}
+	}
+	for _, s := range t.Seeks {
+		sought = append(sought, SoughtFacts{Name: t.Lets[s.Let].Name, From: s.From.Eval(l.values, nil), To: s.To.Eval(l.values, nil), Unit: t.Lets[s.Let].Unit})
+	}
+	return readings, sought
 }
 
 func (l *loaded) runFacts() *RunFacts {

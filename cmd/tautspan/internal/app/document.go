@@ -35,13 +35,39 @@ type Engine struct {
 // CheckDoc is what is known of a scenario without running it.
 type CheckDoc struct {
 	Head
-	Diagnostics diag.List     `json:"diagnostics"`
-	Solvers     []SolverCan   `json:"solvers"`
-	Lines       []LineFacts   `json:"lines"`
-	Lets        []LetFacts    `json:"lets"`
-	Run         *RunFacts     `json:"run"`
-	Plucks      []PluckFacts  `json:"plucks"`
-	Cautions    []CautionNote `json:"cautions"`
+	Diagnostics diag.List      `json:"diagnostics"`
+	Solvers     []SolverCan    `json:"solvers"`
+	Lines       []LineFacts    `json:"lines"`
+	Lets        []LetFacts     `json:"lets"`
+	Run         *RunFacts      `json:"run"`
+	Plucks      []PluckFacts   `json:"plucks"`
+	Cautions    []CautionNote  `json:"cautions"`
+	Readings    []ReadingFacts `json:"readings"`
+	Sought      []SoughtFacts  `json:"sought"`
+}
+
+// ReadingFacts is one statement of a reading with its doubt as it was taken.
+type ReadingFacts struct {
+	Reading       string    `json:"reading"`
+	Line          string    `json:"line"`
+	Kind          string    `json:"kind"`
+	Number        *int      `json:"number"` // of the mode, or how many returns or swings
+	Plane         string    `json:"plane"`
+	Unit          string    `json:"unit"`
+	Values        []float64 `json:"values"`
+	StandardU     []float64 `json:"standard_u"`
+	SharedU       float64   `json:"shared_u"`
+	AsTaken       string    `json:"as_taken"`
+	SharedAsTaken string    `json:"shared_as_taken"`
+	Temperature   *float64  `json:"temperature_k"`
+}
+
+// SoughtFacts is a let that a fit seeks.
+type SoughtFacts struct {
+	Name string  `json:"name"`
+	From float64 `json:"from"`
+	To   float64 `json:"to"`
+	Unit string  `json:"unit"`
 }
 
 // SolverCan says whether a solver can represent the scenario.

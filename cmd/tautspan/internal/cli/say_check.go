@@ -52,6 +52,7 @@ func (p *printer) sayCheck(d *app.CheckDoc) {
 		p.sayLine(&d.Lines[i])
 	}
 	p.sayLets(d.Lets)
+	p.saySurvey(d)
 	for _, pl := range d.Plucks {
 		p.line("\npluck %s: %s holds %s aside", pl.Name, p.show(pl.Force, "N", 4), p.show(pl.Drawn, "m", 4))
 	}
@@ -126,6 +127,42 @@ func (p *printer) sayLets(lets []app.LetFacts) {
 	if len(t.rows) > 0 {
 		p.line("\ndoubtful inputs (one standard uncertainty)")
 		p.table(t)
+	}
+}
+
+// saySurvey prints the readings with their doubts as they were taken, and what is
+// sought in them.
+func (p *printer) saySurvey(d *app.CheckDoc) {
+	t := newTable()
+	for i := range d.Readings {
+		r := &d.Readings[i]
+		what := r.Kind
+		if r.Number != nil {
+			what += fmt.Sprintf(" %d", *r.Number)
+		}
+		values := make([]string, len(r.Values))
+		for k, v := range r.Values {
+			values[k] = p.read(v, r.Unit)
+		}
+		taken := "taken as: " + r.AsTaken
+		if len(r.Values) > 1 {
+			taken += " (of the last)"
+		}
+		if r.SharedAsTaken != "" {
+			taken += "; in common: " + r.SharedAsTaken
+		}
+		t.add(r.Reading, what, shorten(strings.Join(values, ", "), p.width/3), taken)
+	}
+	if len(t.rows) > 0 {
+		p.line("\nreadings")
+		p.table(t)
+	}
+	var words []string
+	for _, s := range d.Sought {
+		words = append(words, s.Name+" from "+p.show(s.From, s.Unit, 4)+" to "+p.show(s.To, s.Unit, 4))
+	}
+	if len(words) > 0 {
+		p.prose("sought by fit: ", strings.Join(words, ", "))
 	}
 }
 
