@@ -48,7 +48,9 @@ func (r *resolver) declare() {
 		case *syntax.Tie:
 			r.enter(s.Name, "tie")
 		case *syntax.Law:
-			r.enter(s.Name, "law")
+			if r.enter(s.Name, "law") {
+				r.laws[s.Name.Text] = &lawEntry{stmt: s}
+			}
 		case *syntax.Excite:
 			r.enter(s.Name, "excite")
 		case *syntax.Record:

@@ -221,14 +221,25 @@ func (r *resolver) roll(a *syntax.Roll, name, path string) {
 	out := scenario.RollOf[formula.Program]{Name: name, Line: along.Line, Speed: speed.prog, Force: load.prog, From: placeOf{Line: along.Line, Node: 0, Segment: -1}}
 	ok = ok && !speed.bad && !load.bad
 	for _, x := range []struct {
-		e syntax.Expr
-		k unit.Kind
-	}{{a.Mass, unit.Mass}, {a.Spring, unit.Spring}, {a.Dashpot, unit.Dashpot}} {
-		if x.e != nil {
-			r.want(x.e, plain, x.k, "the "+x.k.Word+" of roll")
-			r.notYet(x.e.Place(), "a load that rolls with a "+x.k.Word+" of its own", "")
-			ok = false
+		e    syntax.Expr
+		k    unit.Kind
+		b    bounds
+		into *formula.Program
+	}{{a.Mass, unit.Mass, positive, &out.Mass}, {a.Spring, unit.Spring, positive, &out.Spring}, {a.Dashpot, unit.Dashpot, notNegative, &out.Dashpot}} {
+		if x.e == nil {
+			continue
 		}
+		v := r.inRange(r.want(x.e, plain, x.k, "the "+x.k.Word+" of roll"), x.e, x.b, "the "+x.k.Word+" of roll")
+		r.path(path+"."+x.k.Word, x.e.Place())
+		*x.into, ok = v.prog, ok && !v.bad
+	}
+	switch {
+	case a.Mass != nil && a.Spring == nil:
+		r.errorAt(a.Mass.Place(), "missing-property", "a mass that rolls rides on a spring", "this one has none", "mass "+clip(a.Mass)+" spring 100 kN/m")
+		ok = false
+	case a.Mass == nil && (a.Spring != nil || a.Dashpot != nil):
+		r.errorAt(a.Load.Place(), "missing-property", "a spring or a dashpot of a rolling load carries a mass", "the load has none", "mass 20 kg")
+		ok = false
 	}
 	if a.From != nil {
 		from, fok := r.place(a.From, "from")

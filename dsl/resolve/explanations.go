@@ -70,6 +70,16 @@ The same thing is said twice, and the two may differ. Leave one of them.`,
 These properties exclude one another: what is held in place does not move, so a spring, a dashpot or a mass there would do nothing; free and absorbing stand alone.`,
 	"no-effect": `
 What is written here changes no answer in this scenario. It may stand, and it may be a sign that something else was meant.`,
+	"not-linear": `
+A natural frequency and a damping ratio belong to a line whose motion grows in proportion to what drives it. With friction, a stop, a written law, a tie that goes slack or tension that grows with amplitude they would hang on the amplitude, and a damper known only by its bench record has values at real frequencies alone. The program refuses instead of putting a straight line in their place.
+
+Ask a run: settle, peak, rms and reach are defined for any motion, and the share of energy left tells what a damper took.`,
+	"rests-on-stop": `
+A stop acts once the line has moved through its gap, measured from rest. With a gap of zero or less the line would lie on the stop at rest, pressed against it by an unknown force, and its rest would not be the one from which displacements are counted. Give the gap as it is measured, above zero.`,
+	"law-at-rest": `
+u is measured from static equilibrium, in which every force at rest is counted already. A law that gives a force at u = 0 and v = 0, with its states at their start, moves the line away from there as soon as the run begins. That may be meant (a force that depends on time); more often a sign or a start value is wrong.`,
+	"bench-drives": `
+The real part of an impedance, force per velocity, is what takes power from the line: half of it times the square of the velocity's amplitude. Below zero the damper would drive the line. A bench can measure that near the edge of its range, or the sign or the order of the columns is wrong.`,
 	"misplaced": `
 The language has this, and not in this place.`,
 	"missing-property": `

@@ -17,8 +17,9 @@ type scope struct {
 	time     *formula.Program // the time operand, nil where no time may stand
 	shift    formula.Program  // of the time operand against the time of the run
 	breaks   *breakList
-	measures *asked       // nil where no measure may stand
-	shared   *syntax.Unit // of the list that the expression stands in
+	measures *asked           // nil where no measure may stand
+	locals   map[string]value // further names, which go before all others
+	shared   *syntax.Unit     // of the list that the expression stands in
 }
 
 // plain is the scope of an ordinary value.
@@ -235,6 +236,9 @@ func (r *resolver) name(e *syntax.Name, sc *scope) value {
 	text, ok := e.Plain()
 	if !ok {
 		return r.dotted(e, sc)
+	}
+	if v, ok := sc.locals[text]; ok {
+		return v
 	}
 	switch text {
 	case "pi":

@@ -246,7 +246,7 @@ func (r *resolver) lineSag(e *lineEntry, line *scenario.LineOf[formula.Program])
 			return
 		}
 		if line.Nodes[i].Holds && i > 0 {
-			r.notYet(e.sag, "sag of a line whose tension a joint holds", "")
+			r.errorAt(e.sag, "contradiction", "the sag of a line that a joint holds is not that of one line", "the joint "+line.Nodes[i].Name+" keeps the extra tension of one side from the other", "write the parts as lines of their own")
 			return
 		}
 	}
@@ -255,6 +255,30 @@ func (r *resolver) lineSag(e *lineEntry, line *scenario.LineOf[formula.Program])
 		return
 	}
 	line.Sag, e.sags = true, true
+}
+
+// lineStretch lets the tension of a line grow with its amplitude where that is
+// asked for and can be had.
+func (r *resolver) lineStretch(e *lineEntry, line *scenario.LineOf[formula.Program]) {
+	if e.stretch.IsZero() {
+		return
+	}
+	for i := range line.Segments {
+		s := &line.Segments[i]
+		if r.num(s.Axial) <= 0 {
+			r.errorAt(e.stretch, "missing-property", "stretch wants the axial stiffness of every segment", "that of "+s.Name+" is not known: "+s.Stock+" does not say it", "axial 100 MN")
+			return
+		}
+		if line.Nodes[i].Holds && i > 0 {
+			r.errorAt(e.stretch, "contradiction", "the tension of a line that a joint holds does not grow along the whole of it", "the joint "+line.Nodes[i].Name+" holds", "write the parts as lines of their own")
+			return
+		}
+	}
+	if e.weighted {
+		r.warnAt(e.stretch, "no-effect", "stretch has no effect on this line", "a weighted end keeps its tension as it is", "")
+		return
+	}
+	line.Stretch = true
 }
 
 // sagsElsewhere tells whether a line that is looked at sideways can have the sag

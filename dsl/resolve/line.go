@@ -26,6 +26,7 @@ type lineEntry struct {
 	bad      bool
 	sideways bool
 	sag      diag.Span         // of `sag included`, zero where it is not said
+	stretch  diag.Span         // of `stretch included`
 	sags     bool              // the sag term counts for what is read in the vertical plane
 	weighted bool              // an end keeps the tension constant
 	incline  *formula.Program  // nil for a level line
@@ -109,7 +110,7 @@ func (r *resolver) lineProperties(e *lineEntry) {
 		case "sag":
 			e.sag = p.Span
 		case "stretch":
-			r.notYet(p.Span, "tension that grows with amplitude", "")
+			e.stretch = p.Span
 		case "plane":
 			e.sideways = p.Choice.Text == "sideways"
 			r.tmpl.Model.Lines[e.index].Sideways = e.sideways
@@ -256,7 +257,7 @@ func (r *resolver) addSegment(e *lineEntry, line *scenario.LineOf[formula.Progra
 		out.Stock = p.stock.stmt.Name.Text
 		out.MassPerLength, out.Axial, out.Strength, out.Bending = p.stock.mass, p.stock.axial, p.stock.strength, p.stock.bending
 		out.Diameter, out.Expansion = p.stock.diameter, p.stock.expansion
-		out.Viscous, out.Internal = p.stock.loss.viscous, p.stock.loss.internal
+		p.stock.loss.take(&out)
 		r.path(path+".mass", p.stock.massAt)
 		r.path(path+".axial", p.stock.axialAt)
 		r.path(path+".strength", p.stock.strongAt)
@@ -266,15 +267,15 @@ func (r *resolver) addSegment(e *lineEntry, line *scenario.LineOf[formula.Progra
 	r.segmentTension(e, s, &out, &p, path)
 	if len(s.Losses) > 0 {
 		unsure := p.stock == nil || p.stock.bad
-		loss := r.losses(s.Losses, out.MassPerLength, unsure)
+		loss := r.losses(s.Losses, out.MassPerLength, unsure, path)
 		r.internalWantsBending(loss, out.Bending, unsure)
-		out.Viscous, out.Internal = loss.viscous, loss.internal
+		loss.take(&out)
 		r.path(path+".loss", s.Losses[0].Span)
 	} else if p.stock != nil {
 		r.path(path+".loss", p.stock.loss.at)
 	}
 	for _, every := range s.Every {
-		r.notYet(every.Span, "a row of like joints by `every`", "write each as a joint")
+		r.every(e, every, &out, p.sound, path)
 	}
 	line.Segments = append(line.Segments, out)
 	e.parts = append(e.parts, p)
@@ -353,6 +354,7 @@ func (r *resolver) lineChecks(e *lineEntry) {
 	}
 	r.turns(e, line)
 	r.lineSag(e, line)
+	r.lineStretch(e, line)
 	r.unlikelyLine(e, line)
 }
 

@@ -242,6 +242,9 @@ func (r *resolver) modeMeasure(c *syntax.Call, sc *scope) value {
 	if !r.count(c, c.Name.Text+"(1)", 1, 2) {
 		return badValue
 	}
+	if !r.vibrates(c) {
+		return badValue
+	}
 	m := blank(scenario.Frequency, c)
 	d := unit.Frequency.Dim
 	if c.Name.Text == "damping" {

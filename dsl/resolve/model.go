@@ -13,6 +13,13 @@ import (
 
 // resolveModel compiles what is there and what happens.
 func (r *resolver) resolveModel() {
+	for _, s := range r.statements {
+		if law, ok := s.(*syntax.Law); ok {
+			if e := r.laws[law.Name.Text]; e != nil && e.stmt == law {
+				r.resolveLaw(e)
+			}
+		}
+	}
 	for _, e := range r.stockOrder {
 		r.resolveStock(e)
 	}
@@ -25,8 +32,6 @@ func (r *resolver) resolveModel() {
 			r.resolveExcite(s)
 		case *syntax.Watch:
 			r.resolveWatch(s)
-		case *syntax.Law:
-			r.notYet(s.Name.Span, "a law written in the file", "")
 		}
 	}
 	r.resolveRun()
@@ -53,23 +58,24 @@ func (r *resolver) resolveTie(t *syntax.Tie) {
 		case "spring":
 			out.Spring = r.quantity(p.Value, unit.Spring, notNegative, "spring", path+".spring")
 			if p.Loss != nil {
-				r.notYet(p.Loss.Place(), "a spring with a loss factor", "")
+				out.SpringLoss = r.quantity(p.Loss, unit.Share, notNegative, "a loss factor", "")
 			}
 		case "dashpot":
 			out.Dashpot = r.quantity(p.Value, unit.Dashpot, notNegative, "dashpot", path+".dashpot")
 			if p.Through != nil {
-				r.notYet(p.Through.Place(), "a bracket that gives at a tie", "")
+				out.Bracket = true
+				out.Through = r.quantity(p.Through, unit.Spring, positive, "the give of a bracket", path+".through")
 			}
 		case "mass":
 			out.Mass = r.quantity(p.Value, unit.Mass, notNegative, "mass", path+".mass")
 		case "slack":
-			r.notYet(p.Span, "a tie that goes slack", "")
+			out.Slack = true
 		default:
 			r.errorAt(p.Span, "misplaced", word+" does not stand at a tie", "", "")
 		}
 	}
 	if said["spring"].IsZero() && said["dashpot"].IsZero() {
-		r.notYet(t.Name.Span, "a rigid tie, without spring and dashpot,", "give it a spring")
+		r.errorAt(t.Name.Span, "missing-property", "the tie "+t.Name.Text+" says neither a spring nor a dashpot", "a rigid tie would make two places one", "spring 10 MN/m")
 		return
 	}
 	if fok && tok && from.Line == to.Line && from.Node >= 0 && from.Node == to.Node {

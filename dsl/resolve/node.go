@@ -18,20 +18,28 @@ func (r *resolver) nodeProperties(e *lineEntry, node *scenario.NodeOf[formula.Pr
 	said := map[string]diag.Span{}
 	n := nodeReader{r: r, line: e, node: node, path: path, support: support, said: said, name: name}
 	e.nodes[len(r.tmpl.Model.Lines[e.index].Nodes)] = nodeWords{name, said}
+	n.all(list)
+	n.conflicts()
+}
+
+// all compiles a list of properties.
+func (n *nodeReader) all(list []syntax.Property) {
 	for i := range list {
 		p := &list[i]
 		word := p.Word.Text
-		if before, ok := said[word]; ok && word != "tuned" && word != "dashpot" {
-			r.errorAt(p.Word.Span, "said-twice", name.Text+" says "+word+" already", "", "", related(before, "first said here"))
+		if before, ok := n.said[word]; ok && !contains(several, word) {
+			n.r.errorAt(p.Word.Span, "said-twice", n.name.Text+" says "+word+" already", "", "", related(before, "first said here"))
 			continue
 		}
-		if _, ok := said[word]; !ok {
-			said[word] = p.Word.Span
+		if _, ok := n.said[word]; !ok {
+			n.said[word] = p.Word.Span
 		}
 		n.property(p)
 	}
-	n.conflicts()
 }
+
+// several are the properties of which more than one may stand at a place.
+var several = []string{"tuned", "dashpot", "stop", "friction", "law", "impedance"}
 
 // nodeReader compiles the properties of one node.
 type nodeReader struct {
@@ -66,8 +74,7 @@ func (n *nodeReader) property(p *syntax.Property) {
 	case "spring":
 		n.node.Spring = r.quantity(p.Value, unit.Spring, notNegative, "spring", n.path+".spring")
 		if p.Loss != nil {
-			r.want(p.Loss, plain, unit.Share, "a loss factor")
-			r.notYet(p.Loss.Place(), "a spring with a loss factor", "")
+			n.node.SpringLoss = r.quantity(p.Loss, unit.Share, notNegative, "a loss factor", "")
 		}
 	case "dashpot":
 		n.dashpot(p)
@@ -75,45 +82,70 @@ func (n *nodeReader) property(p *syntax.Property) {
 		n.tuned(p)
 	case "axial":
 		n.node.AxialGive = r.quantity(p.Value, unit.Spring, positive, "axial", n.path+".axial")
-		if !n.line.sag.IsZero() && !n.line.sideways {
-			r.notYet(p.Span, "sag with an end that gives along the line", "")
-		}
 	case "weighted":
 		n.line.weighted = true
 		r.tmpl.Model.Lines[n.line.index].Weighted = true
 	default:
-		n.refused(p)
+		n.further(p)
 	}
 }
 
-// refused checks the dimension of what this version cannot do, and says so.
-func (n *nodeReader) refused(p *syntax.Property) {
+// further compiles the properties that turn, or that are not linear.
+func (n *nodeReader) further(p *syntax.Property) {
 	r := n.r
 	switch p.Word.Text {
 	case "inertia":
-		r.want(p.Value, plain, unit.Inertia, "inertia")
-		r.notYet(p.Span, "an inertia against turning", "")
+		n.node.Inertia = r.quantity(p.Value, unit.Inertia, notNegative, "inertia", n.path+".inertia")
 	case "hinge":
-		r.notYet(p.Span, "a hinge within a line", "")
+		n.node.Hinge = true
 	case "stop":
-		r.want(p.Value, plain, unit.Length, "the gap of a stop")
-		r.want(p.Stiffness, plain, unit.Spring, "the spring of a stop")
-		r.notYet(p.Span, "a stop", "")
+		n.stop(p)
 	case "friction":
-		r.want(p.Value, plain, unit.Force, "friction")
+		f := &scenario.FrictionOf[formula.Program]{Force: r.quantity(p.Value, unit.Force, notNegative, "friction", n.path+".friction")}
 		if p.Through != nil {
-			r.want(p.Through, plain, unit.Spring, "the give of a bracket")
+			f.Bracket = true
+			f.Through = r.quantity(p.Through, unit.Spring, positive, "the give of a bracket", "")
 		}
-		r.notYet(p.Span, "friction", "")
+		n.node.Laws = append(n.node.Laws, lawOf{Name: "friction", Friction: f})
 	case "impedance":
-		r.notYet(p.Span, "a damper by its bench record", "")
+		if b, ok := r.bench(p.Call); ok {
+			n.node.Benches = append(n.node.Benches, b)
+		}
 	case "law":
-		r.notYet(p.Span, "a joint by a law", "")
+		if l, ok := r.useLaw(p.Call, unit.Force, n.path); ok {
+			n.node.Laws = append(n.node.Laws, *l)
+		}
 	case "slack":
 		r.errorAt(p.Span, "misplaced", "only a tie can be slack", "", "")
 	default:
 		r.notYet(p.Span, p.Word.Text, "")
 	}
+}
+
+// stop compiles a stop. One without a gap is refused: the line would rest on it,
+// and its rest, from which everything is measured, would be another.
+func (n *nodeReader) stop(p *syntax.Property) {
+	r := n.r
+	gap := r.want(p.Value, plain, unit.Length, "the gap of a stop")
+	r.path(n.path+".stop", p.Value.Place())
+	if gap = r.inRange(gap, p.Value, anything, "the gap of a stop"); !gap.bad && r.num(gap.prog) <= 0 {
+		r.errorAt(p.Value.Place(), "rests-on-stop", "the line rests on this stop already", "its gap is not above zero", "")
+		gap = badValue
+	}
+	spring := r.quantity(p.Stiffness, unit.Spring, positive, "the spring of a stop", "")
+	if gap.bad {
+		return
+	}
+	s := &scenario.StopOf[formula.Program]{Gap: gap.prog, Spring: spring}
+	switch p.Side.Text {
+	case "up":
+		s.Up = true
+	case "down":
+		s.Down = true
+	default:
+		s.Up, s.Down = true, true
+	}
+	n.node.Laws = append(n.node.Laws, lawOf{Name: "stop", Stop: s})
 }
 
 func (n *nodeReader) dashpot(p *syntax.Property) {
@@ -133,8 +165,8 @@ func (n *nodeReader) tuned(p *syntax.Property) {
 		Spring: r.quantity(p.Stiffness, unit.Spring, positive, "the spring of a tuned damper", ""),
 	}
 	if p.Loss != nil {
-		r.want(p.Loss, plain, unit.Share, "a loss factor")
-		r.notYet(p.Loss.Place(), "a tuned damper with a loss factor", "write its dashpot in N*s/m")
+		t.Loss = r.quantity(p.Loss, unit.Share, notNegative, "a loss factor", "")
+		n.node.Tuned = append(n.node.Tuned, t)
 		return
 	}
 	t.Dashpot = r.quantity(p.Dashpot, unit.Dashpot, notNegative, "the dashpot of a tuned damper", "")
@@ -145,7 +177,7 @@ func (n *nodeReader) tuned(p *syntax.Property) {
 func (n *nodeReader) conflicts() {
 	r := n.r
 	held := first(n.said, "fixed", "pinned", "clamped")
-	loads := present(n.said, "spring", "dashpot", "mass", "tuned")
+	loads := present(n.said, "spring", "dashpot", "mass", "tuned", "friction", "stop", "law", "impedance")
 	alone := func(word string) {
 		if at, ok := n.said[word]; ok && len(n.said) > 1 {
 			for other := range n.said {

@@ -87,6 +87,9 @@ func (r *resolver) unknownPlace(n *syntax.Name, text, subject string) {
 
 // place resolves a point of a line.
 func (r *resolver) place(s *syntax.Spot, subject string) (placeOf, bool) {
+	if out, ok, mine := r.rowPlace(s, subject); mine {
+		return out, ok
+	}
 	el, ok := r.find(s.Name, subject)
 	if !ok {
 		return placeOf{}, false

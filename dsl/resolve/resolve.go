@@ -95,7 +95,7 @@ func Resolve(fsys fs.FS, name string, opts Options) Result {
 	}
 	r := &resolver{
 		fsys: fsys, opts: opts, tmpl: &scenario.Template{}, paths: Paths{},
-		top: map[string]symbol{}, lets: map[string]*letEntry{}, stocks: map[string]*stockEntry{}, builtin: map[string]*stockEntry{}, lines: map[string]*lineEntry{},
+		top: map[string]symbol{}, lets: map[string]*letEntry{}, stocks: map[string]*stockEntry{}, laws: map[string]*lawEntry{}, builtin: map[string]*stockEntry{}, lines: map[string]*lineEntry{},
 		elements: map[string][]element{}, watches: map[string]int{}, units: map[string]unitRead{}, tables: map[string]*csvFile{}, typed: map[*diag.File]*diag.File{}, mades: map[*diag.File]*made{}, broken: map[string]bool{}, parts: map[string]string{},
 	}
 	r.load(name)
@@ -145,6 +145,7 @@ type resolver struct {
 	stocks     map[string]*stockEntry
 	builtin    map[string]*stockEntry // built-in ones that were used
 	stockOrder []*stockEntry
+	laws       map[string]*lawEntry
 	lines      map[string]*lineEntry
 	lineOrder  []*lineEntry
 	elements   map[string][]element // by bare name, over all lines
@@ -159,6 +160,7 @@ type resolver struct {
 	wanted *unit.Dim                 // of the number that is being read, nil where nothing is known
 	// partsUnsure: a line could not be read whole, so that a part may exist unseen.
 	partsUnsure bool
+	joints      int  // made by `every`
 	weighed     int  // instructions in the tensions of inclined lines
 	searched    int  // words looked through for hints
 	incomplete  bool // some statement could not be read: absences prove nothing

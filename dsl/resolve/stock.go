@@ -8,6 +8,7 @@ import (
 	"github.com/tautspan/tautspan/dsl/syntax"
 	"github.com/tautspan/tautspan/dsl/unit"
 	"github.com/tautspan/tautspan/engine/formula"
+	"github.com/tautspan/tautspan/engine/scenario"
 )
 
 // stockEntry is one stock with what a segment takes from it.
@@ -37,8 +38,16 @@ type stockEntry struct {
 type lossSum struct {
 	viscous  formula.Program // N s/m^2
 	internal formula.Program // s, Kelvin-Voigt
+	tension  formula.Program // loss factor of the tension
+	bending  formula.Program // loss factor of the bending
+	law      *lawOf          // per length; nil: none
 	at       diag.Span       // of the first, zero where there is none
-	inside   diag.Span       // of the internal one
+	inside   diag.Span       // of the first that acts on bending alone
+}
+
+// take puts the losses on a segment.
+func (l *lossSum) take(s *scenario.SegmentOf[formula.Program]) {
+	s.Viscous, s.Internal, s.TensionLoss, s.BendingLoss, s.Law = l.viscous, l.internal, l.tension, l.bending, l.law
 }
 
 // properties are the values of a stock by their word.
@@ -95,7 +104,7 @@ func (r *resolver) resolveStock(e *stockEntry) {
 	if p, ok := said["strength"]; ok {
 		e.strongAt = p.Value.Place()
 	}
-	e.loss = r.losses(losses, e.mass, e.bad)
+	e.loss = r.losses(losses, e.mass, e.bad, "stock."+name)
 	r.internalWantsBending(e.loss, e.bending, e.bad)
 	r.unlikelyStock(e, said, got)
 }
@@ -264,28 +273,43 @@ func (r *resolver) internalWantsBending(l lossSum, bending formula.Program, bad 
 	if bad || l.inside.IsZero() || mayBend(bending) {
 		return
 	}
-	r.errorAt(l.inside, "missing-property", "an internal loss acts on bending, and there is none here", "the stock is an ideal string", "bending 10 kN*m^2")
+	r.errorAt(l.inside, "missing-property", "this loss acts on bending, and there is none here", "the stock is an ideal string", "bending 10 kN*m^2")
 }
 
 // losses adds up several losses of one stock or segment. The mass is that per
 // length.
-func (r *resolver) losses(list []*syntax.Loss, mass formula.Program, massBad bool) lossSum {
+func (r *resolver) losses(list []*syntax.Loss, mass formula.Program, massBad bool, path string) lossSum {
 	var sum lossSum
 	said := map[string]diag.Span{}
 	for _, l := range list {
 		kind := l.Kind.Text
+		if l.OfBending {
+			kind += " of bending"
+		}
 		if before, ok := said[kind]; ok {
 			r.errorAt(l.Kind.Span, "said-twice", "this loss is said already", "", "", related(before, "first said here"))
 			continue
 		}
 		said[kind] = l.Span
-		if kind == "internal" {
+		switch {
+		case kind == "internal":
 			v := r.inRange(r.want(l.Value, plain, unit.Time, "loss internal"), l.Value, notNegative, "loss internal")
 			if v.bad {
 				continue
 			}
-			sum.internal, sum.inside = v.prog, l.Span
-		} else {
+			sum.internal = v.prog
+			sum.acts(l.Span)
+		case l.Kind.Text == "hysteretic", kind == "ratio" && l.AtF == nil:
+			if !r.lossFactor(l, &sum) {
+				continue
+			}
+		case kind == "law":
+			law, ok := r.useLaw(l.Law, unit.ForcePerLength, path)
+			if !ok {
+				continue
+			}
+			sum.law = law
+		default:
 			p, ok := r.loss(l, mass, massBad)
 			if !ok {
 				continue
@@ -308,10 +332,6 @@ func (r *resolver) loss(l *syntax.Loss, mass formula.Program, massBad bool) (for
 		return v.prog, !v.bad
 	case "ratio":
 		z := r.inRange(r.want(l.Value, plain, unit.Share, "loss ratio"), l.Value, notNegative, "loss ratio")
-		if l.AtF == nil {
-			r.notYet(l.Span, "the same damping ratio in every mode", "loss ratio "+clip(l.Value)+" at 1 Hz")
-			return none, false
-		}
 		f := r.inRange(r.want(l.AtF, plain, unit.Frequency, "the frequency of loss ratio"), l.AtF, positive, "the frequency of loss ratio")
 		if z.bad || f.bad {
 			return none, false
@@ -326,15 +346,45 @@ func (r *resolver) loss(l *syntax.Loss, mass formula.Program, massBad bool) (for
 		}
 		// zeta = d/(2 m omega) of a line with viscous loss d per length, so d = 2 m zeta 2 pi F.
 		return formula.Mul(formula.Mul(formula.Const(4*math.Pi), mass), formula.Mul(z.prog, f.prog)), true
-	case "hysteretic":
-		r.inRange(r.want(l.Value, plain, unit.Share, "loss hysteretic"), l.Value, notNegative, "loss hysteretic")
-		r.notYet(l.Span, "a hysteretic loss", "")
-	case "law":
-		r.notYet(l.Span, "a loss by a law", "")
 	default:
 		r.notYet(l.Span, "this loss", "")
 	}
 	return none, false
+}
+
+// acts notes a loss that acts on bending alone.
+func (l *lossSum) acts(at diag.Span) {
+	if l.inside.IsZero() {
+		l.inside = at
+	}
+}
+
+// lossFactor adds `hysteretic ETA [of bending]`, or `ratio Z` in every mode, which
+// is twice the ratio: a line whose tension and bending have the loss factor eta
+// has the ratio sin(atan(eta)/2), eta/2 to first order.
+func (r *resolver) lossFactor(l *syntax.Loss, sum *lossSum) bool {
+	what := "loss " + l.Kind.Text
+	v := r.inRange(r.want(l.Value, plain, unit.Share, what), l.Value, notNegative, what)
+	if v.bad {
+		return false
+	}
+	x, eta := r.num(v.prog), v.prog
+	if l.Kind.Text == "ratio" {
+		eta = formula.Mul(formula.Const(2), eta)
+		x *= 2
+	}
+	if x >= 1 {
+		r.errorAt(l.Value.Place(), "out-of-range", "a loss factor of a line stays below 1, and a ratio below 50 %", r.shown(x, v.dim, l.Value), "")
+		return false
+	}
+	sum.bending = formula.Add(sum.bending, eta)
+	if l.OfBending {
+		sum.acts(l.Span)
+		return true
+	}
+	r.unlikelyRatio(l.Value, x/2)
+	sum.tension = formula.Add(sum.tension, eta)
+	return true
 }
 
 // stockInfo lists what is known of the stocks that could be read.

@@ -25,6 +25,14 @@ var kindWords = []string{"fixed", "free", "absorbing", "pinned", "clamped", "spr
 // says nothing else.
 func (n *nodeReader) turnConflicts() {
 	r := n.r
+	if at, ok := n.said["hinge"]; ok {
+		if n.support {
+			r.errorAt(at, "misplaced", "a hinge stands at a joint", "an end that turns freely is pinned, or turning", "pinned")
+		}
+		if other := present(n.said, "clamped", "guided", "rotary", "inertia"); len(other) > 0 {
+			r.errorAt(n.said[other[0]], "contradiction", "hinge and "+other[0]+" exclude one another", "at a hinge the two sides turn each on their own, so that neither has this "+other[0], "")
+		}
+	}
 	list := present(n.said, "pinned", "clamped", "turning", "rotary", "guided")
 	if len(list) > 1 && !(list[0] == "pinned" && list[1] == "clamped" || list[0] == "clamped" && list[1] == "pinned") {
 		r.errorAt(n.said[list[1]], "contradiction", strings.Join(list[:2], " and ")+" exclude one another", "each says how the line turns here", "")
@@ -50,13 +58,20 @@ func (r *resolver) turns(e *lineEntry, line *scenario.LineOf[formula.Program]) {
 		after := i < len(line.Segments) && mayBend(line.Segments[i].Bending)
 		switch {
 		case !before && !after:
-			node.Clamped, node.Rotary = false, formula.Program{}
-			r.turnsNothing(words)
+			r.turnless(node, words)
 		case node.Kind == scenario.Support:
 			r.supportTurns(words)
 		}
 	}
 }
+
+// turnless takes away what acts on turning where nothing turns.
+func (r *resolver) turnless(node *scenario.NodeOf[formula.Program], words nodeWords) {
+	node.Clamped, node.Hinge, node.Rotary, node.Inertia = false, false, formula.Program{}, formula.Program{}
+	r.turnsNothing(words)
+}
+
+func (n *nodeReader) turnless() { n.r.turnless(n.node, nodeWords{n.name, n.said}) }
 
 // turnsNothing remarks on words about turning where nothing bends.
 func (r *resolver) turnsNothing(words nodeWords) {
@@ -64,7 +79,7 @@ func (r *resolver) turnsNothing(words nodeWords) {
 	if at, ok := words.said["clamped"]; ok {
 		r.warnAt(at, "no-effect", "clamped is the same as fixed here", found, "fixed")
 	}
-	for _, w := range present(words.said, turnWords...) {
+	for _, w := range present(words.said, append([]string{"hinge", "inertia"}, turnWords...)...) {
 		r.warnAt(words.said[w], "no-effect", w+" has no effect here", found, "")
 	}
 }

@@ -1,7 +1,6 @@
 package mesh
 
 import (
-	"fmt"
 	"math"
 	"sort"
 
@@ -21,6 +20,7 @@ func Build(net *scenario.Network) (*Mesh, error) {
 	b.fittings()
 	b.links()
 	b.sags()
+	b.stretches()
 	b.starts()
 	if err := b.loads(); err != nil {
 		return nil, err
@@ -31,6 +31,9 @@ func Build(net *scenario.Network) (*Mesh, error) {
 		sort.SliceStable(p.Marks, func(a, c int) bool { return p.Marks[a].At < p.Marks[c].At })
 	}
 	smoothness := b.smoothness()
+	if b.m.Features()&(JointLaw|SpreadLaw|SlackTie) != 0 {
+		smoothness = math.Min(smoothness, 2) // the force is continuous, its rate is not
+	}
 	b.m.Jump = int(math.Ceil(smoothness))
 	b.m.Band = b.band()
 	for i := range b.m.Channels {
@@ -103,6 +106,13 @@ func (b *builder) cut() {
 		}
 		b.cuts[i] = append(b.cuts[i], ends[i]...)
 	}
+	for i := range net.Lines {
+		for k := range net.Lines[i].Segments {
+			for _, row := range scenario.Rows(&net.Lines[i].Segments[k]) {
+				b.cuts[i] = append(b.cuts[i], ends[i][k]+row.At)
+			}
+		}
+	}
 	add := func(p scenario.Place) {
 		if p.Node < 0 {
 			b.cuts[p.Line] = append(b.cuts[p.Line], net.Travel(p))
@@ -152,6 +162,10 @@ func (b *builder) pieces(line int, ends []float64) {
 			X0: from, S0: from - ends[seg], Length: x - from,
 			MassPerLength: s.MassPerLength, Tension: s.Tension + s.TensionRise*(from-ends[seg]), Viscous: s.Viscous,
 			TensionRise: s.TensionRise, Bending: s.Bending, Internal: s.Internal,
+			TensionLoss: s.TensionLoss, BendingLoss: s.BendingLoss,
+		}
+		if s.Law != nil {
+			p.Law = b.law(s.Law)
 		}
 		if from == ends[seg] && x == ends[seg+1] {
 			p.Length = s.Length // as given, not as the difference of two sums
@@ -194,18 +208,8 @@ func (b *builder) fittings() {
 			if from.Name == "" {
 				n.Name = "line." + line.Name + "." + line.Segments[k-1].Name + "|" + line.Segments[k].Name
 			}
-			n.Fixed = from.Fixed
-			n.Clamped, n.Rotary = from.Clamped, n.Rotary+from.Rotary
-			n.Mass += from.Mass
-			n.Spring += from.Spring
-			for _, d := range from.Dashpots {
-				if d.Bracket {
-					n.Brackets = append(n.Brackets, Maxwell{K: d.Through, C: d.C})
-				} else {
-					n.Dashpot += d.C
-				}
-			}
-			n.Fitting = n.Support || from.Fixed || from.Mass > 0 || from.Spring > 0 || len(from.Dashpots) > 0 || len(from.Tuned) > 0
+			b.fit(n, from)
+			n.Fitting = n.Fitting || n.Support
 			if from.Absorbing {
 				n.Absorbing = true
 				for _, p := range b.m.Pieces {
@@ -216,6 +220,7 @@ func (b *builder) fittings() {
 			}
 		}
 	}
+	b.rows(func(id int, row scenario.Row) { b.fit(&b.m.Nodes[id], row.Joint) })
 	for _, w := range b.net.Watches {
 		if !w.Along && w.Mass > 0 {
 			n := &b.m.Nodes[b.node(w.At)]
@@ -232,13 +237,10 @@ func (b *builder) links() {
 		line := &b.net.Lines[i]
 		for k := range line.Nodes {
 			at := b.node(scenario.Place{Line: i, Node: k})
-			for j, td := range line.Nodes[k].Tuned {
-				name := fmt.Sprintf("%s.tuned%d", b.m.Nodes[at].Name, j+1)
-				b.m.Links = append(b.m.Links, Link{Name: name, A: at, B: len(b.m.Nodes), Spring: td.Spring, Dashpot: td.Dashpot})
-				b.m.Nodes = append(b.m.Nodes, Node{Name: name, Line: -1, X: b.m.Nodes[at].X, Mass: td.Mass})
-			}
+			b.hang(at, &line.Nodes[k])
 		}
 	}
+	b.rows(func(id int, row scenario.Row) { b.hang(id, row.Joint) })
 	for _, tie := range b.net.Ties {
 		ends := [2]int{b.node(tie.From), b.node(tie.To)}
 		for k, place := range []scenario.Place{tie.From, tie.To} {
@@ -249,6 +251,6 @@ func (b *builder) links() {
 				n.Name += "." + tie.Name
 			}
 		}
-		b.m.Links = append(b.m.Links, Link{Name: "tie." + tie.Name, A: ends[0], B: ends[1], Spring: tie.Spring, Dashpot: tie.Dashpot})
+		b.m.Links = append(b.m.Links, Link{Name: "tie." + tie.Name, A: ends[0], B: ends[1], Spring: tie.Spring, Dashpot: tie.Dashpot, SpringLoss: tie.SpringLoss, Through: tie.Through, Slack: tie.Slack})
 	}
 }

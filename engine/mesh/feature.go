@@ -18,6 +18,7 @@ const (
 	SlackTie      // a tie that pulls, never pushes
 	TurningJoint  // a hinge or an inertia against turning
 	RollingSprung // a rolling load with a mass of its own
+	TieBracket    // a dashpot of a tie behind a bracket that gives
 )
 
 // NonLinear are the features with which answers do not grow in proportion.
@@ -32,13 +33,14 @@ var featureWords = []struct {
 	{Sagging, "the sag term (leave `sag included` out: all but the odd modes in the vertical plane stay right)"},
 	{InternalLoss, "internal loss"},
 	{Stretching, "tension that grows with amplitude"},
-	{Hysteretic, "a hysteretic loss factor"},
+	{Hysteretic, "a hysteretic loss factor, which is defined by frequency and in a run only a solver by transform takes"},
 	{BenchDamper, "a damper known only by its bench record, which answers by frequency"},
 	{JointLaw, "friction, a stop or a law at a joint"},
 	{SpreadLaw, "a law along a segment"},
 	{SlackTie, "a tie that goes slack"},
 	{TurningJoint, "a hinge or an inertia against turning"},
 	{RollingSprung, "a load that rolls with a mass of its own"},
+	{TieBracket, "a bracket that gives at the dashpot of a tie"},
 }
 
 // Features lists what the mesh has.
@@ -71,6 +73,9 @@ func (m *Mesh) Features() Features {
 		}
 		if l.Slack {
 			f |= SlackTie
+		}
+		if l.Through > 0 {
+			f |= TieBracket
 		}
 	}
 	for i := range m.Lines {
@@ -106,14 +111,25 @@ func (n *Node) features() Features {
 	return f
 }
 
+// Words names the features among those given that the mesh has, in the user's
+// terms.
+func (m *Mesh) Words(of Features) []string {
+	var out []string
+	has := m.Features() & of
+	for _, w := range featureWords {
+		if has&w.feature != 0 {
+			out = append(out, w.words)
+		}
+	}
+	return out
+}
+
 // Unknown says in the user's terms which features of the mesh are not among
 // those known, a reason each.
 func (m *Mesh) Unknown(known Features) []string {
 	var out []string
-	for _, w := range featureWords {
-		if m.Features()&w.feature&^known != 0 {
-			out = append(out, "does not represent "+w.words)
-		}
+	for _, words := range m.Words(^known) {
+		out = append(out, "does not represent "+words)
 	}
 	return out
 }

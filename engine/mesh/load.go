@@ -36,7 +36,7 @@ func (b *builder) loads() error {
 	for _, r := range b.net.Rolls {
 		from := b.net.Travel(r.From)
 		b.mark(b.spot(r.From), MarkEdge)
-		b.m.Rolls = append(b.m.Rolls, Roll{Name: r.Name, Line: r.Line, Speed: r.Speed, Force: r.Force, From: from, Starting: r.Starting})
+		b.m.Rolls = append(b.m.Rolls, Roll{Name: r.Name, Line: r.Line, Speed: r.Speed, Force: r.Force, From: from, Starting: r.Starting, Mass: r.Mass, Spring: r.Spring, Dashpot: r.Dashpot})
 	}
 	return b.moves()
 }

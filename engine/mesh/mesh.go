@@ -157,6 +157,8 @@ type Link struct {
 	Spring     float64 // N/m
 	Dashpot    float64 // N s/m
 	SpringLoss float64 // loss factor of Spring
+	// Through is the give of a bracket in series with the dashpot, N/m; 0: rigid.
+	Through float64
 	// Slack tells that the link pulls, never pushes. A is its upper end: it acts
 	// only while u_A > u_B, spring and dashpot alike, and its force on A is never
 	// upward.
@@ -215,7 +217,8 @@ type Line struct {
 //	h = G (sum over pieces of w_p * integral of u dx + sum over nodes of w_j u_j),
 //
 // the same along the line, which pulls back by w_p h per length and w_j h at
-// nodes; G = 1/(sum of Le/EA over the segments), w_p = m g cos(incline)/H,
+// nodes; G = 1/(sum of Le/EA over the segments + sum of 1/KA over supports that
+// give along the line), w_p = m g cos(incline)/H,
 // w_j = M g cos(incline)/H. Stored energy h^2/(2G). For a uniform line
 // G w^2 = kappa = (EA/Le)(m g/H)^2 and lambda^2 = kappa L^3/H.
 //

@@ -40,7 +40,7 @@ func (b *builder) sags() {
 		for _, s := range line.Segments {
 			give += s.Length / s.Axial * (1 + weight*weight/8)
 		}
-		sag.Stiffness = 1 / give
+		sag.Stiffness = 1 / (give + ends(line))
 		ml.Sag = sag
 	}
 }

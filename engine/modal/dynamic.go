@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"math/cmplx"
+	"strings"
 
 	"github.com/tautspan/tautspan/engine/mesh"
 )
@@ -36,6 +37,9 @@ const mostNodes = 2000
 func NewDynamic(m *mesh.Mesh) (*Dynamic, error) {
 	if err := represents(m); err != nil {
 		return nil, err
+	}
+	if words := m.Words(mesh.NonLinear); len(words) > 0 {
+		return nil, fmt.Errorf("a steady response by frequency is refused, not linearised, with %s: it would hang on the amplitude", strings.Join(words, " and "))
 	}
 	if len(m.Nodes) > mostNodes {
 		return nil, fmt.Errorf("the exact steady response takes %d nodes at most, and the network has %d", mostNodes, len(m.Nodes))

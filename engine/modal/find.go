@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"sort"
+	"strings"
 
 	"github.com/tautspan/tautspan/engine/mesh"
 )
@@ -209,6 +210,12 @@ func check(m *mesh.Mesh, want Want) error {
 		if l.A < 0 || l.B < 0 || l.A >= len(m.Nodes) || l.B >= len(m.Nodes) {
 			return fmt.Errorf("modal: link %q ends at a node that does not exist", l.Name)
 		}
+	}
+	if words := m.Words(mesh.NonLinear); len(words) > 0 {
+		return fmt.Errorf("natural vibrations and their damping are refused, not linearised, with %s: they would hang on the amplitude; ask a run for settle, peak or rms", strings.Join(words, " and "))
+	}
+	if words := m.Words(mesh.BenchDamper); len(words) > 0 {
+		return fmt.Errorf("natural vibrations are refused with %s: its record holds real frequencies alone, and a vibration that dies away has a complex one; ask for the response at a frequency", words[0])
 	}
 	if err := absorbs(m); err != nil {
 		return err

@@ -72,6 +72,7 @@ func (t *Template) StandardU(values []float64) []float64 {
 type binder struct {
 	values []float64
 	err    *PathError
+	rows   int // joints made by `every`
 }
 
 func (b *binder) fail(path, what string) {
@@ -128,6 +129,7 @@ func (t *Template) Bind(values []float64) (*Network, error) {
 			Name: tie.Name,
 			From: b.place(net, tie.From, path+".from"), To: b.place(net, tie.To, path+".to"),
 			Spring: b.nonneg(tie.Spring, path+".spring"), Dashpot: b.nonneg(tie.Dashpot, path+".dashpot"), Mass: b.nonneg(tie.Mass, path+".mass"),
+			SpringLoss: b.nonneg(tie.SpringLoss, path+".spring"), Slack: tie.Slack, Bracket: tie.Bracket, Through: b.through(tie.Bracket, tie.Through, path),
 		})
 	}
 	for i := range net.Ties {
@@ -152,7 +154,7 @@ func (t *Template) Bind(values []float64) (*Network, error) {
 }
 
 func (b *binder) line(l *LineOf[formula.Program]) Line {
-	out := Line{Name: l.Name, Sag: l.Sag, TensionSaid: l.TensionSaid, Warm: l.Warm, Weighted: l.Weighted, Incline: b.num(l.Incline, "line."+l.Name+".incline"), Nodes: make([]Node, len(l.Nodes)), Segments: make([]Segment, len(l.Segments))}
+	out := Line{Name: l.Name, Sag: l.Sag, TensionSaid: l.TensionSaid, Warm: l.Warm, Weighted: l.Weighted, Stretch: l.Stretch, Incline: b.num(l.Incline, "line."+l.Name+".incline"), Nodes: make([]Node, len(l.Nodes)), Segments: make([]Segment, len(l.Segments))}
 	base := "line." + l.Name + "."
 	out.SaidTension, out.Temperature = b.num(l.SaidTension, base+"tension"), b.nonneg(l.Temperature, base+"at")
 	for i := range l.Nodes { // in walking order, so that the first fault is the first in the text
@@ -179,7 +181,14 @@ func (b *binder) segment(s *SegmentOf[formula.Program], base string) Segment {
 		Strength:      b.nonneg(s.Strength, path+"strength"),
 		Diameter:      b.nonneg(s.Diameter, path+"diameter"),
 		Expansion:     b.num(s.Expansion, path+"expansion"),
+		TensionLoss:   b.nonneg(s.TensionLoss, path+"loss"),
+		BendingLoss:   b.nonneg(s.BendingLoss, path+"loss"),
 	}
+	if s.Law != nil {
+		law := b.law(s.Law, path)
+		out.Law = &law
+	}
+	b.every(s, &out, path)
 	b.tension(&out, path+"tension")
 	return out
 }
@@ -212,7 +221,8 @@ func (b *binder) node(n *NodeOf[formula.Program], base string) Node {
 	out := Node{
 		Name: n.Name, Kind: n.Kind, Fixed: n.Fixed, Absorbing: n.Absorbing, Holds: n.Holds,
 		Mass: b.nonneg(n.Mass, path+"mass"), Spring: b.nonneg(n.Spring, path+"spring"),
-		Clamped: n.Clamped, Rotary: b.nonneg(n.Rotary, path+"rotary"), AxialGive: b.nonneg(n.AxialGive, path+"axial"),
+		Clamped: n.Clamped, Rotary: b.nonneg(n.Rotary, path+"rotary"), Hinge: n.Hinge, Inertia: b.nonneg(n.Inertia, path+"inertia"),
+		SpringLoss: b.nonneg(n.SpringLoss, path+"spring"), AxialGive: b.nonneg(n.AxialGive, path+"axial"), Laws: b.laws(n.Laws, path), Benches: n.Benches,
 	}
 	for _, d := range n.Dashpots {
 		bound := DashpotOf[float64]{C: b.nonneg(d.C, path+"dashpot"), Bracket: d.Bracket}
@@ -223,10 +233,18 @@ func (b *binder) node(n *NodeOf[formula.Program], base string) Node {
 	}
 	for _, td := range n.Tuned {
 		out.Tuned = append(out.Tuned, TunedOf[float64]{
-			Mass: b.pos(td.Mass, path+"tuned"), Spring: b.pos(td.Spring, path+"tuned"), Dashpot: b.nonneg(td.Dashpot, path+"tuned"),
+			Mass: b.pos(td.Mass, path+"tuned"), Spring: b.pos(td.Spring, path+"tuned"), Dashpot: b.nonneg(td.Dashpot, path+"tuned"), Loss: b.nonneg(td.Loss, path+"tuned"),
 		})
 	}
 	return out
+}
+
+// through is the give of a bracket, 0 where there is none.
+func (b *binder) through(bracket bool, p formula.Program, path string) float64 {
+	if !bracket {
+		return 0
+	}
+	return b.pos(p, path+".through")
 }
 
 // placeSlack is the share of a segment's length within which a place counts as
@@ -249,7 +267,7 @@ func (b *binder) place(net *Network, p PlaceOf[formula.Program], path string) Pl
 	case at >= seg.Length*(1-placeSlack):
 		out.Node = p.Segment + 1
 	default:
-		out.Offset = at
+		out.Offset = onRow(seg, len(seg.Every), at)
 	}
 	return out
 }
@@ -310,6 +328,7 @@ func (b *binder) excitations(net *Network, m *ModelOf[formula.Program]) {
 		net.Rolls = append(net.Rolls, RollOf[float64]{
 			Name: r.Name, Line: r.Line, Speed: b.pos(r.Speed, path+".speed"), Force: b.num(r.Force, path+".load"),
 			From: b.place(net, r.From, path+".from"), Starting: b.nonneg(r.Starting, path+".starting"),
+			Mass: b.nonneg(r.Mass, path+".mass"), Spring: b.nonneg(r.Spring, path+".spring"), Dashpot: b.nonneg(r.Dashpot, path+".dashpot"),
 		})
 	}
 }

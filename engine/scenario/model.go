@@ -34,6 +34,7 @@ type LineOf[V any] struct {
 	Warm        bool
 	Temperature V
 	Weighted    bool // an end keeps the tension constant along the line
+	Stretch     bool // the tension grows with amplitude (Kirchhoff, Carrier)
 }
 
 // NodeKind says what stands at a node.
@@ -61,9 +62,15 @@ type NodeOf[V any] struct {
 	Tuned     []TunedOf[V]
 	// On a line with bending a node also says how it turns: freely, not at all
 	// (Clamped), or against a rotary spring to ground.
-	Clamped   bool
-	Rotary    V // N m/rad
-	AxialGive V // N/m, spring of an end that gives along the line; 0: held
+	Clamped bool
+	Rotary  V    // N m/rad
+	Hinge   bool // the segments that meet here turn each on their own
+	Inertia V    // kg m^2, against turning
+	// SpringLoss is the loss factor of Spring: K(1+i eta) at positive frequencies.
+	SpringLoss V
+	AxialGive  V // N/m, spring of an end that gives along the line; 0: held
+	Laws       []LawOf[V]
+	Benches    []Bench
 }
 
 // DashpotOf is a dashpot to ground, perhaps through a bracket that gives.
@@ -78,6 +85,7 @@ type TunedOf[V any] struct {
 	Mass    V // kg
 	Spring  V // N/m
 	Dashpot V // N s/m
+	Loss    V // loss factor of Spring
 }
 
 // SegmentOf is a uniform piece of line.
@@ -95,6 +103,12 @@ type SegmentOf[V any] struct {
 	Strength      V // N; 0 where not said
 	Diameter      V // m, of its outside; 0 where not said
 	Expansion     V // 1/K; 0 where not said
+	// TensionLoss and BendingLoss are hysteretic loss factors: T(1+i eta) and
+	// EI(1+i eta) at positive frequencies.
+	TensionLoss V
+	BendingLoss V
+	Law         *LawOf[V] // per length; nil: none
+	Every       []EveryOf[V]
 }
 
 // PlaceOf is a point of a line: a node, or a distance into a segment.
@@ -119,6 +133,11 @@ type TieOf[V any] struct {
 	Spring   V // N/m
 	Dashpot  V // N s/m
 	Mass     V // kg
+	// SpringLoss is the loss factor of Spring.
+	SpringLoss V
+	Bracket    bool // the dashpot stands behind a bracket that gives
+	Through    V    // N/m, in series with the dashpot; only with Bracket
+	Slack      bool // pulls, never pushes: acts only while u at From is above u at To
 }
 
 // HistoryOf is a number that changes with time: a bound or unbound program over
@@ -186,7 +205,8 @@ type MoveOf[V any] struct {
 	Motion HistoryOf[V]
 }
 
-// RollOf is a constant force that travels along a line in walking order.
+// RollOf is a force that travels along a line in walking order; with a Mass
+// that rides on a spring and a dashpot, whose weight is part of Force.
 type RollOf[V any] struct {
 	Name     string
 	Line     int
@@ -194,6 +214,9 @@ type RollOf[V any] struct {
 	Force    V // N, positive upward
 	From     PlaceOf[V]
 	Starting V // s
+	Mass     V // kg; 0: a constant force
+	Spring   V // N/m
+	Dashpot  V // N s/m
 }
 
 // LoadOf is a load of a plugin, or of the built-in ones, by name. Before a mesh

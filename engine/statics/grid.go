@@ -19,10 +19,11 @@ type grid struct {
 	held     []bool      // of each unknown
 	stiff    *skyline
 	sags     []sag
+	loosened map[int]bool // ties that hang slack
 }
 
-func newGrid(net *scenario.Network) (*grid, error) {
-	g := &grid{net: net}
+func newGrid(net *scenario.Network, loosened map[int]bool) (*grid, error) {
+	g := &grid{net: net, loosened: loosened}
 	if err := g.places(); err != nil {
 		return nil, err
 	}
@@ -61,6 +62,11 @@ func (g *grid) places() error {
 			}
 			x += s.Length
 			g.x[i] = append(g.x[i], x)
+		}
+	}
+	for i := range net.Lines {
+		for _, at := range g.rows(i) {
+			g.x[i] = append(g.x[i], at.x)
 		}
 	}
 	add := func(p scenario.Place) {
@@ -118,16 +124,22 @@ func (g *grid) number() {
 			list = append(list, e)
 		}
 		u, slope := make([]int, len(g.x[i])), make([]int, len(g.x[i]))
+		before := make([]int, len(g.x[i])) // slope of what ends at a place: its own at a hinge
+		hinged := g.hinges(i)
 		for k := range g.x[i] {
-			u[k], slope[k] = n, -1
+			u[k], slope[k], before[k] = n, -1, -1
 			n++
 			if k > 0 && list[k-1].beam() || k < len(list) && list[k].beam() {
-				slope[k] = n
+				slope[k], before[k] = n, n
+				n++
+			}
+			if hinged[g.x[i][k]] && k > 0 && list[k-1].beam() && k < len(list) && list[k].beam() {
+				before[k] = n
 				n++
 			}
 		}
 		for k := range list {
-			list[k].at = [4]int{u[k], slope[k], u[k+1], slope[k+1]}
+			list[k].at = [4]int{u[k], slope[k], u[k+1], before[k+1]}
 		}
 		g.elements = append(g.elements, list)
 		g.u, g.slope = append(g.u, u), append(g.slope, slope)
@@ -167,8 +179,8 @@ func (g *grid) assemble() {
 		}
 	}
 	g.fittings()
-	for _, tie := range g.net.Ties {
-		if tie.Spring > 0 {
+	for i, tie := range g.net.Ties {
+		if tie.Spring > 0 && !(tie.Slack && g.loosened[i]) {
 			g.stiff.spring(g.index(tie.From), g.index(tie.To), tie.Spring)
 		}
 	}
@@ -210,18 +222,62 @@ func (g *grid) fittings() {
 		for k := range g.net.Lines[i].Nodes {
 			node := &g.net.Lines[i].Nodes[k]
 			at := g.place(scenario.Place{Line: i, Node: k})
-			row, turn := g.u[i][at], g.slope[i][at]
-			g.held[row] = g.held[row] || node.Fixed
-			g.stiff.add(row, row, node.Spring)
-			if turn >= 0 {
-				g.held[turn] = g.held[turn] || node.Clamped
-				g.stiff.add(turn, turn, node.Rotary)
-			}
+			g.fit(i, at, node)
+		}
+		for _, at := range g.rows(i) {
+			g.fit(i, sort.SearchFloat64s(g.x[i], at.x), at.row.Joint)
 		}
 	}
 	for _, mv := range g.net.Moves {
 		g.held[g.index(scenario.Place{Line: mv.Line, Node: mv.Node})] = true
 	}
+}
+
+// fit adds what holds a place.
+func (g *grid) fit(line, at int, node *scenario.Node) {
+	row, turn := g.u[line][at], g.slope[line][at]
+	g.held[row] = g.held[row] || node.Fixed
+	g.stiff.add(row, row, node.Spring)
+	if turn >= 0 {
+		g.held[turn] = g.held[turn] || node.Clamped
+		g.stiff.add(turn, turn, node.Rotary)
+	}
+}
+
+// rowAt is a joint of a row with its place, m along its line.
+type rowAt struct {
+	x   float64
+	row scenario.Row
+}
+
+// rows are the joints that `every` makes along a line.
+func (g *grid) rows(line int) []rowAt {
+	var out []rowAt
+	start := 0.0
+	for k := range g.net.Lines[line].Segments {
+		s := &g.net.Lines[line].Segments[k]
+		for _, row := range scenario.Rows(s) {
+			out = append(out, rowAt{start + row.At, row})
+		}
+		start += s.Length
+	}
+	return out
+}
+
+// hinges are the places of a line at which its parts turn on their own.
+func (g *grid) hinges(line int) map[float64]bool {
+	out := map[float64]bool{}
+	for k := range g.net.Lines[line].Nodes {
+		if g.net.Lines[line].Nodes[k].Hinge {
+			out[g.net.Travel(scenario.Place{Line: line, Node: k})] = true
+		}
+	}
+	for _, at := range g.rows(line) {
+		if at.row.Joint.Hinge {
+			out[at.x] = true
+		}
+	}
+	return out
 }
 
 // solve replaces b by the displacements and slopes under the forces and moments b.

@@ -69,11 +69,82 @@ func (r *Rest) Flat() bool { return len(r.Plucks) == 0 }
 // as held. A pluck by length is scaled by the compliance of its place, alone. A
 // network on which a plucked part is held by nothing is refused with a
 // *scenario.PathError.
+//
+// A tie that pulls and never pushes carries where the shape leaves its upper end
+// above its lower one. A stop is not drawn against: that is refused. Friction and
+// written laws carry nothing while the line is drawn aside.
 func Hold(net *scenario.Network) (*Rest, error) {
 	if len(net.Plucks) == 0 {
 		return &Rest{}, nil
 	}
-	g, err := newGrid(net)
+	loosened := map[int]bool{}
+	for range 2*len(net.Ties) + 2 { // chosen: each tie changes its mind once or twice
+		rest, err := hold(net, loosened)
+		if err != nil {
+			return nil, err
+		}
+		if rest.settled(net, loosened) {
+			return rest, rest.clear(net)
+		}
+	}
+	return nil, &scenario.PathError{Path: "excite." + net.Plucks[0].Name, What: "finds no static shape: the slack ties pull and let go in turn"}
+}
+
+// settled looks at the slack ties: one that pulls must be stretched, and one that
+// hangs must not be. It changes those that are wrong, and tells whether none was.
+func (r *Rest) settled(net *scenario.Network, loosened map[int]bool) bool {
+	right := true
+	for i := range net.Ties {
+		t := &net.Ties[i]
+		if !t.Slack {
+			continue
+		}
+		stretched := r.at(net, t.From) > r.at(net, t.To)
+		if stretched == loosened[i] {
+			loosened[i], right = !stretched, false
+		}
+	}
+	return right
+}
+
+func (r *Rest) at(net *scenario.Network, p scenario.Place) float64 {
+	return r.Displacement(p.Line, net.Travel(p))
+}
+
+// clear refuses a shape that lies on a stop.
+func (r *Rest) clear(net *scenario.Network) error {
+	for i := range net.Lines {
+		line := &net.Lines[i]
+		for k := range line.Nodes {
+			if s := against(&line.Nodes[k], r.at(net, scenario.Place{Line: i, Node: k})); s != nil {
+				return onStop("line."+line.Name+"."+line.Nodes[k].Name, s)
+			}
+		}
+		for _, at := range r.grid.rows(i) {
+			if s := against(at.row.Joint, r.Displacement(i, at.x)); s != nil {
+				return onStop("line."+line.Name, s)
+			}
+		}
+	}
+	return nil
+}
+
+func against(n *scenario.Node, u float64) *scenario.StopOf[float64] {
+	for _, l := range n.Laws {
+		if s := l.Stop; s != nil && (s.Up && u > s.Gap || s.Down && u < -s.Gap) {
+			return s
+		}
+	}
+	return nil
+}
+
+func onStop(path string, s *scenario.StopOf[float64]) error {
+	return &scenario.PathError{Path: path + ".stop", What: fmt.Sprintf("is reached by the pluck: the line would lie on it at %g m before it is let go, which is no shape of the line alone; draw it aside less", s.Gap)}
+}
+
+// hold is the static state with some ties loosened.
+func hold(net *scenario.Network, loosened map[int]bool) (*Rest, error) {
+	g, err := newGrid(net, loosened)
 	if err != nil {
 		return nil, err
 	}

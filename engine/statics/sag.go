@@ -2,6 +2,7 @@ package statics
 
 import (
 	"math"
+	"sort"
 
 	"github.com/tautspan/tautspan/engine/scenario"
 )
@@ -57,6 +58,11 @@ func (g *grid) sagOf(line int) sag {
 	for _, segment := range l.Segments {
 		s.give += segment.Length / segment.Axial * (1 + weight*weight/8)
 	}
+	for _, n := range []*scenario.Node{&l.Nodes[0], &l.Nodes[len(l.Nodes)-1]} {
+		if n.AxialGive > 0 {
+			s.give += 1 / n.AxialGive
+		}
+	}
 	return s
 }
 
@@ -67,6 +73,11 @@ func (g *grid) masses(line int) map[int]float64 {
 	for k := range l.Nodes {
 		if n := &l.Nodes[k]; n.Kind != scenario.Support && n.Mass > 0 {
 			out[g.index(scenario.Place{Line: line, Node: k})] += n.Mass
+		}
+	}
+	for _, at := range g.rows(line) {
+		if m := at.row.Joint.Mass; m > 0 {
+			out[g.u[line][sort.SearchFloat64s(g.x[line], at.x)]] += m
 		}
 	}
 	ride := func(p scenario.Place, mass float64) {
