@@ -103,3 +103,21 @@ func TestSagWithAnEndThatGives(t *testing.T) {
 	near(t, "shape", a.Displacement(0, 15), b.Displacement(0, 15), 1e-12)
 	near(t, "extra tension", a.ExtraTension(0), b.ExtraTension(0), 1e-12)
 }
+
+// A row of equal masses hangs like joints of the same mass.
+func TestRowHangs(t *testing.T) {
+	row := network(span(10e3, 2, fixed, fixed, 10))
+	row.Lines[0].Segments[0].Every = []scenario.EveryOf[float64]{{Spacing: 3, First: 2, Joint: scenario.Node{Name: "every", Mass: 5, Spring: 1e3}}}
+	joints := network(span(10e3, 2, fixed, fixed, 2, 3, 3, 2))
+	for i := 1; i <= 3; i++ {
+		joints.Lines[0].Nodes[i].Mass = 5
+	}
+	a, ok := Hang(row, 0, 0)
+	b, ok2 := Hang(joints, 0, 0)
+	if !ok || !ok2 {
+		t.Fatal("slack")
+	}
+	for _, x := range []float64{1, 2, 5, 9} {
+		near(t, "drop", a.Drop(x), b.Drop(x), 1e-12)
+	}
+}

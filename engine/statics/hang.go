@@ -56,6 +56,16 @@ func Hang(net *scenario.Network, line int, change float64) (*Hanging, bool) {
 		}
 		ride(scenario.Place{Line: line, Node: i}, mass)
 	}
+	for i := range l.Segments {
+		for _, row := range scenario.Rows(&l.Segments[i]) {
+			mass := row.Joint.Mass
+			for _, t := range row.Joint.Tuned {
+				mass += t.Mass
+			}
+			ride(scenario.Place{Line: line, Node: -1, Segment: i, Offset: row.At}, mass)
+		}
+		l.Segments[i].Every = springless(l.Segments[i].Every)
+	}
 	for i := range net.Watches {
 		if w := &net.Watches[i]; !w.Along {
 			ride(w.At, w.Mass)
@@ -65,7 +75,7 @@ func Hang(net *scenario.Network, line int, change float64) (*Hanging, bool) {
 		ride(t.From, t.Mass/2)
 		ride(t.To, t.Mass/2)
 	}
-	g, err := newGrid(alone)
+	g, err := newGrid(alone, nil)
 	if err != nil || !g.stiff.factor() {
 		return nil, false
 	}
@@ -91,6 +101,15 @@ func Hang(net *scenario.Network, line int, change float64) (*Hanging, bool) {
 	}
 	g.solve(s.moved)
 	return &Hanging{line: &l, rest: Rest{grid: g, shape: s}}, true
+}
+
+// springless are rows of joints without their springs.
+func springless(rows []scenario.EveryOf[float64]) []scenario.EveryOf[float64] {
+	out := append([]scenario.EveryOf[float64](nil), rows...)
+	for i := range out {
+		out[i].Joint.Spring = 0
+	}
+	return out
 }
 
 // upright turns a distance across the chord into one straight down to the line.

@@ -49,6 +49,9 @@ func AtTemperature(line *scenario.Line, temperature float64) (scenario.Line, err
 			return out, &scenario.PathError{Path: path + "." + s.Name, What: "does not say how it expands with temperature; say `expansion` in the stock"}
 		}
 		weight += s.MassPerLength * s.Length
+		for _, row := range scenario.Rows(s) {
+			weight += row.Joint.Mass
+		}
 		if i > 0 {
 			weight += line.Nodes[i].Mass
 		}
