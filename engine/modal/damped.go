@@ -18,10 +18,14 @@ func (w *network) dampedModes(want Want) (found, error) {
 		return f, err
 	}
 	l := &list{e: newEvaluator(w)}
+	if w.lossy {
+		l.floor = w.floor(top)
+		f.notes = append(f.notes, fmt.Sprintf("%s has a loss factor, which is defined for motions that oscillate: those that creep are not listed.", w.name()))
+	}
 	limit := 2 * math.Pi * want.Below
 	for try := 0; ; try++ {
 		for _, s := range w.starts(1.15 * math.Hypot(top, gamma)) {
-			if imag(s) > 1.25*top || s == 0 {
+			if imag(s) > 1.25*top || s == 0 || l.floor > 0 && imag(s) <= l.floor {
 				continue
 			}
 			if z, ok := l.e.newton(s, nil); ok {
@@ -91,6 +95,26 @@ func (w *network) top(most int, limit float64) (top, gamma float64, err error) {
 	return top, gamma, nil
 }
 
+// floor is a fiftieth of the lowest angular frequency without loss, rad/s: below
+// it lie no vibrations to speak of, and the region that is proved keeps off the
+// real axis, across which a network with loss factors is not analytic.
+func (w *network) floor(top float64) float64 {
+	c := newCounter(w)
+	lo, hi := w.slow(top), top
+	for k := 0; c.below(hi) <= w.rigid && k < 40; k++ {
+		hi *= 2
+	}
+	for hi > 1.01*lo && c.below(lo) <= w.rigid {
+		mid := math.Sqrt(lo * hi)
+		if c.below(mid) <= w.rigid {
+			lo = mid
+		} else {
+			hi = mid
+		}
+	}
+	return lo / 50
+}
+
 // fastest bounds the damped frequency, rad/s, of a group without pieces from
 // above: no mass swings faster than the lightest would on all springs at once,
 // their far ends moving as far against it; dashpots only slow it down or make
@@ -142,7 +166,7 @@ func (l *list) prove(top, gamma float64) (edge, left float64, short, proved bool
 	for i := range lefts {
 		left = lefts[i]
 		edge = l.edge(top)
-		r := region{x0: -left, x1: right, y0: 0, y1: edge}
+		r := region{x0: -left, x1: right, y0: l.floor, y1: edge}
 		l.work = 400 + 4*int(edge*w.travel) // cuts; a network needs some tens, or a few a root
 		if l.complete(r) {
 			return edge, left, i > 1 || limited, true

@@ -183,6 +183,14 @@ func (d *Dynamic) Solve(s complex128, loads []Load, moves map[int]complex128) (*
 
 // solve is Solve on more than uniform strings.
 func (d *Dynamic) solve(s complex128, loads []Load, moves map[int]complex128) (*Field, error) {
+	if d.m.Features()&mesh.BenchDamper != 0 {
+		if real(s) != 0 {
+			return nil, fmt.Errorf("a damper known by its bench record answers at real frequencies alone")
+		}
+		if err := Measured(d.m, math.Abs(imag(s))); err != nil {
+			return nil, err
+		}
+	}
 	if s == 0 { // the load of sag divides by s; a period of a thousand years is at rest
 		s = 1e-9
 	}

@@ -114,7 +114,7 @@ func (w *network) generalStarts(omega float64) []complex128 {
 	}
 	c := newCounter(w)
 	if c.below(omega)-w.rigid <= 200 {
-		lo := 1e-6 * math.Pi / w.travel
+		lo := w.slow(omega)
 		for _, x := range c.roots(span{lo, omega, c.below(lo), c.below(omega)}) {
 			out = append(out, complex(0, x))
 		}
@@ -143,7 +143,7 @@ func (w *network) cubic(omega, most float64) *cubes {
 			u[i] = n
 			n++
 		}
-		if y.turns[i] && !w.m.Nodes[i].Clamped {
+		if y.turns[i] && !w.m.Nodes[i].Clamped && !w.m.Nodes[i].Hinge {
 			t[i] = n
 			n++
 		}
@@ -164,6 +164,7 @@ func (w *network) cubic(omega, most float64) *cubes {
 			put(g.k, u[i], u[i], d.Spring)
 			put(g.c, u[i], u[i], d.Dashpot)
 			put(g.k, t[i], t[i], d.Rotary)
+			put(g.m, t[i], t[i], d.Inertia)
 		}
 	}
 	for _, l := range w.m.Links {
@@ -216,10 +217,10 @@ func (g *cubes) piece(w *network, piece, parts int, u, t []int, n int, sag [][]f
 	bendCube, slopeCube, massCube := cube()
 	next := func() int { n++; return n - 1 }
 	turn := func(node int) int {
-		if p.Bending > 0 {
+		if p.Bending > 0 && !w.m.Nodes[node].Hinge {
 			return t[node]
 		}
-		return next() // a string turns by itself
+		return next() // a string turns by itself, and so does a part at a hinge
 	}
 	at := [4]int{u[p.From], turn(p.From), 0, 0}
 	for q := 0; q < parts; q++ {
@@ -259,7 +260,7 @@ func (g *cubes) roots(w *network, omega float64) []complex128 {
 				index[i] = at
 				at++
 			}
-			if w.sys.turns[i] && !w.m.Nodes[i].Clamped {
+			if w.sys.turns[i] && !w.m.Nodes[i].Clamped && !w.m.Nodes[i].Hinge {
 				at++
 			}
 		}

@@ -32,6 +32,7 @@ type network struct {
 	order   []int   // of the unknowns, for a narrow band
 	sys     *system // not nil: more than uniform strings
 	loss    float64 // s, largest internal loss
+	lossy   bool    // loss factors: Delta is another function below the real axis than above
 }
 
 // element is a uniform piece between unknowns i and j; -1 is held.
@@ -154,6 +155,8 @@ func newNetwork(m *mesh.Mesh, in func(node int) bool) *network {
 			w.damped = w.damped || l.Dashpot > 0
 		}
 	}
+	w.lossy = w.factors(in)
+	w.damped = w.damped || w.lossy
 	w.freedom()
 	if w.general(in) {
 		w.sys = newSystem(m, in)
@@ -165,8 +168,44 @@ func newNetwork(m *mesh.Mesh, in func(node int) bool) *network {
 	return w
 }
 
+// factors tells whether something in the group has a loss factor.
+func (w *network) factors(in func(node int) bool) bool {
+	for _, e := range w.elements {
+		if p := &w.m.Pieces[e.piece]; p.TensionLoss > 0 || p.Bending*p.BendingLoss > 0 {
+			return true
+		}
+	}
+	for _, i := range w.nodes {
+		if n := &w.m.Nodes[i]; n.Spring*n.SpringLoss > 0 {
+			return true
+		}
+	}
+	for i := range w.m.Links {
+		if l := &w.m.Links[i]; l.Spring*l.SpringLoss > 0 && (in(l.A) || in(l.B)) {
+			return true
+		}
+	}
+	return false
+}
+
+// slow is an angular frequency below all vibrations of the group, rad/s.
+func (w *network) slow(omega float64) float64 {
+	if w.travel > 0 {
+		return 1e-6 * math.Pi / w.travel
+	}
+	return 1e-6 * omega
+}
+
 // general tells whether the group has more than uniform strings.
 func (w *network) general(in func(node int) bool) bool {
+	if w.lossy {
+		return true
+	}
+	for i := range w.m.Links {
+		if l := &w.m.Links[i]; l.Through > 0 && (in(l.A) || in(l.B)) {
+			return true
+		}
+	}
 	for _, e := range w.elements {
 		p := &w.m.Pieces[e.piece]
 		if p.Bending > 0 || p.TensionRise != 0 {

@@ -153,7 +153,7 @@ func (e *evaluator) newton(s complex128, known []complex128) (complex128, bool) 
 		if !ok {
 			return s, best < 1e-7*cmplx.Abs(s)
 		}
-		slope -= deflation(s, known)
+		slope -= deflation(s, known, !e.w.lossy)
 		if e.w.zeros > 0 {
 			slope -= complex(float64(e.w.zeros), 0) / s
 		}
@@ -178,14 +178,15 @@ func (e *evaluator) newton(s complex128, known []complex128) (complex128, bool) 
 	return s, false
 }
 
-// deflation is the sum of 1/(s-z) over the known zeros and their conjugates.
-func deflation(s complex128, known []complex128) complex128 {
+// deflation is the sum of 1/(s-z) over the known zeros and, where they are zeros
+// too, their conjugates.
+func deflation(s complex128, known []complex128, both bool) complex128 {
 	var sum complex128
 	for _, z := range known {
 		if z != s {
 			sum += 1 / (s - z)
 		}
-		if imag(z) > 0 {
+		if both && imag(z) > 0 {
 			sum += 1 / (s - cmplx.Conj(z))
 		}
 	}
@@ -210,6 +211,9 @@ type list struct {
 	roots []complex128
 	tried []complex128 // where merge has looked already
 	work  int          // regions that complete may still count
+	// floor, above zero with loss factors, is the angular frequency down to which
+	// roots are sought; what lies below is none.
+	floor float64
 }
 
 // same says when two roots are taken for one. Coinciding roots are known to
@@ -219,6 +223,9 @@ const same = 1e-6
 // offer adds a polished root; where it is near one that is known it finds out
 // how many there are. It reports whether the list grew.
 func (l *list) offer(s complex128) bool {
+	if l.floor > 0 && imag(s) <= l.floor {
+		return false
+	}
 	s = upper(s)
 	abs := cmplx.Abs(s)
 	// Passive networks have no zeros to the right of the imaginary axis.
@@ -304,7 +311,7 @@ func (l *list) add(s complex128) {
 func (l *list) known(c complex128, r float64) (n int, sum complex128, clear bool) {
 	for _, z := range l.roots {
 		both := []complex128{z, cmplx.Conj(z)}
-		if imag(z) == 0 {
+		if imag(z) == 0 || l.floor > 0 {
 			both = both[:1]
 		}
 		for _, y := range both {
@@ -347,7 +354,7 @@ func (l *list) moments(c complex128, r float64) (n int, m [3]complex128, ok bool
 func (l *list) replace(c complex128, r float64, n int, m [3]complex128) bool {
 	rest := l.roots[:0:0]
 	for _, z := range l.roots {
-		if cmplx.Abs(z-c) >= r && cmplx.Abs(cmplx.Conj(z)-c) >= r {
+		if cmplx.Abs(z-c) >= r && (l.floor > 0 || cmplx.Abs(cmplx.Conj(z)-c) >= r) {
 			rest = append(rest, z)
 		}
 	}

@@ -114,6 +114,13 @@ func (y *system) moving(s complex128, x []complex128) *motion {
 			}
 		}
 	}
+	for i := range z.spans {
+		for _, at := range []*port{&z.spans[i].ta, &z.spans[i].tb} {
+			if at.row >= 0 {
+				at.value = x[at.row]
+			}
+		}
+	}
 	f := &motion{y: &z, s: s}
 	for _, row := range y.sagRow {
 		f.h = append(f.h, x[row])
@@ -152,8 +159,7 @@ func (k *stiff) ends(u [4]complex128, pull complex128) (a, b state) {
 }
 
 func (f *motion) values(sp *stretch) [4]complex128 {
-	a, b := f.y.places[sp.a], f.y.places[sp.b]
-	return [4]complex128{a.u.value, a.t.value, b.u.value, b.t.value}
+	return [4]complex128{f.y.places[sp.a].u.value, sp.ta.value, f.y.places[sp.b].u.value, sp.tb.value}
 }
 
 // at is the state at x of a piece; at a load that after it.
@@ -305,7 +311,8 @@ func (f *motion) slope(piece int, x float64) complex128 {
 		if end {
 			u = f.y.places[p.To].u.value
 		}
-		return v.b.v * u / complex(p.TensionRise, 0)
+		return v.b.v * u / (complex(p.TensionRise, 0) * v.f)
 	}
-	return f.at(piece, x).force / complex(p.Tension+p.TensionRise*x, 0)
+	v := newWave(p, f.s)
+	return f.at(piece, x).force / (complex(p.Tension+p.TensionRise*x, 0) * v.f)
 }

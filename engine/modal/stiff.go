@@ -50,21 +50,48 @@ type stiff struct {
 type wave struct {
 	p       *mesh.Piece
 	s       complex128
-	b, e    dual    // m s^2 + c s, N/m^2; EI (1 + s tau), N m^2
-	omega   float64 // Im s
+	b, e    dual       // m s^2 + c s, N/m^2; EI (1 + s tau + i eta), N m^2
+	f       complex128 // 1 + i eta of the tension
+	omega   float64    // Im s
 	bends   bool
 	tapered bool
 }
 
-func newWave(p *mesh.Piece, s complex128) wave {
+// newWave is a piece at s. Loss factors have the sign of Im s, and none at rest.
+func newWave(p *mesh.Piece, s complex128) wave { return newWaveOf(p, s, sign(imag(s))) }
+
+func newWaveOf(p *mesh.Piece, s complex128, loss float64) wave {
 	m, c := complex(p.MassPerLength, 0), complex(p.Viscous, 0)
 	v := wave{p: p, s: s, omega: imag(s), bends: p.Bending > 0, tapered: p.TensionRise != 0}
 	v.b = dual{(m*s + c) * s, 2*m*s + c}
+	v.f = complex(1, loss*p.TensionLoss)
 	if v.bends {
 		ei, tau := complex(p.Bending, 0), complex(p.Internal, 0)
-		v.e = dual{ei * (1 + s*tau), ei * tau}
+		v.e = dual{ei * (1 + s*tau + complex(0, loss*p.BendingLoss)), ei * tau}
 	}
 	return v
+}
+
+// sign is -1, 0 or 1.
+func sign(x float64) float64 {
+	switch {
+	case x > 0:
+		return 1
+	case x < 0:
+		return -1
+	}
+	return 0
+}
+
+// bare is the piece with its equation divided by the tension's factor 1 + i eta,
+// which makes the tension real.
+func (v *wave) bare() wave {
+	u := *v
+	if v.f != 1 {
+		inv := dual{1 / v.f, 0}
+		u.b, u.e = v.b.mul(inv), v.e.mul(inv)
+	}
+	return u
 }
 
 // tension at x of the piece, N.
@@ -73,19 +100,41 @@ func (v *wave) tension(x float64) float64 { return v.p.Tension + v.p.TensionRise
 // between is the stiffness of the stretch x0 .. x1.
 func (v *wave) between(x0, x1 float64, sag bool) stiff {
 	var k stiff
+	u := v.bare()
 	switch {
 	case v.tapered:
-		k = v.taper(x0, x1)
+		k = u.taper(x0, x1)
 	case v.bends:
-		k = v.beam(x1 - x0)
+		k = u.beam(x1 - x0)
 	default:
-		k = v.string(x1 - x0)
+		k = u.string(x1 - x0)
 	}
 	k.bends = v.bends
+	k.grow(v.f)
 	if sag {
 		k.uniform(v.b, x1-x0)
 	}
 	return k
+}
+
+// grow multiplies the stiffness by a constant. W falls by it once for every
+// displacement and slope of an end, so that cutting a piece leaves the product of
+// det D and all W as it is.
+func (k *stiff) grow(f complex128) {
+	if f == 1 {
+		return
+	}
+	for i := range k.d {
+		for j := range k.d[i] {
+			k.d[i][j].v *= f
+			k.d[i][j].d *= f
+		}
+	}
+	log := cmplx.Log(f)
+	if k.bends {
+		log *= 2
+	}
+	k.w.v -= log
 }
 
 // uniform adds what a load of one per length does. With N the shapes of unit end
@@ -289,7 +338,7 @@ func (k *stiff) join(even, odd half) {
 //	E r1 r2 (r1+r2)   E r1 r2
 //	E r1 r2           E (r1+r2)
 func (v *wave) endless() [2][2]complex128 {
-	t := complex(v.p.Tension, 0)
+	t := complex(v.p.Tension, 0) * v.f
 	r1sq := (t + positiveRoot(t*t-4*v.e.v*v.b.v)) / (2 * v.e.v)
 	r1 := positiveRoot(r1sq)
 	r2 := positiveRoot(v.b.v / (v.e.v * r1sq))

@@ -42,7 +42,10 @@ type system struct {
 	inner    int
 	last     []int
 	real     []float64
-	brackets []int // first row of a node's brackets
+	brackets []int   // first row of a node's brackets
+	bends    []int   // first row of what gives at a tie's dashpot, by link; -1: nothing
+	lossless bool    // loss factors left out
+	loss     float64 // sign of the loss factors
 }
 
 // port is an unknown (row >= 0) or a given value (row -1).
@@ -59,16 +62,17 @@ type stretch struct {
 	x0, x1 float64
 	a, b   int
 	k      stiff
+	ta, tb port // slopes at both ends
 }
 
 func newSystem(m *mesh.Mesh, in func(node int) bool) *system {
 	n := len(m.Nodes)
 	y := &system{m: m, in: in, starts: make([][]int, n), turns: make([]bool, n), still: make([]bool, n),
-		sagOf: make([]int, len(m.Pieces)), weight: make([]float64, len(m.Pieces)), brackets: make([]int, n)}
+		sagOf: make([]int, len(m.Pieces)), weight: make([]float64, len(m.Pieces)), brackets: make([]int, n), bends: make([]int, len(m.Links))}
 	busy := make([]bool, n)
 	for i := range m.Nodes {
 		d := &m.Nodes[i]
-		busy[i] = d.Mass > 0 || d.Spring > 0 || d.Dashpot > 0 || len(d.Brackets) > 0
+		busy[i] = d.Mass > 0 || d.Spring > 0 || d.Dashpot > 0 || len(d.Brackets) > 0 || len(d.Benches) > 0
 		y.still[i] = held(d)
 	}
 	for _, l := range m.Links {
@@ -131,6 +135,10 @@ func (y *system) lay(s complex128) {
 	y.n, y.w, y.inner = 0, dual{}, 0
 	next := func() port { y.n++; return port{row: y.n - 1} }
 	none := port{row: -1}
+	y.loss = sign(imag(s))
+	if y.lossless {
+		y.loss = 0
+	}
 	for i := range y.m.Nodes {
 		if !y.in(i) {
 			continue
@@ -142,15 +150,16 @@ func (y *system) lay(s complex128) {
 		} else if !y.still[i] {
 			at.u = next()
 		}
-		if y.turns[i] && !n.Clamped {
+		if y.turns[i] && !n.Clamped && !n.Hinge {
 			at.t = next()
 		}
 		y.brackets[i] = y.n
 		y.n += len(n.Brackets)
 		for _, k := range y.starts[i] {
 			p := &y.m.Pieces[k]
-			v := newWave(p, s)
+			v := newWaveOf(p, s, y.loss)
 			from, x := i, 0.0
+			first := len(y.spans)
 			for _, cut := range append(append([]float64(nil), y.cuts[k]...), p.Length) {
 				for _, one := range v.clear(x, cut, y.sagOf[k] >= 0) {
 					one.piece, one.a = k, from
@@ -170,10 +179,42 @@ func (y *system) lay(s complex128) {
 				}
 				x = cut
 			}
+			if !v.bends {
+				continue
+			}
+			// A hinge leaves every piece a slope of its own.
+			y.spans[first].ta, y.spans[len(y.spans)-1].tb = none, none
+			if n.Hinge {
+				y.spans[first].ta = next()
+			}
+			if y.m.Nodes[p.To].Hinge {
+				y.spans[len(y.spans)-1].tb = next()
+			}
+		}
+	}
+	for i := range y.spans {
+		y.join(&y.spans[i])
+	}
+	for i := range y.m.Links {
+		l := &y.m.Links[i]
+		y.bends[i] = -1
+		if l.Through > 0 && l.Dashpot > 0 && l.A != l.B && (y.in(l.A) || y.in(l.B)) {
+			y.bends[i] = next().row
 		}
 	}
 	for i := range y.sagRow {
 		y.sagRow[i] = next().row
+	}
+}
+
+// join gives a stretch the slopes of its ends where no hinge gave it its own.
+func (y *system) join(sp *stretch) {
+	hinge := func(at int) bool { return at < len(y.m.Nodes) && y.m.Nodes[at].Hinge && sp.k.bends }
+	if !hinge(sp.a) {
+		sp.ta = y.places[sp.a].t
+	}
+	if !hinge(sp.b) {
+		sp.tb = y.places[sp.b].t
 	}
 }
 
@@ -222,8 +263,12 @@ func (y *system) assemble(s complex128) {
 		l := &y.m.Links[i]
 		if (y.in(l.A) || y.in(l.B)) && l.A != l.B {
 			c := complex(l.Dashpot, 0)
-			k := dual{complex(l.Spring, 0) + s*c, c}
 			a, b := y.nodePort(l.A), y.nodePort(l.B)
+			if l.Through > 0 {
+				y.behind(l, port{row: y.bends[i]}, a, b, s)
+				c = 0
+			}
+			k := dual{complex(l.Spring, l.Spring*y.loss*l.SpringLoss) + s*c, c}
 			y.add(a, a, k)
 			y.add(b, b, k)
 			y.add(a, b, k.neg())
@@ -242,6 +287,22 @@ func (y *system) assemble(s complex128) {
 			y.add(at, row, constant(w))
 		}
 	}
+}
+
+// behind adds a tie's dashpot behind a bracket: spring from a to q, dashpot from q
+// to b.
+func (y *system) behind(l *mesh.Link, q, a, b port, s complex128) {
+	if q.row < 0 {
+		return
+	}
+	k, c := constant(l.Through), dual{s * complex(l.Dashpot, 0), complex(l.Dashpot, 0)}
+	y.add(a, a, k)
+	y.add(a, q, k.neg())
+	y.add(q, a, k.neg())
+	y.add(q, q, k.add(c))
+	y.add(q, b, c.neg())
+	y.add(b, q, c.neg())
+	y.add(b, b, c)
 }
 
 // nodePort is a node's displacement; a node of another group is held.
@@ -272,8 +333,13 @@ func (y *system) node(i int, s complex128) {
 		c = 0 // the dashpot is that of a string; see edge
 		y.edge(i, s)
 	}
-	y.add(at.u, at.u, dual{(m*s+c)*s + complex(d.Spring, 0), 2*m*s + c})
-	y.add(at.t, at.t, constant(d.Rotary))
+	y.add(at.u, at.u, dual{(m*s+c)*s + complex(d.Spring, d.Spring*y.loss*d.SpringLoss), 2*m*s + c})
+	j := complex(d.Inertia, 0)
+	y.add(at.t, at.t, dual{complex(d.Rotary, 0) + j*s*s, 2 * j * s})
+	for _, z := range d.Benches { // known at s = i omega alone; the derivative is not asked for
+		v, _ := impedance(z, s)
+		y.add(at.u, at.u, dual{v * s, 0})
+	}
 	for b, br := range d.Brackets {
 		q := port{row: y.brackets[i] + b}
 		if !(br.K > 0 && br.C > 0) { // exerts no force at all
@@ -312,8 +378,7 @@ func (y *system) edge(i int, s complex128) {
 }
 
 func (sp *stretch) ports(y *system) [4]port {
-	a, b := y.places[sp.a], y.places[sp.b]
-	return [4]port{a.u, a.t, b.u, b.t}
+	return [4]port{y.places[sp.a].u, sp.ta, y.places[sp.b].u, sp.tb}
 }
 
 func (y *system) extend(sp *stretch, s complex128) {
@@ -359,7 +424,9 @@ func (y *system) delta(s complex128) (log, slope complex128, ok bool) {
 // its slopes: hinged ends have floor(k2 L/pi), and holding the slopes takes that
 // many away.
 func (y *system) below(omega float64) (int, float64) {
+	y.lossless = true
 	y.assemble(complex(0, omega))
+	y.lossless = false
 	n := y.n
 	y.real = append(y.real[:0], make([]float64, n*n)...)
 	// Slopes in a unit that makes their rows as large as the others.
