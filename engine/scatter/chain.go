@@ -5,6 +5,7 @@ import (
 	"math/cmplx"
 
 	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/modal"
 )
 
 // chain is a stretch of line in walking order: nodes with the spans between
@@ -25,10 +26,19 @@ type fitting struct {
 	rotary   float64 // N m/rad
 	brackets []mesh.Maxwell
 	hung     []hung
+	eta      float64 // loss factor of the spring
+	inertia  float64 // kg m^2
+	hinge    bool
+	benches  []*mesh.Bench
 }
 
-// hung is a mass on a spring and a dashpot.
-type hung struct{ mass, k, c float64 }
+// hung is a mass on a spring, with a loss factor, and a dashpot.
+type hung struct{ mass, k, c, eta float64 }
+
+// stiffness is that of what a mass hangs on, N/m.
+func (h *hung) stiffness(omega float64) complex128 {
+	return complex(h.k, h.k*h.eta+omega*h.c)
+}
 
 // span is a uniform stretch.
 type span struct {
@@ -51,11 +61,32 @@ type layout struct {
 	before, after part
 	nodes, spans  []part
 	turns         []bool
+	hinges        []bool // the line bends on both sides, each with a slope of its own
 	total         int
 }
 
+// slopes is how many slopes a node has.
+func (l *layout) slopes(i int) int {
+	switch {
+	case l.hinges[i]:
+		return 2
+	case l.turns[i]:
+		return 1
+	}
+	return 0
+}
+
+// slope is the unknown slope at a node of what starts there (sign above 0) or
+// ends there.
+func (l *layout) slope(i int, sign float64) int {
+	if l.hinges[i] && sign < 0 {
+		return l.nodes[i].at + 2
+	}
+	return l.nodes[i].at + 1
+}
+
 func (c *chain) layout() *layout {
-	l := &layout{turns: make([]bool, len(c.nodes))}
+	l := &layout{turns: make([]bool, len(c.nodes)), hinges: make([]bool, len(c.nodes))}
 	take := func(n int) part {
 		p := part{l.total, n}
 		l.total += n
@@ -72,12 +103,11 @@ func (c *chain) layout() *layout {
 	}
 	l.before = take(waves(c.before))
 	for i := range c.nodes {
-		l.turns[i] = l.before.n == 2 && i == 0 || waves(c.after) == 2 && i == len(c.nodes)-1 ||
-			i > 0 && c.spans[i-1].beam() || i < len(c.spans) && c.spans[i].beam()
-		n := 1 + len(c.nodes[i].hung)
-		if l.turns[i] {
-			n++
-		}
+		ends := l.before.n == 2 && i == 0 || i > 0 && c.spans[i-1].beam()
+		starts := waves(c.after) == 2 && i == len(c.nodes)-1 || i < len(c.spans) && c.spans[i].beam()
+		l.turns[i] = ends || starts
+		l.hinges[i] = ends && starts && c.nodes[i].hinge
+		n := 1 + len(c.nodes[i].hung) + l.slopes(i)
 		l.nodes = append(l.nodes, take(n))
 		if i < len(c.spans) {
 			l.spans = append(l.spans, take(2*waves(&c.spans[i].medium)))
@@ -135,7 +165,7 @@ func (c *chain) solve(omega float64, fromBefore bool) (e echo, ok bool) {
 		e.on = x[on.at]
 	}
 	for i := range c.nodes {
-		e.lost += c.nodes[i].loss(omega, x[l.nodes[i].at:], l.turns[i])
+		e.lost += c.nodes[i].loss(omega, x[l.nodes[i].at:], l.slopes(i))
 	}
 	e.lost /= in.flux(omega)
 	return e, true
@@ -151,16 +181,16 @@ func (eq *equations) node(i int, f *fitting) {
 		eq.add(u, u, f.toGround(eq.omega))
 	}
 	next := u + 1
-	if eq.l.turns[i] {
+	for range eq.l.slopes(i) {
 		if f.clamped {
 			eq.add(next, next, 1)
 		} else {
-			eq.add(next, next, complex(f.rotary, 0))
+			eq.add(next, next, complex(f.rotary-f.inertia*eq.omega*eq.omega, 0))
 		}
 		next++
 	}
 	for _, h := range f.hung {
-		k := complex(h.k, eq.omega*h.c)
+		k := h.stiffness(eq.omega)
 		if !f.held {
 			eq.add(u, u, k)
 			eq.add(u, next, -k)
@@ -171,10 +201,13 @@ func (eq *equations) node(i int, f *fitting) {
 	}
 }
 
-// toGround is the dynamic stiffness of a node's mass, spring, dashpot and
-// brackets, N/m.
+// toGround is the dynamic stiffness of a node's mass, spring, dashpot, brackets
+// and bench records, N/m.
 func (f *fitting) toGround(omega float64) complex128 {
-	d := complex(f.spring-f.mass*omega*omega, f.dashpot*omega)
+	d := complex(f.spring-f.mass*omega*omega, f.spring*f.eta+f.dashpot*omega)
+	for _, b := range f.benches {
+		d += complex(0, omega) * modal.Impedance(b, omega)
+	}
 	for _, b := range f.brackets {
 		d += bracket(b, omega)
 	}
@@ -192,15 +225,12 @@ func bracket(b mesh.Maxwell, omega float64) complex128 {
 
 // loss is the mean power that the dashpots of a node take, over omega/2: the sum
 // of Im(stiffness) |stroke|^2.
-func (f *fitting) loss(omega float64, x []complex128, turns bool) float64 {
+func (f *fitting) loss(omega float64, x []complex128, slopes int) float64 {
 	square := func(z complex128) float64 { return real(z)*real(z) + imag(z)*imag(z) }
 	sum := imag(f.toGround(omega)) * square(x[0])
-	next := 1
-	if turns {
-		next++
-	}
+	next := 1 + slopes
 	for _, h := range f.hung {
-		sum += omega * h.c * square(x[next]-x[0])
+		sum += imag(h.stiffness(omega)) * square(x[next]-x[0])
 		next++
 	}
 	return sum
@@ -228,17 +258,18 @@ func (eq *equations) meets(c *chain, i, rows, col int, d *medium, value, l compl
 	if d.beam() {
 		put(rows+1, l*value)
 		if !c.nodes[i].clamped {
-			put(u+1, s*moment*value)
+			put(eq.l.slope(i, sign), s*moment*value)
 		}
 	}
 }
 
-// agree enters the node's own displacement and slope into the conditions.
-func (eq *equations) agree(i, rows int, d *medium) {
+// agree enters the node's own displacement and slope into the conditions of what
+// starts (sign 1) or ends (sign -1) there.
+func (eq *equations) agree(i, rows int, d *medium, sign float64) {
 	u := eq.l.nodes[i].at
 	eq.add(rows, u, -1)
 	if d.beam() {
-		eq.add(rows+1, u+1, -1)
+		eq.add(rows+1, eq.l.slope(i, sign), -1)
 	}
 }
 
@@ -246,7 +277,7 @@ func (eq *equations) agree(i, rows int, d *medium) {
 // before the first.
 func (eq *equations) endless(d *medium, p part, node int, sign float64, comes bool, c *chain) {
 	clean := d.lossless()
-	eq.agree(node, p.at, &clean)
+	eq.agree(node, p.at, &clean, sign)
 	s := complex(sign, 0)
 	for k, r := range clean.roots(eq.omega) {
 		eq.meets(c, node, p.at, p.at+k, &clean, 1, -s*r, sign)
@@ -262,8 +293,8 @@ func (eq *equations) span(i int, sp *span, c *chain) {
 	p := eq.l.spans[i]
 	d := &sp.medium
 	far := p.at + p.n/2
-	eq.agree(i, p.at, d)
-	eq.agree(i+1, far, d)
+	eq.agree(i, p.at, d, 1)
+	eq.agree(i+1, far, d, -1)
 	for k, r := range d.roots(eq.omega) {
 		fade := cmplx.Exp(-r * complex(sp.length, 0))
 		eq.meets(c, i, p.at, p.at+k, d, 1, -r, 1)

@@ -33,6 +33,9 @@ type End struct {
 // Units: shares are pure numbers. Accuracy: rounding, for uniform stretches;
 // see chain.stretch where the tension rises. It stops with the context's error.
 func Ends(ctx context.Context, m *mesh.Mesh, frequencies []float64) ([]End, []string, error) {
+	if err := answers(m, frequencies); err != nil {
+		return nil, nil, err
+	}
 	s := newSite(m)
 	var out []End
 	asked := map[int]bool{}
@@ -52,6 +55,9 @@ func Ends(ctx context.Context, m *mesh.Mesh, frequencies []float64) ([]End, []st
 // EndAt gives what the end with a support, by mesh node, reflects (share of
 // displacement) and takes (share of power) at one frequency.
 func EndAt(m *mesh.Mesh, node int, frequency float64) (reflected, taken float64, err error) {
+	if err := answers(m, []float64{frequency}); err != nil {
+		return 0, 0, err
+	}
 	s := newSite(m)
 	for line := range m.Lines {
 		nodes := s.nodes(line)

@@ -44,11 +44,14 @@ func noShares() Shares {
 // where D is the joint's dynamic stiffness and D_before, D_after those of the
 // endless lines beside it, for displacement and, with bending, slope. On a
 // string this is r = (Z1 - Z2 - D/(i omega))/(Z1 + Z2 + D/(i omega)).
-// It stops with the context's error. The absorbed share is summed over the dashpots, so it is exactly 0 without.
+// It stops with the context's error, and fails for what answers refuses. The absorbed share is summed over the dashpots, so it is exactly 0 without.
 //
 // Source: Graff, Wave Motion in Elastic Solids (1975), ch. 1, scattering by a
 // general node (from memory); with bending the same balance of force and moment.
 func Joints(ctx context.Context, m *mesh.Mesh, frequencies []float64) ([]Joint, []string, error) {
+	if err := answers(m, frequencies); err != nil {
+		return nil, nil, err
+	}
 	s := newSite(m)
 	var out []Joint
 	asked := map[int]bool{}
@@ -75,6 +78,9 @@ func Joints(ctx context.Context, m *mesh.Mesh, frequencies []float64) ([]Joint, 
 
 // JointAt gives the shares of one joint, by mesh node, at one frequency.
 func JointAt(m *mesh.Mesh, node int, frequency float64, fromAfter bool) (Shares, error) {
+	if err := answers(m, []float64{frequency}); err != nil {
+		return Shares{}, err
+	}
 	s := newSite(m)
 	for line := range m.Lines {
 		nodes, pieces := s.nodes(line), m.Lines[line].Pieces

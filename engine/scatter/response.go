@@ -56,6 +56,9 @@ func NewNetwork(m *mesh.Mesh) (*Network, error) {
 // stretch is used, so there is no discretisation; a force along a stretch is
 // spread over points (see points).
 func (n *Network) Responses(ctx context.Context, drives []Drive, frequencies []float64) (list []Response, notes []string, err error) {
+	if err := answers(n.m, frequencies); err != nil {
+		return nil, nil, err
+	}
 	var channels []*mesh.Channel
 	for i := range n.m.Channels {
 		c := &n.m.Channels[i]

@@ -2,10 +2,12 @@ package scatter
 
 import (
 	"fmt"
+	"math"
 	"sort"
 	"strings"
 
 	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/modal"
 )
 
 // site looks a mesh up by line.
@@ -24,7 +26,7 @@ func newSite(m *mesh.Mesh) *site {
 			a, b = b, a
 		}
 		if m.Nodes[b].Line < 0 {
-			s.hung[a] = append(s.hung[a], hung{m.Nodes[b].Mass, l.Spring, l.Dashpot})
+			s.hung[a] = append(s.hung[a], hung{m.Nodes[b].Mass, l.Spring, l.Dashpot, l.SpringLoss})
 			continue
 		}
 		for _, n := range []int{a, b} {
@@ -50,7 +52,25 @@ func (s *site) fitting(node int) fitting {
 	return fitting{
 		held: n.Fixed || n.Motion != nil, clamped: n.Clamped, mass: n.Mass, spring: n.Spring, dashpot: n.Dashpot,
 		rotary: n.Rotary, brackets: n.Brackets, hung: s.hung[node],
+		eta: n.SpringLoss, inertia: n.Inertia, hinge: n.Hinge, benches: n.Benches,
 	}
+}
+
+// answers refuses frequencies (Hz) that cannot be answered for: of a network that
+// does not answer in proportion, or beyond what a bench has measured.
+func answers(m *mesh.Mesh, frequencies []float64) error {
+	if words := m.Words(mesh.NonLinear); len(words) > 0 {
+		return fmt.Errorf("answers by frequency are refused, not linearised, with %s: they would hang on the amplitude", strings.Join(words, " and "))
+	}
+	if m.Features()&mesh.BenchDamper == 0 {
+		return nil
+	}
+	for _, f := range frequencies {
+		if err := modal.Measured(m, 2*math.Pi*f); err != nil {
+			return err
+		}
+	}
+	return nil
 }
 
 // nodes lists the nodes of a line in walking order; piece k lies between the

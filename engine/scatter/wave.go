@@ -11,15 +11,23 @@ import (
 type medium struct {
 	t, m, ei float64 // N, kg/m, N m^2
 	c, tau   float64 // N s/m^2, s; viscous and internal loss
+	etaT     float64 // loss factor of the tension
+	etaB     float64 // loss factor of the bending
 }
 
 // mediumAt is the medium of a piece at the distance s from its start.
 func mediumAt(p *mesh.Piece, s float64) medium {
-	return medium{t: p.Tension + p.TensionRise*s, m: p.MassPerLength, ei: p.Bending, c: p.Viscous, tau: p.Internal}
+	return medium{t: p.Tension + p.TensionRise*s, m: p.MassPerLength, ei: p.Bending, c: p.Viscous, tau: p.Internal, etaT: p.TensionLoss, etaB: p.BendingLoss}
 }
 
 // lossless is the same medium without its losses.
-func (d medium) lossless() medium { d.c, d.tau = 0, 0; return d }
+func (d medium) lossless() medium {
+	d.c, d.tau, d.etaT, d.etaB = 0, 0, 0, 0
+	return d
+}
+
+// pull is the tension with its loss, N.
+func (d medium) pull() complex128 { return complex(d.t, d.t*d.etaT) }
 
 func (d medium) beam() bool { return d.ei > 0 }
 
@@ -32,7 +40,7 @@ func (d medium) carries(omega float64) bool {
 // +x: the travelling one first, then, with bending, the one that dies away near
 // its source. They solve
 //
-//	E r^4 - T r^2 + b = 0,   E = EI (1 + i omega tau),   b = -m omega^2 + i omega c,
+//	E r^4 - T r^2 + b = 0,   E = EI (1 + i (omega tau + eta)),   b = -m omega^2 + i omega c,
 //
 // with Re r >= 0. The travelling root is found from the other by the product of
 // the two squares, never as a difference, so that EI -> 0 costs no digits.
@@ -42,7 +50,7 @@ func (d medium) carries(omega float64) bool {
 // Motion in Elastic Solids (1975), on the tensioned beam (from memory).
 func (d medium) roots(omega float64) []complex128 {
 	b := complex(-d.m*omega*omega, omega*d.c)
-	t := complex(d.t, 0)
+	t := d.pull()
 	if !d.beam() {
 		return []complex128{travelling(b / t)}
 	}
@@ -62,7 +70,7 @@ func travelling(square complex128) complex128 {
 
 // stiffness is E of roots, N m^2.
 func (d medium) stiffness(omega float64) complex128 {
-	return complex(d.ei, d.ei*omega*d.tau)
+	return complex(d.ei, d.ei*(omega*d.tau+d.etaB))
 }
 
 // flux is the mean energy flux of the wave e^{-ikx} with amplitude 1 m, over
@@ -78,5 +86,5 @@ func (d medium) flux(omega float64) float64 {
 // stretch they have the opposite sign.
 func (d medium) push(l complex128, omega float64) (force, moment complex128) {
 	e := d.stiffness(omega)
-	return e*l*l*l - complex(d.t, 0)*l, -e * l * l
+	return e*l*l*l - d.pull()*l, -e * l * l
 }

@@ -7,6 +7,7 @@ import (
 	"math/cmplx"
 
 	"github.com/tautspan/tautspan/dsl/diag"
+	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/modal"
 	"github.com/tautspan/tautspan/engine/scatter"
 )
@@ -109,6 +110,13 @@ func (l *loaded) refuseWhole(code, summary string) {
 	l.note(diag.List{{Code: code, Severity: diag.Error, Span: diag.Span{File: l.compiled.Sources[0].File}, Summary: summary}})
 }
 
+// unanswered refuses unless it was the user who stopped it.
+func (l *loaded) unanswered(ctx context.Context, err error) {
+	if ctx.Err() == nil {
+		l.refuseWhole("no-response", err.Error())
+	}
+}
+
 func (l *loaded) respond(ctx context.Context, doc *RespondDoc, want RespondWant) {
 	drives, reasons := scatter.Drives(l.net, l.mesh)
 	answers := len(drives)*len(l.mesh.Channels)*2 + len(l.mesh.Nodes)*10
@@ -124,7 +132,8 @@ func (l *loaded) respond(ctx context.Context, doc *RespondDoc, want RespondWant)
 	doc.Frequency = grid
 	joints, notes, err := scatter.Joints(ctx, l.mesh, grid)
 	if err != nil {
-		return // stopped by the user
+		l.unanswered(ctx, err)
+		return
 	}
 	for i := range joints {
 		doc.Joints = append(doc.Joints, jointRow(joints[i].Name, "before", joints[i].Before), jointRow(joints[i].Name, "after", joints[i].After))
@@ -134,6 +143,7 @@ func (l *loaded) respond(ctx context.Context, doc *RespondDoc, want RespondWant)
 	}
 	ends, more, err := scatter.Ends(ctx, l.mesh, grid)
 	if err != nil {
+		l.unanswered(ctx, err)
 		return
 	}
 	for i := range ends {
@@ -163,7 +173,8 @@ func (l *loaded) steady(ctx context.Context, doc *RespondDoc, drives []scatter.D
 	}
 	responses, notes, err := network.Responses(ctx, drives, grid)
 	if err != nil {
-		return // stopped by the user
+		l.unanswered(ctx, err)
+		return
 	}
 	doc.Notes = append(doc.Notes, notes...)
 	for i := range responses {
@@ -213,6 +224,7 @@ func (l *loaded) frequencies(want RespondWant) ([]float64, error) {
 	var from, to float64
 	if want.From == nil || want.To == nil {
 		from, to = l.span()
+		from, to = measured(l.mesh, from, to)
 	}
 	switch {
 	case want.From != nil && want.To != nil:
@@ -244,6 +256,21 @@ func (l *loaded) frequencies(want RespondWant) ([]float64, error) {
 		out[points-1] = to
 	}
 	return out, nil
+}
+
+// measured keeps a range of frequencies within what every bench record of the
+// network holds, where the two meet.
+func measured(m *mesh.Mesh, from, to float64) (float64, float64) {
+	low, high := from, to
+	for i := range m.Nodes {
+		for _, b := range m.Nodes[i].Benches {
+			low, high = math.Max(low, b.Frequency[0]), math.Min(high, b.Frequency[len(b.Frequency)-1])
+		}
+	}
+	if low < high {
+		return low, high
+	}
+	return from, to
 }
 
 // span is a fifth of the first natural frequency to the eighth; without natural
