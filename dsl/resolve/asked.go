@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"strings"
 
-	"github.com/tautspan/tautspan/dsl/diag"
 	"github.com/tautspan/tautspan/dsl/syntax"
 	"github.com/tautspan/tautspan/dsl/unit"
 	"github.com/tautspan/tautspan/engine/scenario"
@@ -22,7 +21,7 @@ func (r *resolver) resolveAsked() {
 			}
 		}
 	}
-	r.resolveLater()
+	r.resolveSweep()
 	r.resolveSurvey()
 }
 
@@ -153,17 +152,27 @@ func (r *resolver) collect(e syntax.Expr) {
 		if v.bad {
 			return
 		}
-		for i, g := range a.ranges {
-			n := g.to - g.from + 1
-			if i == 0 {
-				total = n
-			} else if n != total {
-				r.errorAt(g.span, "unit-mismatch", "two ranges in one value have as many numbers each", fmt.Sprintf("this one has %d, the first %d", n, total), "")
-				return
-			}
+		n, ok := r.rangeCount(a)
+		if !ok {
+			return
 		}
+		total = n
 		r.tmpl.Collects = append(r.tmpl.Collects, scenario.Collect{Source: pickedText(e, a), Unit: siText(v, a), Value: v.prog, Measures: a.list})
 	}
+}
+
+// rangeCount is how many numbers the ranges of an expression have, 1 without any.
+func (r *resolver) rangeCount(a *asked) (int, bool) {
+	count := 1
+	for i, g := range a.ranges {
+		n := g.to - g.from + 1
+		if i > 0 && n != count {
+			r.errorAt(g.span, "unit-mismatch", "two ranges in one value have as many numbers each", fmt.Sprintf("this one has %d, the first %d", n, count), "")
+			return 0, false
+		}
+		count = n
+	}
+	return count, true
 }
 
 // pickedText is the text of an expression with each range replaced by the
@@ -180,10 +189,4 @@ func pickedText(e syntax.Expr, a *asked) string {
 		text = text[:from] + fmt.Sprint(g.from+a.pick) + text[to:]
 	}
 	return strings.Join(strings.Fields(text), " ")
-}
-
-// later marks a statement that is read and checked, and that another command
-// will answer.
-func (r *resolver) later(span diag.Span, word, command string) {
-	r.warnAt(firstWord(span), "not-answered-yet", "`"+word+"` is read and checked, and nothing answers it yet", "it will be answered by `tautspan "+command+"`", "")
 }

@@ -20,8 +20,6 @@ What the language says and this version cannot do yet is refused with the code n
 The language can say this, and this version cannot compute it. It is refused rather than left out, because an answer without it would be an answer to another question.
 
 The hint names a way around it where there is one.`,
-	"not-answered-yet": `
-The statement is read and checked for names and dimensions. No command of this version answers it; the message names the one that will. It changes nothing in the answers of other commands.`,
 	"reading-without-doubt": `
 A fit weighs each reading by its doubt. Where none is said, one that is wide for the trade stands in its place, and the message says which: 0.5 % of a frequency, 0.2 s for a stopwatch in the hand, 10 % of a damping ratio (common practice, no source). Say the doubt of the reading, and the interval of the answer becomes one that can be defended.`,
 	"unknown-name": `

@@ -12,6 +12,10 @@ type Template struct {
 
 	Requires []Require
 	Collects []Collect
+	Bests    []Best
+	Meets    []Meet
+	Varies   []Vary
+	Sample   *Sample // nil: doubts are carried to first order
 
 	Readings []ReadingOf[formula.Program]
 	Records  []Record
