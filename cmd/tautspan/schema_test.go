@@ -88,10 +88,19 @@ func TestDocumentsFollowTheirSchemas(t *testing.T) {
 	printed(t, 2, "change", "--json", short, survey)
 	printed(t, 0, "plan", "--json", shipped("hanger-survey"))
 	printed(t, 0, "plan", "--json", short)
+	printed(t, 2, "sweep", "--json", short)
+	swept := filepath.Join(dir, "swept.taut")
+	more := strings.Replace(text, "pull = 12 kN +- 2 %\n", "pull = 12 kN +- 2 %\nlet knob = 40 N*s/m\n", 1)
+	more = strings.Replace(more, "dashpot 40 N*s/m", "dashpot knob", 1) +
+		"best damping(1..2) largest over knob from 5 N*s/m to 400 N*s/m\nmeet frequency(1..3) with 1.5 Hz over pull from 1 kN to 20 kN\nvary knob from 20 N*s/m to 40 N*s/m, 1 steps\n"
+	if err := os.WriteFile(swept, []byte(more), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	printed(t, 1, "sweep", "--json", "--out", "none", swept)
 	printed(t, 0, "tidy", "--json", short)
 	printed(t, 0, "why", "--json", "scope")
 	printed(t, 0, "scenarios", "--json")
-	for _, command := range []string{"check", "modes", "respond", "arrivals", "run", "fit", "plan"} {
+	for _, command := range []string{"check", "modes", "respond", "arrivals", "run", "fit", "plan", "sweep"} {
 		printed(t, 2, command, "--json", bad)
 		printed(t, 2, command, "--json", filepath.Join(dir, "missing.taut"))
 	}

@@ -27,10 +27,15 @@ The answers stand as if their inputs were exact. Make the doubt smaller, or see 
 		"no-line": `There is no line in the scenario, so there is nothing to answer for. A line begins and ends with a support:
 
 line NAME { tension ...; support ...; segment ...; support ... }`,
-		"no-modes":         `The natural vibrations of this scenario cannot be given; the message says why.`,
-		"no-response":      `The steady response at the watches cannot be given; the message says why. Shares at joints and ends, which need no more than what stands there, are given all the same.`,
-		"no-frequencies":   `The range of frequencies is empty or cannot be: give --from and --to in Hz, the second above the first.`,
-		"too-many-points":  `So many frequencies would make a document that nobody can read or hold. Ask for fewer points, or for a narrower range.`,
+		"no-modes":        `The natural vibrations of this scenario cannot be given; the message says why.`,
+		"no-response":     `The steady response at the watches cannot be given; the message says why. Shares at joints and ends, which need no more than what stands there, are given all the same.`,
+		"no-frequencies":  `The range of frequencies is empty or cannot be: give --from and --to in Hz, the second above the first.`,
+		"too-many-points": `So many frequencies would make a document that nobody can read or hold. Ask for fewer points, or for a narrower range.`,
+		"nothing-to-sweep": `A sweep answers best, meet, vary and sample, and this scenario says none of them:
+
+best damping(1..4) largest over knob from 40 kN*s/m to 300 kN*s/m`,
+		"too-many-cases":   `Several vary statements make a grid: their numbers of values multiply, and so does the number of draws. Take fewer steps, or draw from distributions instead of a grid.`,
+		"no-solver":        `A case needs a run, and no solver can answer this scenario; the message says why each cannot.`,
 		"nothing-happens":  `Records are watched, and the scenario says nothing that would move the line: no pluck, push, press, move, roll or start. Every record is zero.`,
 		"unknown-code":     `Diagnostics carry a word in square brackets at their end; 'tautspan why WORD' explains it. 'tautspan why' lists them all.`,
 		"unknown-scenario": `No shipped scenario has that name. 'tautspan scenarios' lists them.`,

@@ -190,7 +190,9 @@ func fitVerdict(doc *FitDoc, waiting bool) string {
 
 // answersOf judges the scenario's questions on the line of one solution.
 func (l *loaded) answersOf(ctx context.Context, s *fit.Solution) (*measure.Answers, error) {
-	session, err := measure.New(l.compiled.Template, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples, Joint: s.Joint()})
+	o := l.measuring()
+	o.Joint = s.Joint()
+	session, err := measure.New(l.compiled.Template, nil, o)
 	if err != nil {
 		return nil, err
 	}

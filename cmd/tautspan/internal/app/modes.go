@@ -121,7 +121,7 @@ func (l *loaded) shapeOf(s *modal.Shape) []ShapeLine {
 // collectExact answers what collect asks for and modes can tell: everything
 // that needs no run.
 func (l *loaded) collectExact(ctx context.Context) []Collected {
-	session, err := measure.New(l.compiled.Template, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples})
+	session, err := measure.New(l.compiled.Template, nil, l.measuring())
 	if err != nil {
 		l.warn("doubt-not-carried", err.Error())
 		return []Collected{}

@@ -4,12 +4,11 @@ import (
 	"context"
 	"math"
 	"math/cmplx"
-	"runtime"
 
 	"github.com/tautspan/tautspan/engine/doubt"
+	"github.com/tautspan/tautspan/engine/measure"
 	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/modal"
-	"github.com/tautspan/tautspan/engine/scenario"
 )
 
 // samples is how many draws replace first order where an answer is not straight
@@ -19,73 +18,35 @@ const samples = 400
 // seed of the draws, fixed so that the same scenario gives the same answer.
 const seed = 1
 
-// inputs are the doubtful lets, and the names of those taken as exact.
-func (l *loaded) inputs() (doubtful []doubt.Input, exact []string) {
-	t := l.compiled.Template
-	u := t.StandardU(l.values)
-	for i := range t.Lets {
-		let := &t.Lets[i]
-		switch {
-		case let.Doubt != nil:
-			doubtful = append(doubtful, doubt.Input{Name: let.Name, Value: l.values[i], U: u[i], Rectangular: let.Doubt.Rectangular})
-		case independent(let):
-			exact = append(exact, let.Name)
-		}
+// measuring is how doubt is carried to the answers of a scenario: to first order
+// and drawn only where that fails, or drawn throughout where it says `sample`.
+func (l *loaded) measuring() measure.Options {
+	o := measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples, RunSamples: noSamples}
+	if s := l.compiled.Template.Sample; s != nil {
+		o.Sample, o.Seed, o.ExactSamples, o.RunSamples = true, s.Seed, s.Count, s.Count
 	}
-	return doubtful, exact
-}
-
-// independent tells whether a let is a number of its own, not made of others.
-func independent(let *scenario.Let) bool {
-	used := map[int]bool{}
-	let.Value.LetsUsed(used)
-	return len(used) == 0
-}
-
-// at builds the mesh for moved doubtful lets. The output grid stays as it was,
-// so that a default that depends on a let does not move with it.
-func (l *loaded) at(doubtful []doubt.Input, values []float64) (*scenario.Network, *mesh.Mesh, error) {
-	override := map[string]float64{}
-	for i := range doubtful {
-		override[doubtful[i].Name] = values[i]
-	}
-	t := l.compiled.Template
-	all, err := t.Values(override)
-	if err != nil {
-		return nil, nil, err
-	}
-	net, err := t.Bind(all)
-	if err != nil {
-		return nil, nil, err
-	}
-	net.Run = l.net.Run
-	m, err := mesh.Build(net)
-	return net, m, err
+	return o
 }
 
 // propagate carries the doubtful lets to exact answers of the mesh. Where it
 // fails the answers stand without input doubt of their own and the failure is
 // noted as a warning by the caller's document.
 func (l *loaded) propagate(ctx context.Context, centre []float64, units []string, answers func(context.Context, *mesh.Mesh) ([]float64, error)) []doubt.Number {
-	doubtful, exact := l.inputs()
 	out := make([]doubt.Number, len(centre))
-	if len(doubtful) > 0 {
-		f := func(ctx context.Context, values []float64) ([]float64, error) {
-			_, m, err := l.at(doubtful, values)
-			if err != nil {
-				return nil, err
-			}
-			return answers(ctx, m)
-		}
-		got, err := doubt.Propagate(ctx, doubtful, f, doubt.Options{Workers: runtime.GOMAXPROCS(0), Samples: samples, Seed: seed})
+	session, err := measure.New(l.compiled.Template, nil, l.measuring())
+	var exact []string
+	if err == nil {
+		exact = session.Exact()
+		var carried []doubt.Propagated
+		carried, err = session.Carry(ctx, centre, func(ctx context.Context, p *measure.Point) ([]float64, error) { return answers(ctx, p.Mesh) })
 		if err == nil {
 			for i := range out {
-				out[i] = got[i].Number(units[i], 0, exact...)
+				out[i] = carried[i].Number(units[i], 0, exact...)
 			}
 			return out
 		}
-		l.warn("doubt-not-carried", "the doubt of the inputs could not be carried to these answers: "+err.Error())
 	}
+	l.warn("doubt-not-carried", "the doubt of the inputs could not be carried to these answers: "+err.Error())
 	for i, v := range centre {
 		if math.IsNaN(v) {
 			out[i] = doubt.Missing(units[i], exact...)

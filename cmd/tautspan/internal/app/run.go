@@ -132,7 +132,9 @@ func (r *runner) prepare(ctx context.Context) error {
 	if r.still() {
 		r.warn("nothing-happens", "nothing happens to the line, so every record is zero; say an excitation")
 	}
-	r.session, err = measure.New(&t, nil, measure.Options{Workers: workers(), Seed: seed, ExactSamples: samples, RunSamples: noSamples, WorkOut: r.loads.workOut(ctx)})
+	o := r.measuring()
+	o.WorkOut = r.loads.workOut(ctx)
+	r.session, err = measure.New(&t, nil, o)
 	if err != nil {
 		r.refuse(err)
 	}

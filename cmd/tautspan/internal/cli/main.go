@@ -44,6 +44,8 @@ type grammar struct {
 	Arrivals  arrivalsCmd  `cmd:"" help:"The pulse ledger: which front reaches which watch, when, by which path, how strong."`
 	Run       runCmd       `cmd:"" help:"Solve with every solver that can, hold them against one another, judge the requirements."`
 	Plan      planCmd      `cmd:"" help:"Before the climb: frequencies, sensor places off the nodes, record length, the intervals to expect."`
+	Sweep     sweepCmd     `cmd:"" help:"Where a let is best, where two values meet, and every case of what is varied."`
+	Worker    workerCmd    `cmd:"" hidden:"" help:"Lend this machine to sweeps (not built yet)."`
 	Fit       fitCmd       `cmd:"" help:"Seek the lets that explain site readings: tension, stiffness, with intervals and verdicts."`
 	Change    changeCmd    `cmd:"" help:"Hold two surveys against one another: differences with intervals, temperature taken out."`
 	Stock     stockCmd     `cmd:"" help:"The built-in stock with its sources."`

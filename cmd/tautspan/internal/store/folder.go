@@ -16,7 +16,10 @@ type Folder struct {
 	Scenario []byte // scenario.taut, as run
 	Log      []byte // log.jsonl
 	Series   Table
-	Pictures []Picture
+	// SeriesName is what the table's files are called; "": series. A folder of
+	// another name needs no table.
+	SeriesName string
+	Pictures   []Picture
 }
 
 // Table is a set of columns of equal length; the first is the time.
@@ -136,11 +139,17 @@ func (f *Folder) writeAll(dir string) error {
 			return err
 		}
 	}
-	if err := toFile(filepath.Join(dir, "series.csv"), f.Series.writeCSV); err != nil {
-		return err
+	name := f.SeriesName
+	if name == "" {
+		name = "series"
 	}
-	if err := toFile(filepath.Join(dir, "series.parquet"), f.Series.writeParquet); err != nil {
-		return err
+	if f.SeriesName == "" || len(f.Series.Columns) > 0 {
+		if err := toFile(filepath.Join(dir, name+".csv"), f.Series.writeCSV); err != nil {
+			return err
+		}
+		if err := toFile(filepath.Join(dir, name+".parquet"), f.Series.writeParquet); err != nil {
+			return err
+		}
 	}
 	for i := range f.Pictures {
 		p := &f.Pictures[i]

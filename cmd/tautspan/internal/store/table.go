@@ -9,6 +9,7 @@ import (
 	"math"
 	"os"
 	"strconv"
+	"strings"
 
 	"github.com/parquet-go/parquet-go"
 )
@@ -43,7 +44,11 @@ func (t *Table) writeCSV(w io.Writer) error {
 		if i > 0 {
 			line = append(line, ',')
 		}
-		line = append(line, c.Name...)
+		name := c.Name
+		if strings.ContainsAny(name, ",\"\n") {
+			name = `"` + strings.ReplaceAll(name, `"`, `""`) + `"`
+		}
+		line = append(line, name...)
 	}
 	line = append(line, '\n')
 	for row := 0; row < t.rows(); row++ {
