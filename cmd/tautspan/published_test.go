@@ -178,6 +178,18 @@ func command(t *testing.T, doc any, text, name string, flags ...string) (code in
 	return code, dir
 }
 
+// decode runs the program in this process and decodes its JSON document.
+func decode(t *testing.T, doc any, args ...string) {
+	t.Helper()
+	var out, errs bytes.Buffer
+	if code := cli.Main(args, cli.Streams{In: strings.NewReader(""), Out: &out, Err: &errs}); code > 1 {
+		t.Fatalf("%s ended with %d\n%s", strings.Join(args, " "), code, errs.String())
+	}
+	if err := json.Unmarshal(out.Bytes(), doc); err != nil {
+		t.Fatal(err)
+	}
+}
+
 // number is a value with its numerical bound.
 type number struct {
 	Value     *float64 `json:"value"`

@@ -137,7 +137,7 @@ func (s *sweeper) meetOver(ctx context.Context, list []scenario.Meet) error {
 		m := &list[c.Function]
 		count[c.Function]++
 		row := SweepCrossing{What: m.Source, With: m.With, Over: q.name, Unit: m.Unit, Touches: c.Touches, Shown: over.Shown, Step: found.Step, At: doubt.Exact(c.At, unit, exact...)}
-		if !c.Touches && len(p.Inputs) > 0 {
+		if !c.Touches && len(p.Inputs) > 0 && !endsOnly(m.Measures) {
 			row.At = c.Doubt.Number(unit, 0, exact...)
 		}
 		row.Value = q.sideAt(ctx, m, c.At)
@@ -150,6 +150,17 @@ func (s *sweeper) meetOver(ctx context.Context, list []scenario.Meet) error {
 		s.doc.Searches = append(s.doc.Searches, row)
 	}
 	return nil
+}
+
+// endsOnly tells whether all that is asked for are low and high ends: these hold
+// the doubt of the inputs already, and are numbers to use.
+func endsOnly(measures []scenario.MeasureOf[formula.Program]) bool {
+	for i := range measures {
+		if k := measures[i].Kind; k != scenario.LowEnd && k != scenario.HighEnd {
+			return false
+		}
+	}
+	return len(measures) > 0
 }
 
 // sideAt is the value at which two expressions meet.

@@ -66,6 +66,9 @@ func barText(v, bar float64) string {
 		return trimNumber(v, 6)
 	}
 	places := barPlaces(v, bar)
+	if !(roundUp(bar, places) > 0) {
+		return trimNumber(v, 6) // far below the last digit
+	}
 	return strconv.FormatFloat(v, 'f', places, 64) + " ± " + strconv.FormatFloat(roundUp(bar, places), 'f', places, 64)
 }
 
