@@ -236,6 +236,13 @@ func TestJumpOfStiffPluck(t *testing.T) {
 		net.Plucks = []scenario.PluckOf[float64]{{Name: "p", At: c.at, Force: 10}}
 		net.Watches = []scenario.Watch{{Name: "w", At: inside(0, 2), Quantities: []scenario.Quantity{scenario.Velocity, scenario.Force, scenario.Moment, scenario.Acceleration}}}
 		m := build(t, net)
+		for i := range m.Pieces {
+			for _, k := range m.Pieces[i].Marks {
+				if (k.Kind == MarkKink) != (c.want == 1) && k.Kind != MarkWatch {
+					t.Errorf("pluck at %+v: mark of kind %d", c.at, k.Kind)
+				}
+			}
+		}
 		if m.Jump != c.want {
 			t.Errorf("pluck at %+v: order %d, want %d", c.at, m.Jump, c.want)
 		}

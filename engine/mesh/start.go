@@ -91,10 +91,16 @@ func (b *builder) profile(p *Piece, velocity bool) func(float64) float64 {
 	}
 }
 
-// kinks marks the places inside pieces where the static shape bends.
+// kinks marks the places inside pieces where the static shape of a string bends.
+// That of a stiff piece is smooth up to its second derivative: only the force that
+// held it is told of.
 func (b *builder) kinks() {
 	for _, p := range b.net.Plucks {
-		b.mark(b.spot(p.At), MarkKink)
+		at, kind := b.spot(p.At), MarkKink
+		if b.stiffAt(at) {
+			kind = MarkLoad
+		}
+		b.mark(at, kind)
 	}
 }
 

@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"io"
 	"path/filepath"
+	"slices"
 	"time"
 
 	"github.com/tautspan/tautspan/cmd/tautspan/internal/store"
@@ -122,6 +123,9 @@ func (s *sweeper) answer(ctx context.Context) error {
 		verdicts = append(verdicts, s.doc.Requirements[i].Verdict)
 	}
 	for _, v := range s.doc.Summary.Verdicts {
+		if s.drawn() {
+			break // single draws are no verdict: their counts tell how likely each is
+		}
 		for _, c := range []struct {
 			word  string
 			count int
@@ -135,6 +139,12 @@ func (s *sweeper) answer(ctx context.Context) error {
 		s.doc.Verdict = worstVerdict(verdicts)
 	}
 	return nil
+}
+
+// drawn tells whether cases are drawn at random.
+func (s *sweeper) drawn() bool {
+	t := s.compiled.Template
+	return t.Sample != nil || slices.ContainsFunc(t.Varies, func(v scenario.Vary) bool { return v.Draw != scenario.Grid })
 }
 
 // passed turns an error of the scenario into a diagnostic; others go on.
