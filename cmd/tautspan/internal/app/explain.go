@@ -34,6 +34,7 @@ line NAME { tension ...; support ...; segment ...; support ... }`,
 		"nothing-to-sweep": `A sweep answers best, meet, vary and sample, and this scenario says none of them:
 
 best damping(1..4) largest over knob from 40 kN*s/m to 300 kN*s/m`,
+		"no-answer":        `What is asked cannot be answered exactly for this scenario; the message says what stands in the way.`,
 		"too-many-cases":   `Several vary statements make a grid: their numbers of values multiply, and so does the number of draws. Take fewer steps, or draw from distributions instead of a grid.`,
 		"no-solver":        `A case needs a run, and no solver can answer this scenario; the message says why each cannot.`,
 		"nothing-happens":  `Records are watched, and the scenario says nothing that would move the line: no pluck, push, press, move, roll or start. Every record is zero.`,

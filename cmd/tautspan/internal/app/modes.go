@@ -49,7 +49,7 @@ func (l *loaded) modes(ctx context.Context, doc *ModesDoc, want ModesWant) {
 		return
 	}
 	doc.CompleteBelow = finite(res.CompleteBelow)
-	doc.Notes = append(doc.Notes, res.Notes...)
+	doc.Notes = append(append(doc.Notes, res.Notes...), l.leftToSweep()...)
 	numbers := l.modeDoubts(ctx, res, want)
 	for i := range res.Modes {
 		m := &res.Modes[i]

@@ -28,6 +28,15 @@ func (l *loaded) measuring() measure.Options {
 	return o
 }
 
+// leftToSweep says which statements only a sweep answers.
+func (l *loaded) leftToSweep() []string {
+	t := l.compiled.Template
+	if len(t.Bests)+len(t.Meets)+len(t.Varies) == 0 {
+		return nil
+	}
+	return []string{"best, meet and vary are answered by `tautspan sweep`"}
+}
+
 // propagate carries the doubtful lets to exact answers of the mesh. Where it
 // fails the answers stand without input doubt of their own and the failure is
 // noted as a warning by the caller's document.

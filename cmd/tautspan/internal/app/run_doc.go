@@ -38,6 +38,7 @@ func (r *runner) document() {
 	for _, w := range r.answers.Waiting {
 		d.Notes = append(d.Notes, w+" waits for a run")
 	}
+	d.Notes = append(d.Notes, r.leftToSweep()...)
 	d.Verdict = worstVerdict(verdicts)
 	d.Head = r.head
 	d.ResultDir = r.dir

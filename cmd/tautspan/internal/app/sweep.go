@@ -74,14 +74,11 @@ func (a *App) Sweep(ctx context.Context, in Input, want SweepWant) (*SweepDoc, S
 		defer s.solvers.close()
 	}
 	if !l.failed() {
-		err = s.answer(ctx)
+		s.answer(ctx)
 	}
 	s.doc.Head = l.head
-	switch {
-	case l.failed():
+	if l.failed() {
 		return s.doc, BadInput, nil
-	case err != nil && ctx.Err() == nil:
-		return nil, Defect, err
 	}
 	s.doc.Cut = s.doc.Cut || ctx.Err() != nil
 	if dir != "" {
@@ -108,7 +105,7 @@ func (s *sweeper) nothingAsked() {
 }
 
 // answer fills the document. Errors of the scenario become diagnostics.
-func (s *sweeper) answer(ctx context.Context) error {
+func (s *sweeper) answer(ctx context.Context) {
 	s.doc.Cautions = append(s.doc.Cautions, cautions(s.net, formatEnergy)...)
 	var verdicts []string
 	for _, step := range []func(context.Context) error{s.nominal, s.meets, s.bests, s.cases} {
@@ -116,7 +113,8 @@ func (s *sweeper) answer(ctx context.Context) error {
 			if ctx.Err() != nil {
 				break
 			}
-			return s.passed(err)
+			s.passed(err)
+			return
 		}
 	}
 	for i := range s.doc.Requirements {
@@ -138,7 +136,6 @@ func (s *sweeper) answer(ctx context.Context) error {
 	if len(verdicts) > 0 {
 		s.doc.Verdict = worstVerdict(verdicts)
 	}
-	return nil
 }
 
 // drawn tells whether cases are drawn at random.
@@ -147,19 +144,18 @@ func (s *sweeper) drawn() bool {
 	return t.Sample != nil || slices.ContainsFunc(t.Varies, func(v scenario.Vary) bool { return v.Draw != scenario.Grid })
 }
 
-// passed turns an error of the scenario into a diagnostic; others go on.
-func (s *sweeper) passed(err error) error {
+// passed turns what cannot be answered into a diagnostic.
+func (s *sweeper) passed(err error) {
 	var path *scenario.PathError
-	if errors.As(err, &path) {
-		s.refuse(err)
-		return nil
-	}
 	var absent *compare.AllAbsentError
-	if errors.As(err, &absent) {
+	switch {
+	case errors.As(err, &path):
+		s.refuse(err)
+	case errors.As(err, &absent):
 		s.refuseWhole("no-solver", err.Error())
-		return nil
+	default:
+		s.refuseWhole("no-answer", err.Error())
 	}
-	return err
 }
 
 // options are those of a session at a case or a place of a search.
