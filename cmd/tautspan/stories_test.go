@@ -92,6 +92,9 @@ func TestStayDamper(t *testing.T) {
 			t.Errorf("%+v", v)
 		}
 	}
+	// By hand: that of the damper alone, mode 1, and the bare 0.12 % of the stay.
+	within(t, "as delivered", doc.Collected[0].Value.Value, 0.00630+0.0012, 1e-5)
+	within(t, "mode 4", doc.Collected[3].Value.Value, 0.00785+0.0012, 3e-5)
 	within(t, "stored energy", doc.Requirements[2].Value.Value, 1.73e6, 5e3)
 	if b := doc.Best[0]; !b.Inside || *b.At < 80e3 || *b.At > 150e3 {
 		t.Errorf("best at %v, inside %v", *b.At, b.Inside)
@@ -126,7 +129,7 @@ func TestConductorDamper(t *testing.T) {
 	doc := shippedSweep(t, 1, "conductor-damper")
 	doc.verdicts(t, "met", "met", "met")
 	within(t, "sag", doc.Requirements[1].Value.Value, 7.20, 0.005)
-	if v := doc.Summary.Verdicts[0]; v.NotMet != 4 {
+	if v := doc.Summary.Verdicts[0]; v.NotMet != 3 {
 		t.Errorf("%+v", v)
 	}
 }
