@@ -68,6 +68,10 @@ The same thing is said twice, and the two may differ. Leave one of them.`,
 These properties exclude one another: what is held in place does not move, so a spring, a dashpot or a mass there would do nothing; free and absorbing stand alone.`,
 	"no-effect": `
 What is written here changes no answer in this scenario. It may stand, and it may be a sign that something else was meant.`,
+	"deep-sag": `
+Everything here is computed for lines that hang shallow: straight chords, a tension that hardly varies, and the sag term of Irvine and Caughey where it is asked for. That theory is used up to a sag of one eighth of the span. Beyond it the catenary's shape and the change of tension along it count, and frequencies, travel times and the drop itself are off by more than the bars tell: by some 4/3 (sag/span)^2 of the drop, 2 % at one eighth, 8 % at a quarter.
+
+A higher tension, or the parts between inner supports as lines of their own, may be what was meant.`,
 	"not-linear": `
 A natural frequency and a damping ratio belong to a line whose motion grows in proportion to what drives it. With friction, a stop, a written law, a tie that goes slack or tension that grows with amplitude they would hang on the amplitude, and a damper known only by its bench record has values at real frequencies alone. The program refuses instead of putting a straight line in their place.
 

@@ -82,9 +82,17 @@ func (r *resolver) resolveTie(t *syntax.Tie) {
 		r.errorAt(t.To.Span, "wrong-place", "a tie joins two places", "both ends are at the same one", "")
 		return
 	}
+	if fok && tok && r.heldAt(from) && r.heldAt(to) {
+		r.warnAt(t.Name.Span, "no-effect", "the tie "+t.Name.Text+" does nothing", "both its ends are held in place", "")
+	}
 	if fok && tok {
 		r.tmpl.Model.Ties = append(r.tmpl.Model.Ties, out)
 	}
+}
+
+// heldAt tells whether a place does not move.
+func (r *resolver) heldAt(p placeOf) bool {
+	return p.Node >= 0 && p.Node < len(r.tmpl.Model.Lines[p.Line].Nodes) && r.tmpl.Model.Lines[p.Line].Nodes[p.Node].Fixed
 }
 
 // quantityWords are the quantities that a watch records.

@@ -44,7 +44,7 @@ func longLine(n int) string {
 
 func TestTenThousandSegments(t *testing.T) {
 	var b strings.Builder
-	b.WriteString("tautspan 1\nstock w {\n mass 1 kg/m\n}\nline l {\n tension 1 kN\n support a fixed\n")
+	b.WriteString("tautspan 1\nstock w {\n mass 10 g/m\n}\nline l {\n tension 1 kN\n support a fixed\n")
 	for i := range 10_000 {
 		fmt.Fprintf(&b, " segment s%d w 1 m\n", i)
 	}

@@ -103,7 +103,13 @@ func (r *resolver) unlikelyLine(e *lineEntry, line *scenario.LineOf[formula.Prog
 	if e.incline != nil {
 		whole.cos = math.Cos(r.num(*e.incline))
 	}
+	for i := range line.Nodes {
+		if n := &line.Nodes[i]; n.Kind == scenario.Joint && n.Mass.Code != nil {
+			whole.mass += r.num(n.Mass)
+		}
+	}
 	for i := range line.Segments {
+		whole.mass += r.rowMass(&line.Segments[i])
 		s, p := &line.Segments[i], &e.parts[i]
 		low, high := r.segmentEnds(s)
 		mean, m := (low+high)/2, r.num(s.MassPerLength)
@@ -124,7 +130,18 @@ func (r *resolver) unlikelyLine(e *lineEntry, line *scenario.LineOf[formula.Prog
 	if !e.sideways && e.sag.IsZero() && !e.weighted && whole.give > 0 {
 		r.sagMatters(e, &whole)
 	}
+	r.sagDeep(e, &whole)
 	r.bendingMatters(e, line, &whole)
+}
+
+// rowMass is what the joints of a segment's rows weigh, kg.
+func (r *resolver) rowMass(s *scenario.SegmentOf[formula.Program]) float64 {
+	sum := 0.0
+	for i := range s.Every {
+		e := &s.Every[i]
+		sum += r.num(e.Joint.Mass) * float64(scenario.EveryCount(r.num(s.Length), r.num(e.First), r.num(e.Spacing)))
+	}
+	return sum
 }
 
 // lineSums are sums over a line.
@@ -158,6 +175,21 @@ func (r *resolver) share(span diag.Span, stock string, share float64) {
 		found = "it would break"
 	}
 	r.warnAt(span, "unlikely-share", fmt.Sprintf("this tension is %s %% of the strength of %s", unit.Digits(100*share, 3), stock), found, "")
+}
+
+// deepSag is the sag of a line by its span up to which the shallow theory is
+// used. Source: Irvine, Cable Structures (1981), ch. 2: d/L below 1/8 (from memory).
+const deepSag = 0.125
+
+// sagDeep remarks on a line that hangs too deep for a shallow one: its sag is
+// W cos(incline)/(8 T) of its span, with the whole weight W.
+func (r *resolver) sagDeep(e *lineEntry, w *lineSums) {
+	share := w.mass * unit.StandardGravity * w.cos / (8 * w.tension())
+	if !(share > deepSag) || math.IsInf(share, 0) {
+		return
+	}
+	r.warnAt(e.stmt.Name.Span, "deep-sag", "the line "+e.name+" hangs too deep for the theory of shallow lines",
+		fmt.Sprintf("its sag is %s %% of its span, and the theory holds up to 12.5 %% (one eighth)", unit.Digits(100*share, 3)), "")
 }
 
 // sagMatters remarks where sag, which is left out, would change the first

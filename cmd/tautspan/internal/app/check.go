@@ -26,7 +26,7 @@ func (a *App) Check(in Input) (*CheckDoc, Status, error) {
 	if !l.failed() && l.net != nil {
 		l.tryLoads()
 	}
-	doc := &CheckDoc{Solvers: []SolverCan{}, Lines: []LineFacts{}, Lets: []LetFacts{}, Plucks: []PluckFacts{}, Cautions: []CautionNote{}, Readings: []ReadingFacts{}, Sought: []SoughtFacts{}}
+	doc := &CheckDoc{Solvers: []SolverCan{}, Lines: []LineFacts{}, Lets: []LetFacts{}, Plucks: []PluckFacts{}, Stocks: []StockFacts{}, Cautions: []CautionNote{}, Readings: []ReadingFacts{}, Sought: []SoughtFacts{}}
 	if !l.failed() && l.net != nil {
 		l.facts(doc)
 	}
@@ -47,6 +47,13 @@ func (l *loaded) facts(doc *CheckDoc) {
 	doc.Run, doc.Plucks = l.runFacts(), l.pluckFacts()
 	doc.Cautions = cautions(l.net, formatEnergy)
 	frequencies := l.firstFrequencies(6)
+	l.hintStill()
+	l.hintDriven()
+	for _, s := range l.compiled.Stocks {
+		if s.BendingHigh > 0 {
+			doc.Stocks = append(doc.Stocks, StockFacts{Name: s.Name, Bending: s.Bending, Low: s.BendingLow, High: s.BendingHigh})
+		}
+	}
 	for i := range l.net.Lines {
 		doc.Lines = append(doc.Lines, lineFacts(&l.net.Lines[i], frequencies[i]))
 	}
@@ -84,10 +91,11 @@ func lineFacts(line *scenario.Line, frequencies []float64) LineFacts {
 	return f
 }
 
-// sagParameter is lambda^2 = (m g L/T)^2 L EA/(T Le) of Irvine and Caughey for a
-// level line, with the mean mass and tension of its segments, their axial
-// stiffnesses in series, and Le = L (1 + (m g L/T)^2/8). Source: Irvine, Caughey,
-// Proc. R. Soc. Lond. A 341 (1974), from memory. nil where EA is not known.
+// sagParameter is lambda^2 = (m g L cos/T)^2 L EA/(T Le) of Irvine and Caughey,
+// with the mean mass of a line, its joints counted, its mean tension, the axial
+// stiffnesses of segments and of ends that give in series, and Le = L (1 + (m g
+// L/T)^2/8). Source: Irvine, Caughey, Proc. R. Soc. Lond. A 341 (1974), from
+// memory. nil where EA is not known; 0 with an end that keeps its tension.
 func sagParameter(line *scenario.Line) *float64 {
 	length, mass, give := statics.Length(line), 0.0, 0.0
 	for _, s := range line.Segments {
@@ -96,6 +104,22 @@ func sagParameter(line *scenario.Line) *float64 {
 		}
 		mass += s.MassPerLength * s.Length / length
 		give += s.Length / s.Axial
+	}
+	for i := range line.Segments {
+		if i > 0 {
+			mass += line.Nodes[i].Mass / length
+		}
+		for _, row := range scenario.Rows(&line.Segments[i]) {
+			mass += row.Joint.Mass / length
+		}
+	}
+	for _, n := range []*scenario.Node{&line.Nodes[0], &line.Nodes[len(line.Nodes)-1]} {
+		if n.AxialGive > 0 {
+			give += 1 / n.AxialGive
+		}
+	}
+	if line.Weighted {
+		return finite(0)
 	}
 	tension := statics.MeanTension(line)
 	slope := mass * gravity * length * math.Cos(line.Incline) / tension
@@ -135,6 +159,9 @@ func (l *loaded) firstFrequencies(count int) [][]float64 {
 	out := make([][]float64, len(l.net.Lines))
 	for i := range out {
 		out[i] = []float64{}
+	}
+	if l.mesh.Features()&(mesh.NonLinear|mesh.BenchDamper) != 0 {
+		return out // there are none, and nobody asked for them
 	}
 	res, err := modal.Find(l.mesh, modal.Want{Count: count})
 	if err != nil {

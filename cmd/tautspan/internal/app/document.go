@@ -41,6 +41,7 @@ type CheckDoc struct {
 	Lets        []LetFacts     `json:"lets"`
 	Run         *RunFacts      `json:"run"`
 	Plucks      []PluckFacts   `json:"plucks"`
+	Stocks      []StockFacts   `json:"stocks"`
 	Cautions    []CautionNote  `json:"cautions"`
 	Readings    []ReadingFacts `json:"readings"`
 	Sought      []SoughtFacts  `json:"sought"`
@@ -110,6 +111,15 @@ type SegmentFacts struct {
 	Impedance     float64  `json:"impedance_kg_per_s"`
 	Bending       float64  `json:"bending_n_m2"`
 	Axial         *float64 `json:"axial_n"`
+}
+
+// StockFacts is the bending stiffness of a stock with the bounds that follow from
+// its matter; the lower one is 0 where it is not known.
+type StockFacts struct {
+	Name    string  `json:"name"`
+	Bending float64 `json:"bending_n_m2"`
+	Low     float64 `json:"bending_low_n_m2"`
+	High    float64 `json:"bending_high_n_m2"`
 }
 
 // LetFacts is a let with its doubt as it was taken.

@@ -27,6 +27,12 @@ The answers stand as if their inputs were exact. Make the doubt smaller, or see 
 		"no-line": `There is no line in the scenario, so there is nothing to answer for. A line begins and ends with a support:
 
 line NAME { tension ...; support ...; segment ...; support ... }`,
+		"watch-at-node": `The watch stands where one of the first vibrations of its line does not move, so its record holds next to nothing of that vibration: a requirement on settling, or a peak picked from a record taken there, does not see it.
+
+In the middle of a line that is every even one. Move the watch off the middle, a third or two fifths along, or set a second one.`,
+		"near-resonance": `A drive repeats itself at a frequency within 10 % of a natural one (common practice, no source). The steady motion there is set by damping alone, and a few per cent of tension move it by a large factor.
+
+'tautspan respond' shows the steady motion against frequency; meet and vary ask for the tension or length at which the two part.`,
 		"no-modes":        `The natural vibrations of this scenario cannot be given; the message says why.`,
 		"no-response":     `The steady response at the watches cannot be given; the message says why. Shares at joints and ends, which need no more than what stands there, are given all the same.`,
 		"no-frequencies":  `The range of frequencies is empty or cannot be: give --from and --to in Hz, the second above the first.`,

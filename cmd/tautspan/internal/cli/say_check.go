@@ -51,6 +51,7 @@ func (p *printer) sayCheck(d *app.CheckDoc) {
 	for i := range d.Lines {
 		p.sayLine(&d.Lines[i])
 	}
+	p.sayBounds(d.Stocks)
 	p.sayLets(d.Lets)
 	p.saySurvey(d)
 	for _, pl := range d.Plucks {
@@ -104,6 +105,9 @@ func (p *printer) sayLine(l *app.LineFacts) {
 	if l.Lambda2 != nil {
 		facts = append(facts, "sag parameter lambda² "+trimNumber(*l.Lambda2, 3))
 	}
+	if l.Xi != nil {
+		facts = append(facts, "bending parameter xi "+trimNumber(*l.Xi, 3))
+	}
 	if len(facts) > 0 {
 		p.line("  %s", strings.Join(facts, ", "))
 	}
@@ -114,6 +118,22 @@ func (p *printer) sayLine(l *app.LineFacts) {
 			words[i] = trimNumber(f*factor, 5)
 		}
 		p.line("  first vibrations %s %s", strings.Join(words, ", "), unit)
+	}
+}
+
+// sayBounds prints what the bending stiffness of a stock can be.
+func (p *printer) sayBounds(stocks []app.StockFacts) {
+	const unit = "N*m^2"
+	for _, s := range stocks {
+		bounds := "up to " + p.show(s.High, unit, 3) + " (a solid bar)"
+		if s.Low > 0 && s.Low < s.High {
+			bounds = "between " + p.show(s.Low, unit, 3) + " (wires that slide) and " + p.show(s.High, unit, 3) + " (a solid bar)"
+		}
+		taken := "an ideal string"
+		if s.Bending > 0 {
+			taken = p.show(s.Bending, unit, 3)
+		}
+		p.line("\nstock %s: bending stiffness %s; taken as %s", s.Name, bounds, taken)
 	}
 }
 
