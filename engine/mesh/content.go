@@ -82,15 +82,8 @@ func (b *builder) stiffAlong(s scenario.SpanOf) bool {
 // none and starts at rest.
 func (b *builder) historyJump(h scenario.History) int {
 	end := b.m.Timing.End()
-	scale, slope := 0.0, 0.0
-	const n = 2000
-	prev := h.At(0, 0)
-	for i := 1; i <= n; i++ {
-		v := h.At(end*float64(i)/n, 0)
-		scale = math.Max(scale, math.Abs(v))
-		slope = math.Max(slope, math.Abs(v-prev)*n/end)
-		prev = v
-	}
+	seen := sample(func(t float64) float64 { return h.At(t, 0) }, end, b.m.Timing.Every)
+	scale, slope := seen.most, seen.slope
 	for _, at := range h.Breaks {
 		scale = math.Max(scale, math.Max(math.Abs(h.At(at, 0)), math.Abs(h.At(at*(1-1e-9), 0))))
 	}
@@ -98,7 +91,7 @@ func (b *builder) historyJump(h scenario.History) int {
 	if h.Value.Smooth() {
 		order = SmoothJump
 	}
-	eps := end * 1e-9
+	eps := math.Min(end*1e-9, b.m.Timing.Every*1e-6)
 	for _, at := range append([]float64{0}, h.Breaks...) {
 		if at > end {
 			continue
@@ -106,7 +99,7 @@ func (b *builder) historyJump(h scenario.History) int {
 		if math.Abs(h.At(at+eps, 0)-h.At(at-eps, 0)) > 1e-6*scale+4*eps*slope {
 			return 0
 		}
-		step := end * 1e-7
+		step := math.Min(end*1e-7, b.m.Timing.Every*1e-4)
 		after, before := h.At(at+2*step, 0)-h.At(at+step, 0), h.At(at-step, 0)-h.At(at-2*step, 0)
 		if math.Abs(after-before)/step > 1e-3*slope {
 			order = min(order, 1)
@@ -288,9 +281,9 @@ func (b *builder) historyFrequency(h scenario.History, x float64) float64 {
 		if w <= end*1e-12 {
 			continue
 		}
-		v, c := meanSquares(func(t float64) float64 { return h.At(a+t, x) }, w)
-		value += v
-		change += c
+		seen := sample(func(t float64) float64 { return h.At(a+t, x) }, w, b.m.Timing.Every)
+		value += seen.value
+		change += seen.change
 	}
 	if value == 0 {
 		return 0
@@ -317,27 +310,9 @@ func (b *builder) pressFrequency(p *Press) float64 {
 
 // waveNumber is the root-mean-square wave number of a shape on [0, length], rad/m.
 func waveNumber(shape func(float64) float64, length float64) float64 {
-	value, change := meanSquares(shape, length)
-	if value == 0 {
+	seen := sample(shape, length, 0)
+	if seen.value == 0 {
 		return 0
 	}
-	return math.Sqrt(change / value)
-}
-
-// meanSquares integrates f^2 and f'^2 over [0, width], inside the ends so that a
-// jump at an end does not count.
-func meanSquares(f func(float64) float64, width float64) (value, change float64) {
-	const n = 4000
-	h := width / (n + 2)
-	prev := f(h)
-	for i := 2; i <= n+1; i++ {
-		v := f(float64(i) * h)
-		if math.IsNaN(v) || math.IsInf(v, 0) {
-			continue
-		}
-		value += h * (v*v + prev*prev) / 2
-		change += (v - prev) * (v - prev) / h
-		prev = v
-	}
-	return value, change
+	return math.Sqrt(seen.change / seen.value)
 }
