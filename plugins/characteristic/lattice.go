@@ -22,9 +22,12 @@ type lattice struct {
 	step     int // lattice steps done
 	f, g     []float64
 	phi, psi []float64
-	r, u, du []float64
+	r, u, dv []float64
 	v        []float64  // u - f - g
 	jf, jg   []float64  // J's two parts, over the last step
+	df, dg   []float64  // what f and g gained over the last step
+	squares  [2]strips  // of f_t and g_t
+	apart    float64    // m^2, products of sources' waves about cells that only one of them is in
 	jlast    [2]float64 // jf at the start and jg at the end, one step earlier
 	slot     []int      // of each source, the point at its right
 	before   [2]float64 // v at the ends one step earlier
@@ -38,9 +41,10 @@ type lattice struct {
 func newLattice(p *line, cells int, span, tol float64, places []float64) *lattice {
 	l := &lattice{p: p, n: cells, ds: p.tau / float64(cells), viscous: 2 * p.mass * p.gamma}
 	l.e = p.decay(l.ds)
-	for _, s := range []*[]float64{&l.f, &l.g, &l.phi, &l.psi, &l.r, &l.u, &l.du, &l.v, &l.jf, &l.jg} {
+	for _, s := range []*[]float64{&l.f, &l.g, &l.phi, &l.psi, &l.r, &l.u, &l.dv, &l.v, &l.jf, &l.jg, &l.df, &l.dg} {
 		*s = make([]float64, cells+1)
 	}
+	l.squares = [2]strips{newStrips(cells, l.e), newStrips(cells, l.e)}
 	l.ends = [2]*history{newHistory(l.ds, span, 0, tol), newHistory(l.ds, span, 0, tol)}
 	for _, x := range places {
 		l.taps = append(l.taps, tap{x, newHistory(l.ds, span, 0, tol), newHistory(l.ds, span, 0, tol)})
@@ -57,7 +61,7 @@ func (l *lattice) begin(f, g, v func(x float64) float64) {
 	for j := range l.f {
 		x := float64(j) * h
 		l.f[j], l.g[j] = f(x), g(x)
-		l.u[j], l.du[j] = l.f[j]+l.g[j], l.ds*v(x)
+		l.u[j] = l.f[j] + l.g[j]
 	}
 	// What the first step needs was sent before t = 0.
 	p := l.p
@@ -65,6 +69,12 @@ func (l *lattice) begin(f, g, v func(x float64) float64) {
 		lag := float64(j) * l.ds
 		l.jf[j] = p.decay(lag) * p.sent[0].leaky(p.gamma, -lag-l.ds, -lag)
 		l.jg[l.n-j] = p.decay(lag) * p.sent[1].leaky(p.gamma, -lag-l.ds, -lag)
+	}
+	for end := range l.squares {
+		for j := l.n; j >= 0; j-- {
+			t := -float64(j) * l.ds
+			l.squares[end].depart(together(p.sent[end], p.sent[end], 0, t-l.ds, t))
+		}
 	}
 	l.jlast = [2]float64{l.jf[0], l.jg[l.n]}
 	l.predict()
@@ -79,38 +89,73 @@ func (l *lattice) advance() {
 	t1 := float64(l.step+1) * l.ds
 	half := 0.5 * l.ds
 	for j := n; j > 0; j-- {
-		l.f[j] = l.e * l.f[j-1]
+		f := l.e * l.f[j-1]
+		l.f[j], l.df[j] = f, f-l.f[j]
 		l.jf[j] = l.e * l.jf[j-1]
 		l.phi[j] = l.e * (l.phi[j-1] + half*l.r[j-1])
 	}
 	for j := 0; j < n; j++ {
-		l.g[j] = l.e * l.g[j+1]
+		g := l.e * l.g[j+1]
+		l.g[j], l.dg[j] = g, g-l.g[j]
 		l.jg[j] = l.e * l.jg[j+1]
 		l.psi[j] = l.e * (l.psi[j+1] + half*l.r[j+1])
 	}
 	l.jlast = [2]float64{l.jf[0], l.jg[n]}
 	l.jf[0] = p.sent[0].leaky(p.gamma, t1-l.ds, t1)
 	l.jg[n] = p.sent[1].leaky(p.gamma, t1-l.ds, t1)
-	l.f[0], l.phi[0] = p.sent[0].at(t1, 1, 0), 0
-	l.g[n], l.psi[n] = p.sent[1].at(t1, 1, 0), 0
+	for end := range l.squares {
+		l.squares[end].depart(together(p.sent[end], p.sent[end], 0, t1-l.ds, t1))
+	}
+	f, g := p.sent[0].at(t1, 1, 0), p.sent[1].at(t1, 1, 0)
+	l.f[0], l.df[0], l.phi[0] = f, f-l.f[0], 0
+	l.g[n], l.dg[n], l.psi[n] = g, g-l.g[n], 0
+	l.apart = 0
 	h := p.length / float64(n)
 	for i, src := range p.sources {
 		j := l.slot[i]
 		lag := (float64(j)*h - src.x) / p.c
-		l.f[j] += p.decay(lag) * src.h.at(t1-lag, 1, 0)
-		l.jf[j] += p.decay(lag) * src.h.leaky(p.gamma, t1-lag-l.ds, t1-lag)
+		a := l.join(0, j, src, t1-lag, p.decay(lag), &l.f[j], &l.df[j], &l.jf[j])
 		lag = (src.x - float64(j-1)*h) / p.c
-		l.g[j-1] += p.decay(lag) * src.h.at(t1-lag, 1, 0)
-		l.jg[j-1] += p.decay(lag) * src.h.leaky(p.gamma, t1-lag-l.ds, t1-lag)
+		b := l.join(1, j-1, src, t1-lag, p.decay(lag), &l.g[j-1], &l.dg[j-1], &l.jg[j-1])
+		l.apart += 0.5 * a * b
 	}
 	l.settle(t1)
 	l.step++
 	l.record()
 }
 
+// join adds a source's wave, which left it a step before time t and faded since,
+// to a wave at point j; it returns the source's own gain over the step.
+func (l *lattice) join(end, j int, src *source, t, fade float64, wave, gained, part *float64) float64 {
+	p := l.p
+	now := fade * src.h.at(t, 1, 0)
+	*wave += now
+	*gained += now
+	*part += fade * src.h.leaky(p.gamma, t-l.ds, t)
+	square := together(src.h, src.h, 0, t-l.ds, t)
+	away := src.x / p.c
+	if end == 1 {
+		away = (p.length - src.x) / p.c
+		j = l.n - j
+	}
+	square += 2 * p.decay(away) * together(src.h, p.sent[end], away, t-l.ds, t)
+	for _, o := range p.sources {
+		if between := (src.x - o.x) / p.c * float64(1-2*end); between > 0 {
+			square += 2 * p.decay(between) * together(src.h, o.h, between, t-l.ds, t)
+		}
+	}
+	l.squares[end].add(j, fade*fade*square)
+	return now - fade*src.h.at(t-l.ds, 1, 0)
+}
+
 // settle finds r and u at the new time: v_j holds r_j with a weight of at most
-// (gamma ds)^2/4, which is solved for. It books losses and work by differences,
-// losses with u_t straight within a step (third order).
+// (gamma ds)^2/4, which is solved for. It books work by differences.
+//
+// Losses are viscous times the integral of u_t^2. f_t and g_t may jump; what
+// their squares give travels with them and is exact, and so is their product over
+// a diamond between two characteristics of either kind, the product of both gains.
+// Half of the plane's diamonds are about points in mid-step, half about the
+// middles between neighbours, where a step begins and where it ends. v_t is taken as straight within a step.
 func (l *lattice) settle(t1 float64) {
 	n := l.n
 	l.before = [2]float64{l.v[0], l.v[n]}
@@ -120,9 +165,11 @@ func (l *lattice) settle(t1 float64) {
 		lost += l.points()
 	} else {
 		for j := 1; j < n; j++ {
-			lost += l.point(j, l.ds, t1)
+			lost += l.point(j, l.ds, t1) + 0.5*(l.df[j]*l.dg[j+1]+l.df[j+1]*l.dg[j])
 		}
 	}
+	lost += 0.5*(l.df[0]*l.dg[1]+l.df[1]*l.dg[0]) - l.apart
+	lost += l.ds * (l.squares[0].sum() + l.squares[1].sum())
 	l.latest.lost = lost * l.p.length / float64(n) * l.viscous / l.ds
 	l.account.lost += l.latest.lost
 	l.account.work += l.latest.work
@@ -136,25 +183,28 @@ func (l *lattice) points() (lost float64) {
 	scale := 1 / (1 - l.ds*w)
 	size := l.n
 	feed := 0.5 * p.gamma * p.gamma
-	f, g, phi, psi, r, u, du := l.f[:size], l.g[:size], l.phi[:size], l.psi[:size], l.r[:size], l.u[:size], l.du[:size]
+	f, g, phi, psi, r, u, dv := l.f[:size], l.g[:size], l.phi[:size], l.psi[:size], l.r[:size], l.u[:size], l.dv[:size]
 	v, jf, jg := l.v[:size], l.jf[:size], l.jg[:size]
+	df, dg := l.df[:size+1], l.dg[:size+1]
 	for j := 1; j < size; j++ {
 		known := e*(r[j]+w*v[j]) + feed*(jf[j]+jg[j])
+		was := v[j]
 		v[j] = (phi[j] + psi[j] + l.ds*known) * scale
 		r[j] = known + w*v[j]
 		phi[j] += half * r[j]
 		psi[j] += half * r[j]
-		now := f[j] + g[j] + v[j]
-		d := now - u[j]
-		bend := d - du[j]
-		lost += d*d + bend*bend*(1.0/12)
-		u[j], du[j] = now, d
+		u[j] = f[j] + g[j] + v[j]
+		d := v[j] - was
+		bend := d - dv[j]
+		dv[j] = d
+		a, b := df[j], dg[j]
+		lost += a*b + 0.5*(a*dg[j+1]+df[j+1]*b) + d*(d+2*(a+b)) + bend*bend*(1.0/12)
 	}
 	return lost
 }
 
 // point settles one point, to whose u the waves' sources add share times r; it
-// returns the square mean of u_t ds.
+// returns its share of the square mean of u_t ds beyond those of f and g alone.
 func (l *lattice) point(j int, share, t1 float64) (lost float64) {
 	p, n := l.p, l.n
 	h := p.length / float64(n)
@@ -170,6 +220,7 @@ func (l *lattice) point(j int, share, t1 float64) (lost float64) {
 		impulse = p.wind.impulse[(l.step+1)%windRing][j]
 	}
 	known := l.e*(l.r[j]+w*l.v[j]) + 0.5*p.gamma*p.gamma*(l.jf[j]+l.jg[j])
+	was := l.v[j]
 	l.v[j] = (free + share*known) / (1 - share*w)
 	l.r[j] = known + w*l.v[j]
 	now := l.f[j] + l.g[j] + l.v[j]
@@ -184,11 +235,11 @@ func (l *lattice) point(j int, share, t1 float64) (lost float64) {
 	} else {
 		own = 0.5 * h
 	}
-	d := now - l.u[j]
-	bend := d - l.du[j]
-	l.latest.work += own * 2 * p.mass * impulse * d / l.ds
-	l.u[j], l.du[j] = now, d
-	return d*d + bend*bend/12
+	l.latest.work += own * 2 * p.mass * impulse * (now - l.u[j]) / l.ds
+	d := l.v[j] - was
+	bend := d - l.dv[j]
+	l.u[j], l.dv[j] = now, d
+	return l.df[j]*l.dg[j] + d*(d+2*(l.df[j]+l.dg[j])) + bend*bend/12
 }
 
 // record puts the ends right and appends the taps.

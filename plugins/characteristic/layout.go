@@ -246,7 +246,7 @@ func size(m *mesh.Mesh, lay *Layout) solver.Plan {
 		}
 		if n := float64(lay.Cells[i]); n > 0 {
 			cells += n
-			bytes += 8 * n * 52
+			bytes += 8 * n * 58
 			work += 6 * n * lay.Step * n / p.TravelTime()
 		}
 	}

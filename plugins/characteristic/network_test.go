@@ -95,7 +95,7 @@ func TestViscousLine(t *testing.T) {
 	m := uniform2(30, 12)
 	m.Nodes[1].Mass = 1
 	m.Pushes = []mesh.Push{{At: inside(0, 4), Force: bump(300, 0.08)}}
-	against(t, "viscous", m, []int{160, 240}, 3, 2e-5, 1e-3, node(1), inside(1, 6), inside(0, 2))
+	against(t, "viscous", m, []int{160, 240}, 3, 2e-5, 1e-5, node(1), inside(1, 6), inside(0, 2))
 }
 
 // pressed is a force per length that varies with place and rises smoothly.

@@ -288,13 +288,55 @@ func (r *rolling) heard(t, from, until, last, rate float64, d int) float64 {
 	return -r.gamma*dv + r.k*e*rate*r.gamma*(rate-1)
 }
 
-// work is what the load gives the line from t0 to t1: F times u_t, the mean of
-// the rates on both sides of the load, which for its own waves is k/(1 - slip^2).
+// work is what the load gives the line from t0 to t1, piece by piece between the
+// fronts that pass the load.
 func (r *rolling) work(p *line, t0, t1 float64) float64 {
 	t0, t1 = math.Max(t0, r.tin), math.Min(t1, r.tout)
 	if t1 <= t0 {
 		return 0
 	}
+	sum := 0.0
+	for t0 < t1 {
+		until := r.front(p, t0+p.sent[0].tol, t1)
+		sum += r.given(p, t0, until)
+		t0 = until
+	}
+	return sum
+}
+
+// front is the first time after t at which a front of the piece passes the load,
+// or end.
+func (r *rolling) front(p *line, t, end float64) float64 {
+	here := r.s0 - r.v*r.tin // the load is at here + v t
+	meet := func(x, from, dir float64) {
+		// x + dir c (s - from) = here + v s
+		if s := (here - x + dir*r.c*from) / (dir*r.c - r.v); s > t && s < end && s > from {
+			end = s
+		}
+	}
+	sent := func(h *history, x, dir float64) {
+		for i := h.after(t-p.tau, -1); i < len(h.breaks); i++ {
+			meet(x, h.breaks[i].t, dir)
+		}
+	}
+	sent(p.sent[0], 0, 1)
+	sent(p.sent[1], p.length, -1)
+	for _, s := range p.sources {
+		sent(s.h, s.x, 1)
+		sent(s.h, s.x, -1)
+	}
+	for i := range p.rolls {
+		if q := &p.rolls[i]; q != r {
+			meet(q.s0, q.tin, 1)
+			meet(q.s0, q.tin, -1)
+		}
+	}
+	return end
+}
+
+// given is work without a front: F times u_t, the mean of the rates on both sides
+// of the load, which for its own waves is k/(1 - slip^2) less gamma times them.
+func (r *rolling) given(p *line, t0, t1 float64) float64 {
 	slip := r.v / r.c
 	rate := r.k / (1 - slip*slip)
 	places, weights := gauss()
@@ -304,6 +346,10 @@ func (r *rolling) work(p *line, t0, t1 float64) float64 {
 		f, g := p.carried(x, t, -1, 1)
 		df, dg := r.waves(x, t, 1)
 		v := f + g - df - dg
+		if r.gamma > 0 {
+			f, g = r.waves(x, t, 0)
+			v -= r.gamma * (f + g)
+		}
 		if p.wind != nil {
 			s := &p.wind.shapes[p.wind.step%windRing]
 			v += p.drifting(s, x)
