@@ -22,6 +22,7 @@ type run struct {
 	sources    []*source
 	winds      []*wind
 	lattices   []*lattice
+	sags       []*sagging
 	groups     []group
 	joints     []*joint // of every node
 	clusters   []*cluster
@@ -63,6 +64,7 @@ func assemble(m *mesh.Mesh, lay *Layout) (*run, error) {
 		return nil, err
 	}
 	r.makeLattices(lay, lag)
+	r.makeSags(lag)
 	r.makeWatches()
 	cost := 1
 	for _, g := range r.groups {

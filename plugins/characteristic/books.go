@@ -33,10 +33,12 @@ func (r *run) account() energy {
 func (r *run) close(now float64) {
 	r.closing = r.account()
 	for _, l := range r.lattices {
-		// The lattice has not quite got there: its last step's rates go on.
+		// The lattice has not quite got there: the rates of its last two steps run
+		// straight on.
 		rest := now/l.ds - float64(l.step)
-		r.closing.work += rest * l.latest.work
-		r.closing.lost += rest * l.latest.lost
+		on := rest * (1 + rest) / 2
+		r.closing.work += rest*l.latest.work + on*(l.latest.work-l.earlier.work)
+		r.closing.lost += rest*l.latest.lost + on*(l.latest.lost-l.earlier.lost)
 	}
 	r.end = r.energyAt(now)
 }
@@ -59,6 +61,9 @@ func (r *run) energyAt(t float64) float64 {
 	}
 	for _, c := range r.clusters {
 		e += c.stored(r, t)
+	}
+	for _, g := range r.sags {
+		e += 0.5 * g.last[0] * g.last[0] / g.g
 	}
 	return e
 }
@@ -191,7 +196,8 @@ func (w *line) rates(x, t float64, fields []field) (p, q float64) {
 		q += source - w.gamma*b + per*tilt(v.psi, share)
 	}
 	d := 0.5 * w.gamma * (f - g)
-	return p + d, q - d
+	drift := 0.5 * w.sway.drift()
+	return p + d + drift, q - d + drift
 }
 
 // tilt is the derivative by the point number of a lattice field.

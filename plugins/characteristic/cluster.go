@@ -34,6 +34,9 @@ type joint struct {
 	before  float64 // m, u where the part step began
 	rate    float64 // m/s, mean over the last part step
 	own     *history
+	pulled  *sagging   // nil: nothing of the node's makes sag
+	weighs  float64    // w_j of it
+	pull    float64    // N, by the sag, now
 	weight  float64    // strength of the break being handled that no port brought
 	order   int        // its order
 	pushed  [2]float64 // N, loads over the part step: mean and slope (Legendre)
@@ -271,7 +274,7 @@ func (c *cluster) waves(in []float64) {
 			w += 2 * q.z * q.a
 			f += 2 * q.p.gamma * q.z * q.a
 		}
-		in[i], in[n+i] = w, f
+		in[i], in[n+i] = w, f-j.pull
 	}
 	for _, t := range c.ties {
 		if t.other != nil {
@@ -305,6 +308,13 @@ func (c *cluster) listen(t float64, regular bool, which, side int) {
 		for p := range c.joints[i].ports {
 			q := &c.joints[i].ports[p]
 			q.a = q.incoming(c.step+1, t, regular, which, side)
+			if q.p.sway != nil {
+				q.half = 0.5 * q.p.sway.at(t)
+				q.a += q.half
+			}
+		}
+		if j := &c.joints[i]; j.pulled != nil {
+			j.pull = j.weighs * j.pulled.at(t)
 		}
 	}
 	for i := range c.ties {

@@ -26,6 +26,9 @@
 // and advanced by the exponential of its matrix with quadratic inputs; nodes
 // joined by links (ties, hung masses) share one matrix.
 //
+// The extra tension of a sagging line is alike all along it and moves a piece as a
+// whole: u = f + g + s(t), without a mesh (sag.go).
+//
 // Places of a history where its slope (or, after a jerked support, its value)
 // jumps are known: they start at a kink of the shape, a break of a load, a
 // roll's end, and travel with the waves. Each is carried with its own exact

@@ -27,6 +27,7 @@ type lattice struct {
 	jf, jg   []float64  // J's two parts, over the last step
 	df, dg   []float64  // what f and g gained over the last step
 	squares  [2]strips  // of f_t and g_t
+	shift    float64    // m, what a sagging piece moved as a whole in the last step
 	apart    float64    // m^2, products of sources' waves about cells that only one of them is in
 	jlast    [2]float64 // jf at the start and jg at the end, one step earlier
 	slot     []int      // of each source, the point at its right
@@ -36,6 +37,7 @@ type lattice struct {
 	viscous  float64     // N s/m^2
 	account  energy
 	latest   energy // of the last step
+	earlier  energy // of the one before
 }
 
 func newLattice(p *line, cells int, span, tol float64, places []float64) *lattice {
@@ -159,7 +161,8 @@ func (l *lattice) join(end, j int, src *source, t, fade float64, wave, gained, p
 func (l *lattice) settle(t1 float64) {
 	n := l.n
 	l.before = [2]float64{l.v[0], l.v[n]}
-	l.latest = energy{}
+	l.earlier, l.latest = l.latest, energy{}
+	l.shift = l.p.sway.was(t1, 0) - l.p.sway.was(t1-l.ds, 0)
 	lost := 0.5 * (l.point(0, 0.5*l.ds, t1) + l.point(n, 0.5*l.ds, t1))
 	if l.p.wind == nil && len(l.p.rolls) == 0 {
 		lost += l.points()
@@ -194,7 +197,7 @@ func (l *lattice) points() (lost float64) {
 		phi[j] += half * r[j]
 		psi[j] += half * r[j]
 		u[j] = f[j] + g[j] + v[j]
-		d := v[j] - was
+		d := v[j] - was + l.shift
 		bend := d - dv[j]
 		dv[j] = d
 		a, b := df[j], dg[j]
@@ -235,8 +238,8 @@ func (l *lattice) point(j int, share, t1 float64) (lost float64) {
 	} else {
 		own = 0.5 * h
 	}
-	l.latest.work += own * 2 * p.mass * impulse * (now - l.u[j]) / l.ds
-	d := l.v[j] - was
+	l.latest.work += own * 2 * p.mass * impulse * (now - l.u[j] + l.shift) / l.ds
+	d := l.v[j] - was + l.shift
 	bend := d - l.dv[j]
 	l.u[j], l.dv[j] = now, d
 	return l.df[j]*l.dg[j] + d*(d+2*(l.df[j]+l.dg[j])) + bend*bend/12

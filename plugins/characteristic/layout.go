@@ -71,10 +71,32 @@ func wanted(m *mesh.Mesh, effort int) float64 {
 			want = math.Min(want, 1/(strong*gamma))
 		}
 	}
+	want = math.Min(want, swing(m))
 	if math.IsInf(want, 1) {
 		want = m.Timing.Every
 	}
 	return want
+}
+
+// swing is the longest step that follows a line's sag as it is: a twelfth of the
+// period with which its pieces would swing as bodies on it.
+func swing(m *mesh.Mesh) float64 {
+	step := math.Inf(1)
+	for i := range m.Lines {
+		sag := m.Lines[i].Sag
+		if sag == nil {
+			continue
+		}
+		square := 0.0
+		for k, w := range sag.Pieces {
+			p := &m.Pieces[m.Lines[i].Pieces[k]]
+			square += sag.Stiffness * w * w * p.Length / p.MassPerLength
+		}
+		if square > 0 {
+			step = math.Min(step, 2*math.Pi/math.Sqrt(square)/12)
+		}
+	}
+	return step
 }
 
 // plan chooses the layout of a level, or checks a frozen one.

@@ -20,6 +20,7 @@ type line struct {
 	wind              *wind
 	lattice           *lattice
 	stub              bool
+	sway              *sway // of a sagging line
 }
 
 // decay is what the loss leaves of a wave after time s.
@@ -159,6 +160,7 @@ func (s *source) part(t float64) {
 		return
 	}
 	f, g := s.p.waves(s.x, t, &s.taps, 0, -1)
+	f += s.p.sway.was(t, 0)
 	v := (f + g - s.u) / h
 	force, slope := s.loaded(t, h)
 	s.work += h * force * v
@@ -412,7 +414,8 @@ type port struct {
 	far     reader
 	sources []reader
 	out     *history
-	a       float64 // m, incoming now
+	a       float64 // m, incoming now, and half the piece's sway with it
+	half    float64 // m, half of the piece's sway now
 	bring   float64 // strength of the break that comes in now
 	level   int     // its order
 	before  float64 // m, a where the part step began

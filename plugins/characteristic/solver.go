@@ -35,7 +35,7 @@ func (tracker) Version() string { return version }
 
 // Refuses lists what characteristics cannot represent of the mesh.
 func (tracker) Refuses(m *mesh.Mesh) []string {
-	if beyond := m.Unknown(0); len(beyond) > 0 {
+	if beyond := m.Unknown(mesh.Sagging); len(beyond) > 0 {
 		return beyond
 	}
 	var out []string
@@ -46,6 +46,10 @@ func (tracker) Refuses(m *mesh.Mesh) []string {
 		r := &m.Rolls[i]
 		if r.Speed < 0 {
 			out = append(out, fmt.Sprintf("roll %s runs against the walking order of its line", r.Name))
+			continue
+		}
+		if m.Lines[r.Line].Sag != nil {
+			out = append(out, fmt.Sprintf("roll %s runs along a line with sag", r.Name))
 			continue
 		}
 		for _, k := range m.Lines[r.Line].Pieces {
@@ -216,6 +220,9 @@ func (r *run) advance() {
 				c.advance()
 			}
 		}
+	}
+	for _, g := range r.sags {
+		g.correct()
 	}
 	for _, l := range r.lattices {
 		for l.due(now) {

@@ -86,6 +86,9 @@ func sound(m *mesh.Mesh) error {
 				return fault("line %s lacks a piece", m.Lines[i].Name)
 			}
 		}
+		if err := soundSag(m, i); err != nil {
+			return err
+		}
 	}
 	for i := range m.Channels {
 		for _, s := range m.Channels[i].Spots {
@@ -93,6 +96,24 @@ func sound(m *mesh.Mesh) error {
 				return fault("watch %s looks nowhere", m.Channels[i].Watch)
 			}
 		}
+	}
+	return nil
+}
+
+func soundSag(m *mesh.Mesh, line int) error {
+	sag := m.Lines[line].Sag
+	if sag == nil {
+		return nil
+	}
+	good := atLeast0(sag.Stiffness) && len(sag.Pieces) == len(m.Lines[line].Pieces)
+	for _, w := range sag.Pieces {
+		good = good && usual(w)
+	}
+	for n, w := range sag.Nodes {
+		good = good && n >= 0 && n < len(m.Nodes) && usual(w)
+	}
+	if !good {
+		return &solver.FaultError{Solver: name, What: fmt.Sprintf("the sag of line %s is no number or fits no piece", m.Lines[line].Name)}
 	}
 	return nil
 }

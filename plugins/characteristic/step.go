@@ -33,7 +33,7 @@ func (c *cluster) advance() {
 	for i := range c.joints {
 		j := &c.joints[i]
 		for p := range j.ports {
-			j.ports[p].out.push(j.u - j.ports[p].a)
+			j.ports[p].out.push(j.u - j.ports[p].a - j.ports[p].half)
 		}
 		if j.own != nil {
 			j.own.push(j.u)
@@ -173,7 +173,7 @@ func (c *cluster) scatter(j *joint, t float64, order int, total float64) {
 			}
 		}
 		left, right := j.ports[p].before, q.a
-		b := breakpoint{t: t, left: j.before - left, right: j.u - right, weight: w, order: o}
+		b := breakpoint{t: t, left: j.before - left - q.half, right: j.u - right - q.half, weight: w, order: o}
 		strength := w * math.Pow(c.hrel, float64(o-1))
 		if o > rounded || strength < weak {
 			continue

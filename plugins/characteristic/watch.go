@@ -175,7 +175,7 @@ func (v *view) shift(t float64, d int) float64 {
 		return v.own.at(t, 1, d)
 	}
 	f, g := v.p.waves(v.x, t, &v.taps, d, 1)
-	return f + g
+	return f + g + v.p.sway.was(t, d)
 }
 
 // steep is the slope, or a force by it, at time t:
