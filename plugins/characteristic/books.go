@@ -227,6 +227,7 @@ func (c *cluster) stored(r *run, t float64) float64 {
 	if c.simple {
 		return e
 	}
+	e += c.springs()
 	c.waves(c.in[0])
 	for s, i := range c.massive {
 		v := 0.0

@@ -72,6 +72,9 @@ type cluster struct {
 	simple   bool    // one joint that needs no matrices
 	light    bool    // breaks pass from node to node of it without losing an order
 
+	laws  []resistance
+	kicks matrix
+
 	massive []int // joints with mass
 	x       []float64
 	a, b    matrix
@@ -134,6 +137,9 @@ func (c *cluster) build() bool {
 	c.system(r, k)
 	c.full = propagate(c.a, c.b, c.delta)
 	c.norm = c.a.norm()
+	if len(c.laws) > 0 {
+		c.kicks = c.kick(c.delta)
+	}
 	return true
 }
 
@@ -399,6 +405,9 @@ func (c *cluster) part(t0, t1 float64, regular bool) {
 		copy(c.x, y)
 	}
 	c.shape(c.in[2])
+	if len(c.laws) > 0 {
+		c.obey(t0, h, regular)
+	}
 	c.settle(h)
 }
 

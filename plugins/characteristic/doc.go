@@ -29,6 +29,10 @@
 // The extra tension of a sagging line is alike all along it and moves a piece as a
 // whole: u = f + g + s(t), without a mesh (sag.go).
 //
+// Friction, stops, written laws and ties that go slack act as a force that is
+// constant over each part of a step and found from the displacement without it
+// (law.go).
+//
 // Places of a history where its slope (or, after a jerked support, its value)
 // jumps are known: they start at a kink of the shape, a break of a load, a
 // roll's end, and travel with the waves. Each is carried with its own exact

@@ -56,8 +56,9 @@ func (r *run) makeClusters(lay *Layout, loads map[int][]*load) error {
 	}
 	for _, c := range r.clusters {
 		r.addTies(c)
+		r.makeLaws(c)
 		j := &c.joints[0]
-		light := len(c.joints) == 1 && len(c.ties) == 0 && len(c.brackets) == 0
+		light := len(c.joints) == 1 && len(c.ties) == 0 && len(c.brackets) == 0 && len(c.laws) == 0
 		if j.kind != dynamic || light && j.mass == 0 && j.spring == 0 && j.r > 0 && lossless(j) {
 			c.simple = true
 			c.x = make([]float64, 1)
@@ -230,6 +231,12 @@ func (r *run) addTies(c *cluster) {
 			return j
 		}
 		switch {
+		case l.Slack && inA && inB:
+			c.slacken(l, a, b, nil, true)
+		case l.Slack && inA:
+			c.slacken(l, a, -1, told(l.B), true)
+		case l.Slack && inB:
+			c.slacken(l, b, -1, told(l.A), false)
 		case inA && inB:
 			c.ties = append(c.ties, tie{a: a, b: b, k: l.Spring, c: l.Dashpot})
 			c.light = c.light || l.Dashpot > 0

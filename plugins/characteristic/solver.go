@@ -35,7 +35,7 @@ func (tracker) Version() string { return version }
 
 // Refuses lists what characteristics cannot represent of the mesh.
 func (tracker) Refuses(m *mesh.Mesh) []string {
-	if beyond := m.Unknown(mesh.Sagging); len(beyond) > 0 {
+	if beyond := m.Unknown(mesh.Sagging | mesh.JointLaw | mesh.SlackTie); len(beyond) > 0 {
 		return beyond
 	}
 	var out []string
@@ -156,6 +156,9 @@ func (r *run) order() float64 {
 		loss = math.Max(loss, p.gamma*p.tau)
 	}
 	switch {
+	case r.m.Features()&mesh.NonLinear != 0:
+		// Sticking, slipping and striking fall between steps and are not followed.
+		return 1
 	case r.m.Jump <= 1:
 		return 1.5
 	case loss > lossy || len(r.m.Presses) > 0:

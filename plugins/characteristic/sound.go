@@ -48,6 +48,11 @@ func sound(m *mesh.Mesh) error {
 				return fault("node %s has a bracket that is no number or below 0", n.Name)
 			}
 		}
+		for k := range n.Laws {
+			if !soundLaw(&n.Laws[k]) {
+				return fault("node %s has a law without numbers", n.Name)
+			}
+		}
 		if n.Motion != nil && (n.Motion.Displacement == nil || anyNaN(n.Motion.Breaks)) {
 			return fault("node %s is to move but is not told how", n.Name)
 		}
@@ -98,6 +103,18 @@ func sound(m *mesh.Mesh) error {
 		}
 	}
 	return nil
+}
+
+func soundLaw(l *mesh.Law) bool {
+	switch {
+	case l.Friction != nil:
+		return atLeast0(l.Friction.Force) && atLeast0(l.Friction.Through)
+	case l.Stop != nil:
+		return atLeast0(l.Stop.Gap) && atLeast0(l.Stop.Spring)
+	case l.Written != nil:
+		return len(l.Written.Starts) == len(l.Written.Rates) && !anyNaN(l.Written.Starts)
+	}
+	return false
 }
 
 func soundSag(m *mesh.Mesh, line int) error {
