@@ -5,6 +5,7 @@ import (
 	"math"
 
 	"github.com/tautspan/tautspan/engine/formula"
+	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/scenario"
 )
 
@@ -19,6 +20,8 @@ type Case struct {
 	Rate func(line int, x, t float64) float64
 	// Beyond tells that there is more to it than ideal strings: a solver may refuse.
 	Beyond bool
+	// Adjust, where not nil, adds to the mesh what a scenario cannot say.
+	Adjust func(m *mesh.Mesh)
 }
 
 // maker builds a case from a network without loads and a motion for each line.

@@ -74,7 +74,7 @@ func Cases() []Case {
 		}}
 	})
 	out = append(out, bracketCase(), tunedCase())
-	return append(out, realCases()...)
+	return append(append(out, realCases()...), lawCases()...)
 }
 
 // bracketCase has a dashpot behind a bracket. The dashpot's own end moves as

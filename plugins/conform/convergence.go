@@ -35,6 +35,9 @@ func Measure(ctx context.Context, s solver.Solver, c Case) (Finding, error) {
 	if err != nil {
 		return f, err
 	}
+	if c.Adjust != nil {
+		c.Adjust(m)
+	}
 	if f.Refused = s.Refuses(m); len(f.Refused) > 0 {
 		return f, nil
 	}

@@ -17,6 +17,7 @@ type material struct {
 	rate    float64 // 1/s, viscous loss over mass
 	bending float64 // N m^2; 0: a string
 	eta     float64 // s, internal loss of the bending
+	stretch bool    // its tension grows
 }
 
 // body is an element in coordinates of its own: inner coordinates, which are the
@@ -46,6 +47,7 @@ type body struct {
 	cii     []float64   // [ni*ni] internal loss; nil without
 	cio     [][]float64 // [outer][ni]
 	area    []float64   // [ni+outer] integral of each coordinate's shape, m
+	unitK   []float64   // [(ni+outer)^2] stiffness of a unit tension, 1/m; nil where it is not needed
 }
 
 // newBody builds one. It reports false when the eigenvalue problem fails.
@@ -72,7 +74,28 @@ func newBody(mt material, ref *reference, bm *beam) (*body, bool) {
 	for c, s := range b.shape {
 		b.area[c] = dot(s, area)
 	}
+	if mt.stretch && (mt.rise != 0 || mt.bending > 0) {
+		b.stretching()
+	}
 	return b, true
+}
+
+// stretching works out the stiffness of a unit tension.
+func (b *body) stretching() {
+	one := *b
+	one.tension, one.rise = 1, 0
+	_, unit, _, _ := one.raw()
+	size := len(b.shape)
+	b.unitK = make([]float64, size*size)
+	work := make([]float64, b.n)
+	for i, s := range b.shape {
+		for r := range unit {
+			work[r] = dot(unit[r], s)
+		}
+		for j, o := range b.shape {
+			b.unitK[j*size+i] = dot(work, o)
+		}
+	}
 }
 
 // unit is the factor by which an outer coordinate multiplies its function: slopes are

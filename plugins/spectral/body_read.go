@@ -191,6 +191,41 @@ func (s *system) reactionFramed(op operator, t *tap, node int, attached [][]mesh
 	t.share = s.watched[node]
 }
 
+// steepAtNode sets what extra tension multiplies in the line's force on a node: the
+// node's row of a unit tension's stiffness, as in reactionAt.
+func (s *system) steepAtNode(op operator, t *tap, node int, attached [][]mesh.Attachment) {
+	row := make([]float64, s.size())
+	for _, at := range attached[node] {
+		p := &s.m.Pieces[at.Piece]
+		if !s.stretches(p) {
+			continue
+		}
+		t.line = p.Line
+		list, a := s.byPiece[at.Piece], 0
+		e := &s.elements[list[0]]
+		if at.End {
+			e, a = &s.elements[list[len(list)-1]], 1
+		}
+		b := e.body
+		size := len(b.shape)
+		for d, end := range e.out {
+			v := b.k[a][d] / b.tension
+			if b.unitK != nil {
+				v = b.unitK[(b.ni+a)*size+b.ni+d]
+			}
+			if end >= 0 {
+				row[s.inner+end] -= v
+			} else if end < endFixed {
+				t.steep.pre = append(t.steep.pre, preTerm{moved: -2 - end, c: -v})
+			}
+		}
+		for c := 0; c < b.ni && b.unitK != nil; c++ {
+			row[e.first+c] -= b.unitK[(b.ni+a)*size+c]
+		}
+	}
+	t.steep.runs = compress(op.row(row))
+}
+
 // sagShare subtracts the sag's pull on an element's outer coordinate a from a row.
 func (s *system) sagShare(row []float64, f *functional, e *element, a int) {
 	for _, sg := range s.sags {

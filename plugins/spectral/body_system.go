@@ -7,7 +7,7 @@ import (
 )
 
 // framed are the features with which elements are bodies.
-const framed = mesh.Bending | mesh.VaryingTension | mesh.Sagging | mesh.InternalLoss | mesh.TurningJoint
+const framed = mesh.Bending | mesh.VaryingTension | mesh.Sagging | mesh.InternalLoss | mesh.TurningJoint | mesh.Stretching
 
 // sagging is the sag term of one line: the energy g (w'x + moved'u)^2/2.
 type sagging struct {
@@ -67,7 +67,7 @@ func (s *system) turnAt(piece int, last bool) int {
 func (s *system) dress(e *element, st stock, turn int, final bool) (int, bool) {
 	p := &s.m.Pieces[e.piece]
 	mt := material{degree: e.ref.p, h: e.h, mass: p.MassPerLength, tension: p.Tension + p.TensionRise*e.s0, rise: p.TensionRise,
-		rate: e.rate, bending: p.Bending, eta: p.Internal}
+		rate: e.rate, bending: p.Bending, eta: p.Internal, stretch: s.stretches(p)}
 	if p.Bending == 0 {
 		mt.eta = 0
 	}
@@ -99,6 +99,15 @@ func (s *system) dress(e *element, st stock, turn int, final bool) (int, bool) {
 	}
 	e.out = append(e.out, turn, next)
 	return next, true
+}
+
+func (s *system) stretches(p *mesh.Piece) bool {
+	return within(p.Line, s.m.Lines) && s.m.Lines[p.Line].Stretch != nil
+}
+
+// tightens tells whether a piece's tension moves: by sag or stretch.
+func (s *system) tightens(p *mesh.Piece) bool {
+	return s.stretches(p) || within(p.Line, s.m.Lines) && s.m.Lines[p.Line].Sag != nil
 }
 
 // assembleBody adds an element's outer coordinates.

@@ -58,6 +58,7 @@ type meter struct {
 	held    bool // end rates of the last window serve as the next one's start
 	lastL   rates
 	w0, l0  rates // at the start of the present window
+	laws    *laws // nil: everything is linear
 }
 
 func newMeter(s *system, op operator, ex *excitation) *meter {
@@ -285,6 +286,9 @@ func (m *meter) close(st *state, h float64) {
 // stored is the energy held, prescribed nodes included.
 func (m *meter) stored(st *state, s *snapshot) float64 {
 	e := m.op.stored(st.x, st.v, st.r)
+	if m.laws != nil {
+		e += m.laws.stored(st)
+	}
 	for i, src := range m.k {
 		e += m.sys.movedM[i] * s.vp[i] * s.vp[i] / 2
 		if src != nil {

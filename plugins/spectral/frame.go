@@ -17,6 +17,7 @@ type frame struct {
 	factors map[int][]factor
 	plans   []*framePlan
 	hot     float64
+	degree  int          // of the factors; 0: by the step
 	sum     []complex128 // [size]
 	outs    []complex128 // [ends], banded order
 	real    []float64    // [ends], banded order
@@ -92,7 +93,10 @@ func (f *frame) planFor(h float64) *framePlan {
 			return p
 		}
 	}
-	m := padeDegree(f.hot * h)
+	m := f.degree
+	if m == 0 {
+		m = padeDegree(f.hot * h)
+	}
 	if f.factors[m] == nil {
 		f.factors[m] = pade(m)
 	}

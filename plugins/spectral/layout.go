@@ -19,6 +19,7 @@ type layout struct {
 	hot    float64 // rad/s, highest frequency that the step follows; 0 until known
 	quiet  float64 // s, longest substep without loads
 	loaded float64 // s, longest substep under loads
+	law    float64 // s, longest substep with forces that are not linear
 	modal  bool    // real modes instead of the approximant
 }
 

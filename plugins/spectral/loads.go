@@ -36,9 +36,11 @@ type excitation struct {
 	times  [loadDegree + 1]float64                 // Gauss points on 0 .. 1
 	toTau  [loadDegree + 1][loadDegree + 1]float64 // values there to tau-derivatives at 0
 	total  load                                    // everything
-	forces load                                    // without prescribed motions
+	forces load                                    // without prescribed motions and contacts
+	apart  bool                                    // the two differ
 	values [loadDegree + 1][]float64               // scratch, arrow coordinates
 	up, vp [][loadDegree + 1]float64               // prescribed displacement and velocity, tau-derivatives
+	wide   *wide                                   // see slice
 }
 
 // newExcitation prepares every load of the mesh for an operator.
@@ -63,7 +65,7 @@ func newExcitation(s *system, op operator) *excitation {
 	for i, node := range s.moved {
 		x.addMotion(i, s.m.Nodes[node].Motion)
 	}
-	if len(s.moved) > 0 {
+	if x.apart = len(s.moved) > 0 || s.m.Features()&lawful != 0; x.apart {
 		for j := range x.forces.at {
 			x.forces.at[j] = make([]float64, n)
 		}
@@ -262,7 +264,7 @@ const rollPhase = 1.2
 // addRoll adds a constant force that travels: the basis at the moving point. It
 // bends in time whenever it passes from element to element.
 func (x *excitation) addRoll(r *mesh.Roll) {
-	if r.Force == 0 {
+	if r.Force == 0 && r.Mass == 0 {
 		return
 	}
 	s := x.sys
@@ -284,6 +286,9 @@ func (x *excitation) addRoll(r *mesh.Roll) {
 		x.breaks = append(x.breaks, r.Starting+(end-r.From)/r.Speed)
 	}
 	x.breaks = append(x.breaks, r.Starting)
+	if r.Mass > 0 {
+		return // see ride
+	}
 	x.fields = append(x.fields, func(t float64, add func(*element, []float64)) {
 		at := r.From + r.Speed*(t-r.Starting)
 		if t < r.Starting || t < 0 || at < 0 || at > end {
@@ -367,7 +372,7 @@ func (x *excitation) over(t, h float64) {
 		l.active, l.lo = false, n
 	}
 	reset(&x.total)
-	if len(x.motions) > 0 {
+	if x.apart {
 		reset(&x.forces)
 	}
 	for i := range x.sources {
@@ -382,20 +387,61 @@ func (x *excitation) over(t, h float64) {
 			}
 		}
 		src.add(&x.total, &tau)
-		if !src.moved && len(x.motions) > 0 {
+		if !src.moved && x.apart {
 			src.add(&x.forces, &tau)
 		}
 	}
 	for _, f := range x.fields {
 		x.addField(f, t, h)
 	}
-	if len(x.motions) == 0 {
+	if !x.apart {
 		x.forces = x.total
 		return
 	}
 	for i := range x.motions {
 		x.up[i], _ = x.sample(x.motions[i].Displacement, t, h)
 		x.vp[i], _ = x.sample(x.motions[i].Velocity, t, h)
+	}
+}
+
+// wide is a window of loads from which short steps take their parts.
+type wide struct {
+	window
+	total, forces load
+	up, vp        [][loadDegree + 1]float64
+}
+
+// slice sets the loads of a step from t to t+h as part of a window that is evaluated
+// once for many steps and reaches on for up to reach.
+func (x *excitation) slice(t, h, reach float64) {
+	tiny := 1e-9 * h
+	if x.wide == nil {
+		x.wide = &wide{window: window{-1, -1}}
+	}
+	w := x.wide
+	if t < w.from-tiny || t+h > w.to+tiny {
+		x.over(t, math.Max(h, reach))
+		w.window = window{t, t + math.Max(h, reach)}
+		w.total.copyFrom(&x.total)
+		w.forces.copyFrom(&x.forces)
+		w.up, w.vp = append(w.up[:0], x.up...), append(w.vp[:0], x.vp...)
+	}
+	tau, share := w.tau(t), h/w.length()
+	for _, l := range [2][2]*load{{&w.total, &x.total}, {&w.forces, &x.forces}} {
+		for j := range l[1].at {
+			clear(l[1].at[j]) // contacts have pushed at it
+		}
+		l[0].cut(l[1], tau, share)
+	}
+	for i := range w.up {
+		x.up[i], x.vp[i] = cutPoly(&w.up[i], tau, share), cutPoly(&w.vp[i], tau, share)
+	}
+}
+
+func (l *load) copyFrom(o *load) {
+	l.active, l.lo = o.active, o.lo
+	for j := range l.at {
+		l.at[j] = append(l.at[j][:0], o.at[j]...)
 	}
 }
 
@@ -440,7 +486,7 @@ func (x *excitation) addField(f field, t, h float64) {
 		return
 	}
 	loads := []*load{&x.total}
-	if len(x.motions) > 0 {
+	if x.apart {
 		loads = append(loads, &x.forces)
 	}
 	for i := range x.values {

@@ -4,6 +4,8 @@ import (
 	"context"
 	"math"
 
+	"github.com/tautspan/tautspan/engine/mesh"
+
 	"github.com/tautspan/tautspan/engine/solver"
 )
 
@@ -23,6 +25,9 @@ type walk struct {
 	win      window
 	part     load // the window's load over the present substep
 	pieces   [][loadDegree + 1]float64
+	laws     *laws       // nil: everything is linear
+	sagRows  [][]float64 // of each sagging line, in the operator's coordinates
+	tight    bool        // some line's tension moves and is asked for
 }
 
 // window is a time over which the loads are one polynomial and the energy account is
@@ -44,7 +49,8 @@ func newWalk(j *job, op operator, series [][][]float64) *walk {
 	w.accel = accel
 	w.st = newState(op.size(), len(j.sys.brackets), integrals)
 	moved, watched := len(j.sys.moved), len(j.sys.watched)
-	w.from, w.to = newSnapshot(op.size(), moved, watched), newSnapshot(op.size(), moved, watched)
+	lines := len(j.m.Lines)
+	w.from, w.to = newSnapshot(op.size(), moved, watched, lines), newSnapshot(op.size(), moved, watched, lines)
 	w.b = basis{h: j.base(), z: w.st.z, y: w.st.y, up0: make([]float64, moved), up1: make([]float64, moved),
 		share0: make([]float64, watched), shr1: make([]float64, watched)}
 	w.end = (j.m.Timing.Rows - 1) * j.sub
@@ -53,6 +59,17 @@ func newWalk(j *job, op operator, series [][][]float64) *walk {
 		w.part.at[q] = make([]float64, op.size()+watched)
 	}
 	w.begin()
+	for _, t := range w.rec.taps {
+		w.tight = w.tight || t.line >= 0
+	}
+	for i := range j.sys.sags {
+		w.sagRows = append(w.sagRows, op.row(j.sys.sags[i].w))
+	}
+	w.tight = w.tight || w.accel && j.m.Features()&mesh.Stretching != 0
+	if w.laws = newLaws(j.sys, op, w.st); w.laws != nil {
+		w.laws.begin(w.st)
+		w.meter.laws = w.laws
+	}
 	return w
 }
 
@@ -149,7 +166,9 @@ func (w *walk) march(ctx context.Context, progress func(float64)) error {
 				progress(float64(k) / float64(w.steps))
 			}
 		}
-		w.baseStep(k, h)
+		if err := w.baseStep(k, h); err != nil {
+			return err
+		}
 		w.rec.step(k, &w.b, w.from, w.to)
 		w.from, w.to = w.to, w.from
 		stored := w.meter.stored(w.st, w.from)
@@ -189,7 +208,7 @@ func (w *walk) motionWork(s *snapshot, sign float64) {
 }
 
 // baseStep runs one base step: from break to break, in equal substeps.
-func (w *walk) baseStep(k int, h float64) {
+func (w *walk) baseStep(k int, h float64) error {
 	clearAll(w.st.z, w.st.y, w.b.up0, w.b.up1, w.b.share0, w.b.shr1)
 	t0, t1 := float64(k)*h, float64(k+1)*h
 	t := t0
@@ -205,6 +224,13 @@ func (w *walk) baseStep(k int, h float64) {
 		if w.next < len(w.ex.breaks) && w.ex.breaks[w.next] < t1-tiny {
 			end = w.ex.breaks[w.next]
 			length = end - t
+		}
+		if w.laws != nil {
+			if err := w.lawful(t, t0, length); err != nil {
+				return err
+			}
+			t = end
+			continue
 		}
 		n := 1.0
 		if w.win.to < end-tiny {
@@ -229,6 +255,7 @@ func (w *walk) baseStep(k int, h float64) {
 	if k%32 == 0 {
 		flush(w.st)
 	}
+	return nil
 }
 
 // openWindow opens a window at t, in the time without breaks up to end, of base step
@@ -332,6 +359,7 @@ func (w *walk) look(s *snapshot, t float64) {
 		s.vp[i] = polyAt(&w.ex.vp[i], tau, d, 0)
 		s.ap[i] = polyAt(&w.ex.vp[i], tau, d, 1)
 	}
+	w.tensions(s)
 	n := w.op.size()
 	for i := range s.share {
 		s.share[i] = 0

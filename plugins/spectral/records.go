@@ -5,10 +5,11 @@ type snapshot struct {
 	x, v, a    []float64
 	up, vp, ap []float64 // of the prescribed nodes
 	share      []float64 // distributed loads on watched nodes, N
+	extra      []float64 // [line] tension beyond the one at rest, N: of sag and stretch
 }
 
-func newSnapshot(n, moved, watched int) *snapshot {
-	return &snapshot{x: make([]float64, n), v: make([]float64, n), a: make([]float64, n),
+func newSnapshot(n, moved, watched, lines int) *snapshot {
+	return &snapshot{extra: make([]float64, lines), x: make([]float64, n), v: make([]float64, n), a: make([]float64, n),
 		up: make([]float64, moved), vp: make([]float64, moved), ap: make([]float64, moved), share: make([]float64, watched)}
 }
 
@@ -28,7 +29,18 @@ func (t *tap) sample(s *snapshot) float64 {
 	if t.share >= 0 {
 		v += s.share[t.share]
 	}
-	return v
+	return v + t.tightened(s)
+}
+
+// tightened is what a line's extra tension adds to its tension, or to a force.
+func (t *tap) tightened(s *snapshot) float64 {
+	switch {
+	case t.line < 0:
+		return 0
+	case t.pull:
+		return s.extra[t.line]
+	}
+	return s.extra[t.line] * (t.steep.on(s.x) + t.steep.prescribed(s.up))
 }
 
 // integrals are int q dt and int (t-t0) q dt over a base step between two
@@ -61,6 +73,11 @@ func (t *tap) integrals(b *basis, from, to *snapshot) (i0, i1 float64) {
 		i0 += b.share0[t.share]
 		i1 += b.shr1[t.share]
 	}
+	if t.line >= 0 { // by the trapezoidal rule
+		a, z := t.tightened(from), t.tightened(to)
+		i0 += h * (a + z) / 2
+		i1 += h * h * (a + 2*z) / 6
+	}
 	return i0, i1
 }
 
@@ -72,6 +89,7 @@ func (t *tap) before(s *snapshot, h float64) (i0, i1 float64) {
 	if t.share >= 0 {
 		q += s.share[t.share]
 	}
+	q += t.tightened(s)
 	i0, i1 = q*h, q*h*h/2
 	if t.straight {
 		v := t.f[0].on(s.v) + t.f[0].prescribed(s.vp)

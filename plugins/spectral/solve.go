@@ -2,6 +2,7 @@ package spectral
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 
@@ -173,7 +174,7 @@ func (j *job) choose() {
 	j.rate = rate
 	if lay.hot == 0 {
 		lay.hot = s.top
-		lay.modal = proportional && s.size() <= modalMost && !j.hasFields()
+		lay.modal = proportional && j.mayUseModes()
 		scale := math.Pow(ratio, float64(lay.level))
 		reach := padeReach(padeMax, padeTol) / lay.hot
 		energy := energyPhase / math.Max(j.sys.hung(8*lay.omega), math.Max(lay.omega, 2*math.Pi*j.m.Band))
@@ -191,15 +192,19 @@ func (j *job) choose() {
 		if j.m.Band > 0 {
 			lay.loaded = math.Min(lay.loaded, loadPhase/(2*math.Pi*j.m.Band*scale))
 		}
-	} else if lay.modal && !(proportional && s.size() <= modalMost && !j.hasFields()) {
+	} else if lay.modal && !(proportional && j.mayUseModes()) {
 		lay.modal = false // the damping is no longer proportional
 		lay.quiet = math.Min(lay.quiet, padeReach(padeMax, padeTol)/lay.hot)
 		lay.loaded = math.Min(lay.loaded, lay.quiet)
 	}
+	j.lawStep()
 	base := j.base()
 	parts := math.Ceil(base/lay.loaded - 1e-9)
 	if len(j.m.Pushes)+len(j.m.Presses)+len(j.m.Rolls)+len(s.moved) == 0 {
 		parts = math.Ceil(base/lay.quiet - 1e-9)
+	}
+	if lay.law > 0 {
+		parts = math.Ceil(base/lay.law - 1e-9)
 	}
 	parts = math.Max(1, parts)
 	steps := parts * float64(j.steps)
@@ -222,8 +227,34 @@ func (j *job) choose() {
 	j.plan.Work = int64(math.Min(work, 9e18))
 }
 
+// lawStep chooses the step of forces that are not linear, unless it is frozen: a share
+// of the highest wave that the level resolves, and of the highest vibration of an
+// element's tension where that grows.
+func (j *job) lawStep() {
+	features := j.m.Features()
+	if features&lawful == 0 || j.lay.law > 0 {
+		return
+	}
+	j.lay.law = math.Min(j.lay.loaded, lawPhase/(j.lay.omega*math.Pow(ratio, float64(j.lay.level))))
+	if features&mesh.Stretching != 0 {
+		j.lay.law = math.Min(j.lay.law, stretchPhase/j.sys.topOfTension())
+	}
+}
+
+// lawPhase is chosen: the forces of contacts are constant over a step.
+const lawPhase = 0.25
+
+// stretchPhase is chosen: the highest vibration of an element's tension turns by so much
+// a step, of which the stretch may be that tension's 1/stretchPhase^2 (see steady).
+const stretchPhase = 1.6
+
 // base is the length of a base step, s.
 func (j *job) base() float64 { return j.m.Timing.Every / float64(j.sub) }
+
+// mayUseModes tells whether real modes can carry the network if its damping allows.
+func (j *job) mayUseModes() bool {
+	return j.sys.size() <= modalMost && !j.hasFields() && j.m.Features()&mesh.Stretching == 0
+}
 
 // hasFields tells whether a load changes its pattern with time: its projection
 // on modes would cost more than the modes save.
@@ -253,6 +284,37 @@ func (j *job) lossy() bool {
 		}
 	}
 	return false
+}
+
+// run goes through the time, again with half the step where the tension of a line
+// grows more than the step allows.
+func (j *job) run(ctx context.Context, op operator, res *solver.Result, progress func(float64)) (*walk, error) {
+	const tries = 8
+	for i := 0; ; i++ {
+		w := newWalk(j, op, res.Series)
+		err := w.march(ctx, progress)
+		if i < tries && errors.Is(err, errCoarse) {
+			j.lay.law /= 2
+			res.Series = solver.NewSeries(j.m)
+			continue
+		}
+		if errors.Is(err, errCoarse) {
+			err = fault("the tension grows to many times its start")
+		}
+		return w, err
+	}
+}
+
+// claim is the order to expect and what is to be said about it.
+func (j *job) claim(notes []string) (float64, []string) {
+	f := j.m.Features()
+	switch {
+	case f&(mesh.JointLaw|mesh.SpreadLaw|mesh.SlackTie) != 0:
+		return 1, append(notes, "Friction, stops, slack ties and laws send kinks through the elements, which resolve them slowly: records are good to about a thousandth of their size at the usual levels.")
+	case f&mesh.RollingSprung != 0:
+		return 1, append(notes, "A load that rolls with a mass of its own bends the line under it, which the elements resolve slowly: records are good to about a thousandth of their size at the usual levels.")
+	}
+	return 0, notes
 }
 
 // Solve computes the records of a mesh.
@@ -287,8 +349,9 @@ func (Solver) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, progr
 	if j.sys.above && !j.lay.modal {
 		res.Notes = append(res.Notes, "A very short stretch or a very stiff attachment has vibrations far above the line's; they are damped by the time step instead of followed.")
 	}
-	w := newWalk(j, op, res.Series)
-	if err := w.march(ctx, progress); err != nil {
+	res.Order, res.Notes = j.claim(res.Notes)
+	w, err := j.run(ctx, op, res, progress)
+	if err != nil {
 		return nil, err
 	}
 	res.Energy = w.meter.acct

@@ -256,7 +256,7 @@ func (s *system) attach() {
 	}
 	for _, l := range s.m.Links {
 		a, b := s.nodeEnd[l.A], s.nodeEnd[l.B]
-		if l.A == l.B {
+		if l.A == l.B || l.Slack {
 			continue
 		}
 		s.couple(a, a, l.Spring, l.Dashpot)

@@ -77,7 +77,12 @@ type tap struct {
 	means    int
 	straight bool // before t = 0 it goes on with its start velocity
 	stride   int  // rows of the time grid per row of the record
-	out      []float64
+	// line, where not -1, is the one whose extra tension counts in: itself (pull), or
+	// times steep.
+	line  int
+	pull  bool
+	steep functional
+	out   []float64
 }
 
 // reaction tells whether a channel's spot records the line's force on a fitting.
@@ -106,7 +111,7 @@ func newTaps(s *system, op operator, series [][][]float64) []*tap {
 
 // tapFor translates a quantity at a spot.
 func (s *system) tapFor(op operator, ch *mesh.Channel, sp mesh.Spot, attached [][]mesh.Attachment) *tap {
-	t := &tap{share: -1}
+	t := &tap{share: -1, line: -1}
 	switch ch.Quantity {
 	case scenario.Displacement:
 		t.f[0], t.straight = s.valueAt(op, sp, attached), true
@@ -119,14 +124,22 @@ func (s *system) tapFor(op operator, ch *mesh.Channel, sp mesh.Spot, attached []
 	case scenario.Force:
 		if reaction(s.m, ch, sp) {
 			s.reactionAt(op, t, sp.Node, attached)
+			s.steepAtNode(op, t, sp.Node, attached)
 			break
 		}
 		t.f[0], _ = s.slopeAt(op, sp, attached, true)
 		s.inLoss(op, t, sp, attached, 3)
+		if e, x := s.elementAt(sp, attached); e != nil && s.stretches(&s.m.Pieces[e.piece]) {
+			t.line = s.m.Pieces[e.piece].Line
+			t.steep = s.nodal(op, e, e.values(make([]float64, e.ref.p+1), x, 1), 1)
+		}
 	case scenario.Moment:
 		s.momentAt(op, t, sp, attached)
 	case scenario.Tension:
 		_, t.fixed = s.slopeAt(op, sp, attached, false)
+		if e, _ := s.elementAt(sp, attached); e != nil && s.tightens(&s.m.Pieces[e.piece]) {
+			t.line, t.pull = s.m.Pieces[e.piece].Line, true
+		}
 	}
 	return t
 }

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 
+	"github.com/tautspan/tautspan/engine/formula"
 	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/solver"
 )
@@ -33,6 +34,11 @@ func validate(m *mesh.Mesh) error {
 		}
 		if !finite(n.Rotary, n.Inertia) || n.Rotary < 0 || n.Inertia < 0 {
 			return fault("node %q: %g N m/rad against turning, inertia %g kg m^2", n.Name, n.Rotary, n.Inertia)
+		}
+		for k := range n.Laws {
+			if err := validateLaw(&n.Laws[k], n.Name); err != nil {
+				return err
+			}
 		}
 		for _, b := range n.Brackets {
 			if !finite(b.K, b.C, b.Start) || b.K < 0 || b.C < 0 {
@@ -69,12 +75,51 @@ func validatePiece(m *mesh.Mesh, i int) error {
 	if !finite(end, p.Bending, p.Internal) || !(end > 0) || p.Bending < 0 || p.Internal < 0 {
 		return fault("piece %d: %g N at its end, bending %g N m^2, internal loss %g s", i, end, p.Bending, p.Internal)
 	}
+	if p.Law != nil {
+		if err := validateLaw(p.Law, fmt.Sprintf("piece %d", i)); err != nil {
+			return err
+		}
+	}
 	last := 0.0
 	for _, k := range p.Marks {
 		if !(k.At >= last) || !(k.At <= p.Length) {
 			return fault("piece %d: mark at %g m", i, k.At)
 		}
 		last = k.At
+	}
+	return nil
+}
+
+// validateLaw checks the numbers of a law and what its formulas read.
+func validateLaw(l *mesh.Law, where string) error {
+	kinds := 0
+	if f := l.Friction; f != nil {
+		kinds++
+		if !finite(f.Force, f.Through) || f.Force < 0 || f.Through < 0 {
+			return fault("%s: friction %g, through %g", where, f.Force, f.Through)
+		}
+	}
+	if s := l.Stop; s != nil {
+		kinds++
+		if !finite(s.Gap, s.Spring) || s.Spring < 0 {
+			return fault("%s: stop at %g m, %g N/m", where, s.Gap, s.Spring)
+		}
+	}
+	if w := l.Written; w != nil {
+		kinds++
+		if len(w.Rates) != len(w.Starts) || !finite(w.Starts...) {
+			return fault("%s: law %q has %d states and %d rates", where, l.Name, len(w.Starts), len(w.Rates))
+		}
+		for _, p := range append([]formula.Program{w.Force}, w.Rates...) {
+			for _, in := range p.Code {
+				if in.Op == formula.OpLet || in.Op == formula.OpArg && in.Index >= mesh.ArgState+len(w.Starts) {
+					return fault("%s: law %q reads what it has not", where, l.Name)
+				}
+			}
+		}
+	}
+	if kinds != 1 {
+		return fault("%s: law %q is %d laws", where, l.Name, kinds)
 	}
 	return nil
 }
@@ -103,7 +148,8 @@ func validateActions(m *mesh.Mesh) error {
 		}
 	}
 	for _, r := range m.Rolls {
-		if !within(r.Line, m.Lines) || len(m.Lines[r.Line].Pieces) == 0 || !finite(r.Speed, r.Force, r.From, r.Starting) {
+		if !within(r.Line, m.Lines) || len(m.Lines[r.Line].Pieces) == 0 || !finite(r.Speed, r.Force, r.From, r.Starting, r.Mass, r.Spring, r.Dashpot) ||
+			r.Mass < 0 || r.Spring < 0 || r.Dashpot < 0 {
 			return fault("roll %q", r.Name)
 		}
 	}
@@ -112,6 +158,9 @@ func validateActions(m *mesh.Mesh) error {
 			if !within(p, m.Pieces) {
 				return fault("line %q has piece %d", l.Name, p)
 			}
+		}
+		if l.Stretch != nil && (!finite(l.Stretch.Stiffness) || l.Stretch.Stiffness < 0) {
+			return fault("line %q: stretch stiffness %g N/m", l.Name, l.Stretch.Stiffness)
 		}
 		if l.Sag != nil && (len(l.Sag.Pieces) != len(l.Pieces) || !finite(l.Sag.Stiffness) || !finite(l.Sag.Pieces...) || l.Sag.Stiffness < 0) {
 			return fault("line %q: sag", l.Name)
@@ -129,10 +178,15 @@ func validateActions(m *mesh.Mesh) error {
 
 // refuses lists what has no equation of motion here.
 func refuses(m *mesh.Mesh) []string {
-	if beyond := m.Unknown(framed); len(beyond) > 0 {
+	if beyond := m.Unknown(framed | lawful); len(beyond) > 0 {
 		return beyond
 	}
 	var out []string
+	for _, r := range m.Rolls {
+		if r.Mass > 0 && r.Spring == 0 {
+			out = append(out, fmt.Sprintf("does not represent a rolling mass without a spring under it (%s)", r.Name))
+		}
+	}
 	attached := m.Attached()
 	for i := range m.Nodes {
 		n := &m.Nodes[i]
