@@ -9,6 +9,10 @@ import (
 // framed are the features with which elements are bodies.
 const framed = mesh.Bending | mesh.VaryingTension | mesh.Sagging | mesh.InternalLoss | mesh.TurningJoint | mesh.Stretching
 
+// framing tells whether a mesh is solved as a frame: for its features, or for its size,
+// because a frame's outer system is banded.
+func framing(m *mesh.Mesh) bool { return m.Features()&framed != 0 || len(m.Nodes) > denseMost }
+
 // sagging is the sag term of one line: the energy g (w'x + moved'u)^2/2.
 type sagging struct {
 	line  int

@@ -32,15 +32,18 @@ func (Solver) Name() string { return name }
 // Version changes whenever answers may change.
 func (Solver) Version() string { return version }
 
-// mostNodes is where the dense system of the element ends would take minutes;
-// chosen at about a second for its factors.
-const mostNodes = 1200
+// denseMost is from how many nodes on the element ends' system is banded: the dense
+// one's factors take the cube. Chosen at a tenth of a second.
+const denseMost = 300
+
+// mostNodes bounds what is assembled at all.
+const mostNodes = 100000
 
 // Refuses lists what the solver cannot represent: of a network without laws, only a
 // free mass of no mass.
 func (Solver) Refuses(m *mesh.Mesh) []string {
 	if len(m.Nodes) > mostNodes {
-		return []string{fmt.Sprintf("joins its elements by a dense system and takes %d nodes at most; there are %d", mostNodes, len(m.Nodes))}
+		return []string{fmt.Sprintf("takes %d nodes at most; there are %d", mostNodes, len(m.Nodes))}
 	}
 	for i := range m.Pieces {
 		if !within(m.Pieces[i].From, m.Nodes) || !within(m.Pieces[i].To, m.Nodes) {
@@ -152,7 +155,12 @@ func (j *job) size() error {
 	}
 	loads := float64(len(j.m.Pushes) + len(j.m.Presses) + 2*len(j.m.Nodes) + 30)
 	poles := float64((padeMax + 1) / 2 * keptPlans)
-	words := rec + refs + n*(loads+40) + poles*(2*float64(inner)+2*float64(ends)*float64(ends))
+	words := rec + refs + n*(loads+40)
+	if framing(j.m) {
+		words += j.bodies(poles)
+	} else {
+		words += poles * (2*float64(inner) + 2*float64(ends)*float64(ends))
+	}
 	if n <= modalMost {
 		words += 4*n*n + spots*n // sparse rows else
 	} else {
@@ -165,6 +173,29 @@ func (j *job) size() error {
 	j.plan.Cells = int(inner + ends)
 	j.plan.Bytes = int64(8 * words)
 	return nil
+}
+
+// bodies is the memory of a frame's elements, words: their shapes, losses and, for
+// each pole, inverses; and of the banded systems.
+func (j *job) bodies(poles float64) float64 {
+	words := 0.0
+	for i, ss := range j.lay.pieces {
+		p := &j.m.Pieces[i]
+		for _, s := range ss {
+			d := float64(s.degree + 1)
+			words += 4 * d * d // elements of a stretch share a body where tension does not rise
+			each := 20 * d
+			if p.Internal > 0 && p.Bending > 0 {
+				each += 2 * d * d
+			}
+			if p.TensionRise != 0 {
+				words += 4 * d * d * float64(s.elements)
+				each *= float64(s.elements)
+			}
+			words += poles * (each + 60*float64(s.elements))
+		}
+	}
+	return words
 }
 
 // choose settles method and substeps, unless they are frozen, and what they cost.
@@ -222,7 +253,12 @@ func (j *job) choose() {
 		work += 12 * n * n * n
 	} else {
 		m := padeDegree(lay.hot * base / parts)
-		work = steps * (n*10*float64(m+1)/2 + 4*float64(s.ends*s.ends)*float64(m+1)/2)
+		ends := float64(s.ends)
+		if s.frame {
+			work = steps * n * 60 * float64(m+1) / 2
+		} else {
+			work = steps * (n*10*float64(m+1)/2 + 4*ends*ends*float64(m+1)/2)
+		}
 	}
 	j.plan.Work = int64(math.Min(work, 9e18))
 }

@@ -101,7 +101,7 @@ func newSystem(m *mesh.Mesh, lay *layout) (*system, bool) {
 			s.ends++
 		}
 	}
-	s.frame = m.Features()&framed != 0
+	s.frame = framing(m)
 	s.turnable()
 	if !s.place(lay) {
 		return nil, false
