@@ -6,8 +6,8 @@ import (
 	"github.com/tautspan/tautspan/engine/numeric"
 )
 
-// lone is a single span: one uniform piece with bending, held across at both
-// ends, each of which turns against a rotary spring, freely (0) or not at all
+// lone is a single span: one uniform piece, held across at both ends, each of
+// which turns, where it bends, against a rotary spring, freely (0) or not at all
 // (infinite). Nothing is damped. It has the closed frequency equation below,
 // which is fifty times faster than the matrix; a fit asks for thousands.
 type lone struct {
@@ -17,11 +17,11 @@ type lone struct {
 
 // lone tells whether the group is a single span.
 func (w *network) lone() (*lone, bool) {
-	if w.sys == nil || w.damped || len(w.elements) != 1 || len(w.sys.sagging) > 0 || len(w.nodes) > 0 || len(w.links) > 0 {
+	if w.damped || len(w.elements) != 1 || w.sys != nil && len(w.sys.sagging) > 0 || len(w.nodes) > 0 || len(w.links) > 0 {
 		return nil, false
 	}
 	p := &w.m.Pieces[w.elements[0].piece]
-	if p.Bending <= 0 || p.TensionRise != 0 || p.Tension < 0 || p.TensionLoss != 0 || p.BendingLoss != 0 || p.Law != nil {
+	if p.Bending < 0 || p.TensionRise != 0 || p.Tension < 0 || p.Bending == 0 && p.Tension == 0 || p.TensionLoss != 0 || p.BendingLoss != 0 || p.Law != nil {
 		return nil, false
 	}
 	out := &lone{t: p.Tension, m: p.MassPerLength, ei: p.Bending, len: p.Length}
@@ -80,7 +80,7 @@ func (l *lone) delta(q float64) float64 {
 // Rayleigh's theorem on added constraints exactly one lies between.
 func (l *lone) root(n int) float64 {
 	lo, hi := float64(n)*math.Pi/l.len, float64(n+1)*math.Pi/l.len
-	if l.turn[0] == 0 && l.turn[1] == 0 {
+	if l.ei == 0 || l.turn[0] == 0 && l.turn[1] == 0 {
 		return lo
 	}
 	flo, fhi := l.delta(lo), l.delta(hi)

@@ -28,7 +28,9 @@ func TestLoneSpanAgainstTheMatrix(t *testing.T) {
 		b.piece(a, b.node(end()), 2+20*r.Float64(), 1+30*r.Float64(), math.Pow(10, 3+3*r.Float64()), 0)
 		xi := math.Pow(10, 0.3+2.5*r.Float64())
 		p := &b.m.Pieces[0]
-		p.Bending = p.Tension * p.Length * p.Length / (xi * xi)
+		if p.Bending = p.Tension * p.Length * p.Length / (xi * xi); trial%10 == 0 {
+			p.Bending = 0 // a string
+		}
 		w := split(&b.m)[0]
 		l, ok := w.lone()
 		if !ok {
