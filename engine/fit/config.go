@@ -249,6 +249,21 @@ func (c *config) lossy() bool {
 	return false
 }
 
+// rises tells whether the tension rises along a segment that bends.
+func (c *config) rises() bool {
+	for i := range c.part.Model.Lines {
+		for k := range c.part.Model.Lines[i].Segments {
+			s := &c.part.Model.Lines[i].Segments[k]
+			rise, flat := s.TensionRise.IsConst()
+			stiff, limp := s.Bending.IsConst()
+			if !(flat && rise == 0) && !(limp && stiff == 0) {
+				return true
+			}
+		}
+	}
+	return false
+}
+
 // strip takes every loss away.
 func strip(net *scenario.Network) {
 	for i := range net.Lines {

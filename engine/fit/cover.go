@@ -218,8 +218,8 @@ func (c *cover) atBound(i int) bool {
 	return c.s.x[i] <= lo+slack || c.s.x[i] >= hi-slack
 }
 
-// interval is the 95 % interval of a sought let, never beyond its range. On lines
-// with losses, whose model is slow, the curvature has to do.
+// interval is the 95 % interval of a sought let, never beyond its range. Where
+// the model is slow the curvature has to do.
 func (c *cover) interval(i int) (low, high float64) {
 	u := &c.p.unknowns[i]
 	lo, hi := u.bounds()
@@ -228,7 +228,7 @@ func (c *cover) interval(i int) (low, high float64) {
 	switch {
 	case c.undecided(i):
 		a, b = lo, hi
-	case c.atBound(i) || !c.p.lossy() && (c.sd(i) > profiled || a < lo || b > hi):
+	case c.atBound(i) || !c.p.slow() && (c.sd(i) > profiled || a < lo || b > hi):
 		a, b = c.profile(i, -1), c.profile(i, 1)
 	}
 	return u.value(math.Max(a, lo)), u.value(math.Min(b, hi))

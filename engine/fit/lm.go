@@ -30,7 +30,7 @@ func (p *Problem) residuals(x []float64, q []prediction, modes pairing, widen fl
 // left out.
 func (p *Problem) residual(i int, x []float64, q []prediction, mode int, widen float64) float64 {
 	o := &p.obs[i]
-	if p.rough && o.kind == scenario.DecayReading {
+	if p.detail == rough && o.kind == scenario.DecayReading {
 		return 0
 	}
 	return (o.value - o.shift(x) - q[o.config].of(o, mode)) / math.Hypot(o.u, widen*o.value)
@@ -66,13 +66,17 @@ const difference = 1e-5
 
 // jacobian is the matrix of slopes of the residuals, one column an unknown.
 // Only the configs that an unknown moves are evaluated again. nil where the
-// model has no value nearby. Columns of fixed unknowns are left at 0.
+// model has no value nearby. The slopes are those of the level model. Columns of fixed unknowns are left at 0.
 func (p *Problem) jacobian(x []float64, q []prediction, modes pairing, widen, step float64, fixed []bool) *mat.Dense {
 	rows := len(p.residuals(x, q, modes, widen))
 	if rows == 0 {
 		return nil
 	}
 	j := mat.NewDense(rows, len(x), nil)
+	if p.detail == exact { // what a rise of tension changes of a stiff line's slopes is small, and slow
+		p.detail = level
+		defer func() { p.detail = exact }()
+	}
 	moved := append([]float64(nil), x...)
 	for k := range x {
 		if fixed != nil && fixed[k] {
@@ -106,7 +110,7 @@ func (p *Problem) again(x []float64, k int, q []prediction) []prediction {
 			out[c] = prediction{err: err}
 			continue
 		}
-		out[c] = p.configs[c].predict(values, p.rough)
+		out[c] = p.configs[c].predict(values, p.detail)
 	}
 	return out
 }

@@ -22,8 +22,31 @@ type prediction struct {
 // mostModes bounds the vibrations of one evaluation.
 const mostModes = 120
 
-// predict evaluates the config at values of all lets; rough leaves losses out.
-func (c *config) predict(values []float64, rough bool) prediction {
+// detail is how much of a line the model takes in.
+type detail uint8
+
+// The exact model; one in which the tension of a segment that bends does not rise
+// along it (which is slow to compute), for slopes; and one without losses as well,
+// while a search is far from its end.
+const (
+	exact detail = iota
+	level
+	rough
+)
+
+// flatten gives segments that bend their mean tension all along.
+func flatten(net *scenario.Network) {
+	for i := range net.Lines {
+		for k := range net.Lines[i].Segments {
+			if s := &net.Lines[i].Segments[k]; s.Bending > 0 && s.TensionRise != 0 {
+				s.Tension, s.TensionRise = s.Tension+s.TensionRise*s.Length/2, 0
+			}
+		}
+	}
+}
+
+// predict evaluates the config at values of all lets.
+func (c *config) predict(values []float64, d detail) prediction {
 	net, err := c.part.Bind(values)
 	if err != nil {
 		return prediction{err: err}
@@ -43,8 +66,11 @@ func (c *config) predict(values []float64, rough bool) prediction {
 	if c.modes == 0 && c.below == 0 {
 		return out
 	}
+	if d != exact {
+		flatten(net)
+	}
 	switch {
-	case rough:
+	case d == rough:
 		strip(net)
 	case !c.decays:
 		c.lighten(net)
@@ -158,7 +184,7 @@ func (p *Problem) predict(x []float64) []prediction {
 			out[i].err = err
 			continue
 		}
-		out[i] = c.predict(values, p.rough)
+		out[i] = c.predict(values, p.detail)
 	}
 	return out
 }

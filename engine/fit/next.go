@@ -202,7 +202,7 @@ func (p *Problem) furtherModes(s *Solution, c int, share float64) []candidate {
 		}
 	}
 	cfg.modes, cfg.below = min(top+beyond, mostModes), 0
-	at := cfg.predict(s.Values, false)
+	at := cfg.predict(s.Values, level)
 	if at.err != nil {
 		return nil
 	}
@@ -250,7 +250,7 @@ func (p *Problem) slopesOf(s *Solution, cfg *config, of func(*prediction) []floa
 			if err != nil {
 				return nil
 			}
-			q := cfg.predict(values, false)
+			q := cfg.predict(values, level)
 			if q.err != nil {
 				return nil
 			}

@@ -65,7 +65,7 @@ type Problem struct {
 	configs  []*config
 	slack    float64 // how many times worse than they say readings are taken to be while they are paired
 	leading  bool    // starts are being led to their minima: steps need not be fine
-	rough    bool    // predict without losses, while a search is far from its end
+	detail   detail  // of the model
 	mayDrop  []bool  // by observation: a numbered frequency that may be a stranger
 }
 

@@ -87,7 +87,7 @@ func (p *Problem) Solve(ctx context.Context) (*Result, error) {
 		return nil, err
 	}
 	if len(found) == 0 {
-		return nil, &Error{Code: "no-solution", Path: "fit", What: "no values of the sought lets within their ranges give the lines a model that can be held against the readings"}
+		return nil, &Error{Code: "no-solution", Path: "fit", What: "no values of the sought lets within their ranges explain any of the readings"}
 	}
 	res := &Result{}
 	for i := range found {

@@ -26,7 +26,10 @@ type solution struct {
 // lines with losses, with the model without them; then the best of these with
 // everything.
 func (p *Problem) search(ctx context.Context) ([]solution, error) {
-	p.rough, p.leading = p.lossy(), true
+	p.leading = true
+	if p.slow() {
+		p.detail = rough
+	}
 	var led []solution
 	best := math.Inf(1)
 	for _, s := range p.starts() {
@@ -38,7 +41,7 @@ func (p *Problem) search(ctx context.Context) ([]solution, error) {
 			led = p.keep(led, sol)
 		}
 	}
-	p.rough, p.leading = false, false
+	p.detail, p.leading = exact, false
 	sort.SliceStable(led, func(a, b int) bool { return led[a].cost < led[b].cost })
 	var found []solution
 	for i := range led {
@@ -119,10 +122,11 @@ func (p *Problem) keep(list []solution, s solution) []solution {
 	return append(list, s)
 }
 
-// lossy tells whether any config's frequencies wait for complex roots.
-func (p *Problem) lossy() bool {
+// slow tells whether any config's frequencies wait for complex roots, or for
+// series in a tension that rises along a segment that bends.
+func (p *Problem) slow() bool {
 	for _, c := range p.configs {
-		if c.lossy() {
+		if c.lossy() || c.rises() {
 			return true
 		}
 	}
@@ -163,8 +167,8 @@ func (p *Problem) settle(x []float64) (solution, bool) {
 		s.modes = modes
 		x, q, s.sum = p.descend(x, q, modes, 0, mostSteps, nil)
 	}
-	if math.IsInf(s.sum, 1) {
-		return solution{}, false
+	if math.IsInf(s.sum, 1) || !slices.ContainsFunc(s.modes, func(m int) bool { return m != 0 }) {
+		return solution{}, false // without a value, or all readings strangers
 	}
 	s.x, s.q = x, q
 	s.cost = p.total(s.sum, s.modes)

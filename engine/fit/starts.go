@@ -259,7 +259,7 @@ func (p *Problem) screen(x []float64, group int) float64 {
 	q := make([]prediction, len(p.configs))
 	for i, c := range p.configs {
 		if c.group == group {
-			if q[i] = c.predict(values, p.rough); q[i].err != nil {
+			if q[i] = c.predict(values, p.detail); q[i].err != nil {
 				return math.Inf(1)
 			}
 		}
