@@ -25,7 +25,7 @@ type Options struct {
 }
 
 // builtinSolvers are the solvers that a run may name without quotes.
-var builtinSolvers = []string{"differences", "spectral", "characteristic"}
+var builtinSolvers = []string{"differences", "spectral", "characteristic", "transform"}
 
 // Source is one file that was read.
 type Source struct {

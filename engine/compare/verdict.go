@@ -263,7 +263,7 @@ func (r *runner) energyLeft() Observable {
 	}
 	for _, v := range r.voices {
 		value, bar := math.NaN(), Bar{Order: math.NaN(), Bound: math.NaN()}
-		if v.usable() {
+		if v.usable() && !v.top().energy.Unkept {
 			n := len(v.runs)
 			a, b, c := left(&v.runs[n-3]), left(&v.runs[n-2]), left(&v.runs[n-1])
 			order, ratio := v.theory()

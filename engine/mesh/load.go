@@ -14,6 +14,7 @@ func (b *builder) loads() error {
 		return err
 	}
 	for i, p := range b.net.Plucks {
+		b.m.Drawn = append(b.m.Drawn, Drawn{At: b.spot(p.At), Force: b.rest.Plucks[i].Force})
 		if p.Until <= 0 {
 			continue
 		}

@@ -11,6 +11,7 @@ type Mesh struct {
 	Nodes    []Node
 	Pieces   []Piece
 	Links    []Link
+	Drawn    []Drawn
 	Pushes   []Push
 	Presses  []Press
 	Rolls    []Roll
@@ -109,7 +110,10 @@ type Piece struct {
 	Law         *Law // per length; nil: none
 	// Start is the displacement at t = 0 and StartRate the velocity, as
 	// functions of the distance from the piece's start, m; nil means 0.
-	Start     func(s float64) float64
+	Start func(s float64) float64
+	// Given is the part of Start that is no static shape: that of `start`
+	// statements; nil means 0.
+	Given     func(s float64) float64
 	StartRate func(s float64) float64
 	Marks     []Mark // sorted by At
 }
@@ -163,6 +167,14 @@ type Link struct {
 	// only while u_A > u_B, spring and dashpot alike, and its force on A is never
 	// upward.
 	Slack bool
+}
+
+// Drawn is a force with which a pluck holds the line in the static part of the
+// start shapes; all of them end at t = 0 (a pluck that is held on is a Push from
+// then).
+type Drawn struct {
+	At    Spot
+	Force float64 // N
 }
 
 // Push is a point force.

@@ -10,8 +10,9 @@ import (
 func (b *builder) starts() {
 	for i := range b.m.Pieces {
 		p := &b.m.Pieces[i]
-		p.Start = b.profile(p, false)
-		p.StartRate = b.profile(p, true)
+		p.Start = b.profile(p, false, true)
+		p.Given = b.profile(p, false, false)
+		p.StartRate = b.profile(p, true, false)
 	}
 	for i, pieces := range b.m.Attached() {
 		n := &b.m.Nodes[i]
@@ -58,8 +59,8 @@ func value(f func(float64) float64, at float64) float64 {
 }
 
 // profile is the start displacement or velocity of a piece as a function of the
-// distance from its start, nil where it is 0.
-func (b *builder) profile(p *Piece, velocity bool) func(float64) float64 {
+// distance from its start, with the static shape or without, nil where it is 0.
+func (b *builder) profile(p *Piece, velocity, static bool) func(float64) float64 {
 	type shape struct {
 		program formula.Program
 		origin  float64 // m, the piece's start on the shape's own x axis
@@ -74,7 +75,7 @@ func (b *builder) profile(p *Piece, velocity bool) func(float64) float64 {
 			shapes = append(shapes, shape{s.Shape, p.S0})
 		}
 	}
-	drawn := !velocity && !b.rest.Flat()
+	drawn := static && !b.rest.Flat()
 	if !drawn && len(shapes) == 0 {
 		return nil
 	}

@@ -72,6 +72,9 @@ type Energy struct {
 	Work  float64 // done by loads and moving supports
 	Lost  float64 // taken by dashpots, losses and absorbing ends
 	Most  float64 // largest stored at any time
+	// Unkept tells that the solver keeps no account: only Start is meant, and Most
+	// is no less than it.
+	Unkept bool
 }
 
 // Unaccounted is the account's gap, J.

@@ -62,9 +62,11 @@ func (r *runner) voices() {
 				row.Notes = append(row.Notes, "not refined further: "+v.Exhausted)
 			}
 			e := v.Energy
-			r.doc.Energy = append(r.doc.Energy, EnergyRow{
-				Solver: v.Name, Start: finite(e.Start), Work: finite(e.Work), End: finite(e.End), Lost: finite(e.Lost), Unaccounted: finite(e.Unaccounted()),
-			})
+			row := EnergyRow{Solver: v.Name, Start: finite(e.Start)}
+			if !e.Unkept {
+				row.Work, row.End, row.Lost, row.Unaccounted = finite(e.Work), finite(e.End), finite(e.Lost), finite(e.Unaccounted())
+			}
+			r.doc.Energy = append(r.doc.Energy, row)
 		}
 		r.doc.Solvers = append(r.doc.Solvers, row)
 	}

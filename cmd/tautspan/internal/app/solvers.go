@@ -15,12 +15,13 @@ import (
 	"github.com/tautspan/tautspan/plugins/differences"
 	"github.com/tautspan/tautspan/plugins/host"
 	"github.com/tautspan/tautspan/plugins/spectral"
+	"github.com/tautspan/tautspan/plugins/transform"
 )
 
 // builtin lists the solvers that the program carries, in the order in which
 // they are named everywhere.
 func builtin() []solver.Solver {
-	return []solver.Solver{differences.New(), spectral.New(), characteristic.New()}
+	return []solver.Solver{differences.New(), spectral.New(), characteristic.New(), transform.New()}
 }
 
 // engineOf says who computes, for a document's head.
