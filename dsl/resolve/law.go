@@ -150,16 +150,15 @@ func (r *resolver) lawFormulas(s *syntax.Law, params map[string]value) *written 
 func (r *resolver) useLaw(c *syntax.Call, k unit.Kind, path string) (*lawOf, bool) {
 	r.path(path+".law", c.Span)
 	name := c.Name.Text
+	var e *lawEntry
+	var p *Plugin
 	if c.Name.Quoted {
-		if p, ok := r.plugin(c.Name.Span, name, "law"); ok {
-			if _, ok := r.parameters(p, c, path); ok {
-				r.notYet(c.Span, "a law of a plugin in a scenario", "`law NAME { … }` writes a law into the file")
-			}
+		var ok bool
+		if p, ok = r.plugin(c.Name.Span, name, "law"); !ok {
+			return nil, false
 		}
-		return nil, false
-	}
-	e, ok := r.laws[name]
-	if !ok {
+		e = r.pluginLaw(p, c)
+	} else if e = r.laws[name]; e == nil {
 		r.unknownLaw(c, name)
 		return nil, false
 	}
@@ -174,7 +173,13 @@ func (r *resolver) useLaw(c *syntax.Call, k unit.Kind, path string) (*lawOf, boo
 		r.errorAt(c.Span, "unit-mismatch", "here stands a law that gives "+k.Name, found, hint)
 		return nil, false
 	}
-	params, ok := r.lawParameters(e, c, path)
+	var params map[string]value
+	var ok bool
+	if p != nil {
+		params, ok = r.pluginParameters(p, c, path)
+	} else {
+		params, ok = r.lawParameters(e, c, path)
+	}
 	if !ok {
 		return nil, false
 	}

@@ -2,6 +2,7 @@ package resolve
 
 import (
 	"fmt"
+	"strings"
 
 	"github.com/tautspan/tautspan/dsl/diag"
 	"github.com/tautspan/tautspan/dsl/syntax"
@@ -15,6 +16,7 @@ import (
 type Plugin struct {
 	Name, Kind string // Kind: solver, load or law
 	Parameters []Parameter
+	Body       string // of a law: that of its law statement, without takes; "": it cannot be written
 }
 
 // Parameter is a number that a load or a law takes.
@@ -170,4 +172,73 @@ func (p *Plugin) example() string {
 		text += q.Name + " = … " + q.Unit
 	}
 	return text + ")"
+}
+
+// pluginLaw reads the law that a plugin has written, as if it stood in the file.
+// What is wrong in it is said at the place that names the plugin.
+func (r *resolver) pluginLaw(p *Plugin, c *syntax.Call) *lawEntry {
+	if e, known := r.pluginLaws[p.Name]; known {
+		return e
+	}
+	if r.pluginLaws == nil {
+		r.pluginLaws = map[string]*lawEntry{}
+	}
+	bad := &lawEntry{bad: true}
+	r.pluginLaws[p.Name] = bad
+	if p.Body == "" {
+		r.notYet(c.Span, "a law that must be followed step by step", "`law NAME { … }` writes a law into the file")
+		return bad
+	}
+	text := setHead + "law plugin_law {\n"
+	for i, q := range p.Parameters {
+		lead := "    takes "
+		if i > 0 {
+			lead = ",\n        "
+		}
+		text += lead + q.Name
+		if q.Unit != "1" {
+			text += " unit " + q.Unit
+		}
+	}
+	if len(p.Parameters) > 0 {
+		text += "\n"
+	}
+	for _, line := range strings.Split(strings.TrimSpace(p.Body), "\n") {
+		text += "    " + strings.TrimSpace(line) + "\n"
+	}
+	file := diag.NewFile("law of "+p.Name, text+"}\n")
+	at := c.Name.Span
+	r.mades[file] = &made{from: at.File, pieces: []madePiece{{origin: at.Start, length: at.End - at.Start}}}
+	tree, diags := syntax.Parse(file)
+	r.diags = append(r.diags, diags...)
+	for _, s := range tree.Statements {
+		if law, ok := s.(*syntax.Law); ok && !diags.HasErrors() {
+			e := &lawEntry{stmt: law}
+			r.resolveLaw(e)
+			r.pluginLaws[p.Name] = e
+			return e
+		}
+	}
+	if !diags.HasErrors() {
+		r.errorAt(at, "unknown-plugin", p.Name+" hands over a text that is no law", "the plugin is at fault", "")
+	}
+	return bad
+}
+
+// pluginParameters are the values of a plugin's parameters as a law's formulas
+// read them.
+func (r *resolver) pluginParameters(p *Plugin, c *syntax.Call, path string) (map[string]value, bool) {
+	list, ok := r.parameters(p, c, path)
+	if !ok {
+		return nil, false
+	}
+	out := map[string]value{}
+	for i := range list {
+		dim := unit.None()
+		if u, err := unit.Parse(p.Parameters[i].Unit); err == nil && p.Parameters[i].Unit != "1" {
+			dim = u
+		}
+		out[list[i].Name] = value{prog: list[i].Value, dim: dim.Dim, angle: dim.Angle}
+	}
+	return out, true
 }

@@ -151,13 +151,14 @@ type resolver struct {
 	elements   map[string][]element // by bare name, over all lines
 	watches    map[string]int       // index into the template's watches, -1 where it is faulty
 
-	units  map[string]unitRead
-	tables map[string]*csvFile
-	typed  map[*diag.File]*diag.File // files made of values from outside, and what was typed
-	mades  map[*diag.File]*made      // texts made of each blocks, and where they come from
-	made   int                       // bytes of them
-	depth  int                       // of the expression being compiled
-	wanted *unit.Dim                 // of the number that is being read, nil where nothing is known
+	units      map[string]unitRead
+	tables     map[string]*csvFile
+	typed      map[*diag.File]*diag.File // files made of values from outside, and what was typed
+	pluginLaws map[string]*lawEntry      // laws of plugins, read once
+	mades      map[*diag.File]*made      // texts made of each blocks, and where they come from
+	made       int                       // bytes of them
+	depth      int                       // of the expression being compiled
+	wanted     *unit.Dim                 // of the number that is being read, nil where nothing is known
 	// partsUnsure: a line could not be read whole, so that a part may exist unseen.
 	partsUnsure bool
 	joints      int  // made by `every`

@@ -166,6 +166,11 @@ func (b *builder) pieces(line int, ends []float64) {
 		}
 		if s.Law != nil {
 			p.Law = b.law(s.Law)
+			if s.Law.Written != nil {
+				if k, c, linear := linearLaw(s.Law.Written); linear && k == 0 {
+					p.Law, p.Viscous = nil, p.Viscous+c
+				}
+			}
 		}
 		if from == ends[seg] && x == ends[seg+1] {
 			p.Length = s.Length // as given, not as the difference of two sums

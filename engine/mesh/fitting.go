@@ -24,6 +24,12 @@ func (b *builder) fit(n *Node, from *scenario.Node) {
 		}
 	}
 	for i := range from.Laws {
+		if w := from.Laws[i].Written; w != nil {
+			if k, c, linear := linearLaw(w); linear && k == 0 {
+				n.Dashpot += c
+				continue
+			}
+		}
 		n.Laws = append(n.Laws, *b.law(&from.Laws[i]))
 	}
 	for _, bench := range from.Benches {

@@ -23,6 +23,7 @@ type Trusted struct {
 	SHA256 string       `json:"sha256"`
 	Added  string       `json:"added"` // RFC 3339
 	About  author.About `json:"about"` // as it said when it was added
+	Body   string       `json:"body"`  // of a law: how it is written; "": it is not, or no law
 }
 
 // Store is the list of trusted plugins, one file of the user's. No plugin is

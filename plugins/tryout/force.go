@@ -8,9 +8,9 @@ import (
 	"github.com/tautspan/tautspan/plugins/author"
 )
 
-// presets are values for all parameters of a plugin: the preset, or the middle
+// Presets are values for all parameters of a plugin: the preset, or the middle
 // of the range, or 1.
-func presets(a *author.About) map[string]float64 {
+func Presets(a *author.About) map[string]float64 {
 	out := map[string]float64{}
 	for _, p := range a.Parameters {
 		switch {
@@ -49,7 +49,7 @@ func Load(ctx context.Context, l author.Load) []Check {
 	}
 	for _, along := range []bool{false, true} {
 		name := "at a place"
-		q := author.LoadWant{Parameters: presets(&about), Along: along, Length: 100, Duration: 20, Places: []float64{50}}
+		q := author.LoadWant{Parameters: Presets(&about), Along: along, Length: 100, Duration: 20, Places: []float64{50}}
 		if along {
 			name, q.Places = "along a stretch", []float64{0, 25, 50, 75, 100}
 		}
@@ -125,7 +125,7 @@ func Law(_ context.Context, l author.Law) []Check {
 	if !describes(b, &about) {
 		return b.checks
 	}
-	values := presets(&about)
+	values := Presets(&about)
 	text, err := l.Written(values)
 	switch {
 	case err != nil:

@@ -24,6 +24,7 @@ The answers stand as if their inputs were exact. Make the doubt smaller, or see 
 		"no-survey":                   `A change is between two results of 'tautspan fit': result folders written with --out, or documents printed with --json. The message says what is wrong with this one.`,
 		"failed":                      `Something outside the scenario failed: a file that cannot be read or written, a limit on memory or work, no solver that can answer. The message says what.`,
 		"no-fronts":                   `The pulse ledger follows fronts on taut strings only. The message names what it cannot follow.`,
+		"law-gives-energy":            `A law was swung through three cycles of a few sizes and gave the line more energy than it took. A damper takes; a law that gives drives the line, and a run with it may grow without end. Turn the sign of its force, or leave it so if it is meant to drive.`,
 		"no-line": `There is no line in the scenario, so there is nothing to answer for. A line begins and ends with a support:
 
 line NAME { tension ...; support ...; segment ...; support ... }`,

@@ -115,7 +115,16 @@ func (l *loaded) bind() {
 	}
 	if err != nil {
 		l.refuse(err)
+		return
 	}
+	eachWritten(l.net, func(name string, w *scenario.WrittenOf[float64]) {
+		for _, size := range []float64{1e-4, 1e-2, 1} {
+			if taken, gross := lawTakes(w, size); taken < -givesBack*gross {
+				l.warn("law-gives-energy", fmt.Sprintf("the law %s gives energy to the line: a swing of %g m at 1 Hz gains %.3g J a cycle", name, size, -taken/3))
+				return
+			}
+		}
+	})
 }
 
 // refuse turns an error of the engine into a diagnostic.

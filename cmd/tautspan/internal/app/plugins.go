@@ -12,6 +12,7 @@ import (
 	"github.com/tautspan/tautspan/dsl/diag"
 	"github.com/tautspan/tautspan/plugins/author"
 	"github.com/tautspan/tautspan/plugins/host"
+	"github.com/tautspan/tautspan/plugins/laws"
 	"github.com/tautspan/tautspan/plugins/loads"
 	"github.com/tautspan/tautspan/plugins/tryout"
 )
@@ -77,6 +78,11 @@ func installed() []dsl.Plugin {
 		about := l.About()
 		out = append(out, languageOf(&about, "load"))
 	}
+	for _, l := range laws.BuiltIn() {
+		p := languageOf(&l.Is, "law")
+		p.Body = l.Text
+		out = append(out, p)
+	}
 	store, err := pluginStore()
 	if err != nil {
 		return out
@@ -86,7 +92,9 @@ func installed() []dsl.Plugin {
 		return out
 	}
 	for i := range all {
-		out = append(out, languageOf(&all[i].About, all[i].Kind))
+		p := languageOf(&all[i].About, all[i].Kind)
+		p.Body = all[i].Body
+		out = append(out, p)
 	}
 	return out
 }
@@ -101,17 +109,31 @@ func languageOf(a *author.About, kind string) dsl.Plugin {
 
 // builtInName tells whether a name is taken by something built in.
 func builtInName(name string) bool {
-	for _, s := range builtin() {
-		if s.Name() == name {
-			return true
-		}
-	}
-	for _, l := range loads.BuiltIn() {
-		if l.About().Name == name {
+	for _, r := range builtInRows() {
+		if r.Name == name {
 			return true
 		}
 	}
 	return false
+}
+
+// builtInRows describes the solvers, loads and laws that the program carries.
+func builtInRows() []PluginRow {
+	var out []PluginRow
+	for _, s := range builtin() {
+		out = append(out, PluginRow{Name: s.Name(), Kind: "solver", Version: s.Version(), BuiltIn: true, Says: "built in", Cannot: []string{}, Parameters: []PluginNumber{}})
+	}
+	for _, l := range loads.BuiltIn() {
+		about := l.About()
+		out = append(out, aboutRow(&about, "load"))
+	}
+	for _, l := range laws.BuiltIn() {
+		out = append(out, aboutRow(&l.Is, "law"))
+	}
+	for i := range out {
+		out[i].BuiltIn = true
+	}
+	return out
 }
 
 // startTrusted starts a trusted plugin, if its file is still the one that was
@@ -175,15 +197,7 @@ func (a *App) PluginsList() (*PluginsDoc, Status, error) {
 	if err != nil {
 		return nil, Outside, err
 	}
-	for _, s := range builtin() {
-		doc.Plugins = append(doc.Plugins, PluginRow{Name: s.Name(), Kind: "solver", Version: s.Version(), BuiltIn: true, Says: "built in", Cannot: []string{}, Parameters: []PluginNumber{}})
-	}
-	for _, l := range loads.BuiltIn() {
-		about := l.About()
-		row := aboutRow(&about, "load")
-		row.BuiltIn = true
-		doc.Plugins = append(doc.Plugins, row)
-	}
+	doc.Plugins = append(doc.Plugins, builtInRows()...)
 	all, err := store.List()
 	if err != nil {
 		return nil, Outside, err
@@ -216,6 +230,15 @@ func (a *App) PluginsAdd(ctx context.Context, path string) (*PluginsDoc, Status,
 		return nil, Outside, fmt.Errorf("the plugin calls itself %s, which is a built-in one's name", p.About.Name)
 	}
 	t := host.Trusted{Kind: p.Kind, Path: path, SHA256: sum, Added: host.Now(), About: p.About}
+	if p.Kind == "law" {
+		l, err := host.NewLaw(p)
+		if err != nil {
+			return nil, Outside, err
+		}
+		if t.Body, err = l.Written(tryout.Presets(&p.About)); err != nil {
+			return nil, Outside, err
+		}
+	}
 	if err := store.Put(t); err != nil {
 		return nil, Outside, err
 	}
@@ -254,11 +277,9 @@ func (a *App) PluginsShow(name string) (*PluginsDoc, Status, error) {
 	if err != nil {
 		return nil, Outside, err
 	}
-	for _, l := range loads.BuiltIn() {
-		if about := l.About(); about.Name == name {
-			row := aboutRow(&about, "load")
-			row.BuiltIn = true
-			doc.Plugins = append(doc.Plugins, row)
+	for _, r := range builtInRows() {
+		if r.Name == name {
+			doc.Plugins = append(doc.Plugins, r)
 			return doc, Done, nil
 		}
 	}
@@ -289,6 +310,12 @@ func (a *App) PluginsTry(ctx context.Context, name string, log io.Writer) (*Plug
 	for _, l := range loads.BuiltIn() {
 		if l.About().Name == name {
 			doc.Checks = tryout.Load(ctx, l)
+			return doc, tried(doc.Checks), ctx.Err()
+		}
+	}
+	for _, l := range laws.BuiltIn() {
+		if l.Is.Name == name {
+			doc.Checks = append(tryout.Law(ctx, l), tryWritten(&l.Is)...)
 			return doc, tried(doc.Checks), ctx.Err()
 		}
 	}
@@ -333,7 +360,11 @@ func tryProcess(ctx context.Context, p *host.Process) ([]tryout.Check, error) {
 	if err != nil {
 		return nil, err
 	}
-	return tryout.Law(ctx, l), nil
+	checks := tryout.Law(ctx, l)
+	if text, err := l.Written(tryout.Presets(&p.About)); err == nil && text != "" {
+		checks = append(checks, tryWritten(&p.About)...)
+	}
+	return checks, nil
 }
 
 func tried(checks []tryout.Check) Status {
