@@ -157,3 +157,93 @@ func TestPublishedTensionByVibration(t *testing.T) {
 	pull, u := fitOf(t, text).value(t, "pull")
 	closeTo(t, "C19-04", u/pull, c.Expected["dT_over_T_rss"].Value, 1e-6)
 }
+
+// documentOf runs a command on a scenario's text and gives its document.
+func documentOf(t *testing.T, into any, command, text string, flags ...string) {
+	t.Helper()
+	file := filepath.Join(t.TempDir(), "case.taut")
+	if err := os.WriteFile(file, []byte("tautspan 1\n"+text), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	var out, errs bytes.Buffer
+	if code := cli.Main(append([]string{command, "--json", file}, flags...), cli.Streams{Out: &out, Err: &errs}); code > 1 {
+		t.Fatalf("exit %d\n%s", code, errs.String())
+	}
+	if err := json.Unmarshal(out.Bytes(), into); err != nil {
+		t.Fatal(err)
+	}
+}
+
+// How long a vibration of a published damping ratio takes to fall, by the decay
+// that the exact vibrations have.
+func TestPublishedFallOfAVibration(t *testing.T) {
+	c := caseOf(t, "C17-03")
+	f, zeta := c.Inputs["f"].Value, c.Inputs["zeta"].Value
+	// A string of a metre and a kilogram a metre with the frequency undamped.
+	text := fmt.Sprintf("stock w {\n mass 1 kg/m\n loss ratio %.15g at %.15g Hz\n}\nline l {\n tension %.15g N\n support a fixed\n segment s w 1 m\n support b fixed\n}\n", zeta, f, 4*f*f)
+	var doc struct {
+		Modes []struct {
+			Frequency float64 `json:"frequency_hz"`
+			Damped    float64 `json:"damped_frequency_hz"`
+			Ratio     float64 `json:"damping_ratio"`
+			Decay     float64 `json:"decay_per_s"`
+		}
+	}
+	documentOf(t, &doc, "modes", text)
+	m := doc.Modes[0]
+	closeTo(t, "C17-03 t to 5 %", math.Log(20)/m.Decay, c.Expected["t_5_percent"].Value, 1e-9*c.Expected["t_5_percent"].Value)
+	closeTo(t, "C17-03 t to 60 dB", math.Log(1000)/m.Decay, c.Expected["t_60dB"].Value, 1e-9*c.Expected["t_60dB"].Value)
+	closeTo(t, "C17-03 Q", 1/(2*m.Ratio), c.Expected["Q"].Value, 1e-9*c.Expected["Q"].Value)
+	closeTo(t, "C17-03 cycles to half", m.Damped*math.Ln2/m.Decay, c.Expected["cycles_to_half"].Value, 1e-9*c.Expected["cycles_to_half"].Value)
+}
+
+// The width of a resonance at half its power: a mass on a spring and a dashpot at
+// the end of a line that weighs and pulls next to nothing.
+func TestPublishedHalfPowerWidth(t *testing.T) {
+	c := caseOf(t, "C17-02")
+	f0 := c.Inputs["f0"].Value
+	omega := 2 * math.Pi * f0
+	for _, zeta := range []float64{0.005, 0.05} {
+		text := fmt.Sprintf("stock w {\n mass 1e-8 kg/m\n}\nline l {\n tension 1e-6 N\n support a fixed\n segment s w 1 m\n support b mass 1 kg, spring %.15g N/m, dashpot %.15g N*s/m\n}\nexcite e push at b with sine(1 N, 1 Hz)\nwatch q at b displacement\n", omega*omega, 2*zeta*omega)
+		const points = 4001
+		var doc struct {
+			Frequency []float64 `json:"frequency_hz"`
+			Responses []struct{ Amplitude []float64 }
+		}
+		documentOf(t, &doc, "respond", text, "--from", fmt.Sprint(f0*(1-3*zeta)), "--to", fmt.Sprint(f0*(1+3*zeta)), "--points", fmt.Sprint(points))
+		a := doc.Responses[0].Amplitude
+		top := 0.0
+		for _, v := range a {
+			top = math.Max(top, v)
+		}
+		var ends []float64
+		for i := 1; i < len(a); i++ {
+			x, y := 2*a[i-1]*a[i-1]-top*top, 2*a[i]*a[i]-top*top
+			if (x > 0) != (y > 0) {
+				ends = append(ends, doc.Frequency[i-1]+x/(x-y)*(doc.Frequency[i]-doc.Frequency[i-1]))
+			}
+		}
+		if len(ends) != 2 {
+			t.Fatalf("zeta %g: %d ends", zeta, len(ends))
+		}
+		// A step is 1.5e-3 of the width; the top between two steps is missed by the
+		// square of that, 1e-6 of it.
+		want := c.Expected[fmt.Sprintf("width_exact_zeta_%g", zeta)].Value
+		closeTo(t, fmt.Sprintf("C17-02 zeta %g", zeta), ends[1]-ends[0], want, 1e-5*want)
+	}
+}
+
+// A sag found by a fit: that of a parabola, as the measure defines it, 0.06 % short
+// of the catenary's.
+func TestPublishedSagOfAFittedSpan(t *testing.T) {
+	c := caseOf(t, "C12-06")
+	h, m, span := c.Inputs["H"].Value, c.Inputs["m"].Value, c.Inputs["L"].Value
+	text := surveyed("", "fixed", span, fmt.Sprintf(" mass %.12g kg/m\n", m), fmt.Sprintf(" returns 1 took %.15g s +- 0.01 s\n", 2*span*math.Sqrt(m/h)), "seek pull from 1 kN to 900 kN\ncollect sag(l)\n")
+	var doc struct {
+		Collected []struct{ Value struct{ Value float64 } }
+	}
+	documentOf(t, &doc, "fit", text)
+	sag := doc.Collected[0].Value.Value
+	closeTo(t, "C12-06 parabola", sag, c.Expected["sag_parabola"].Value, 1e-9*sag)
+	closeTo(t, "C12-06 catenary", sag, c.Expected["sag_catenary"].Value, 7e-4*sag)
+}

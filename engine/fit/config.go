@@ -249,6 +249,33 @@ func (c *config) lossy() bool {
 	return false
 }
 
+// bendingOfTrips is the share by which clamped ends shorten the round trips that a
+// config is asked for: the bending length root(EI/T) off the span at each.
+// Source: the boundary layer of a tensioned beam; for a line clamped at both ends
+// this is the 2/xi by which its frequencies rise.
+func (c *config) bendingOfTrips(values []float64) float64 {
+	if !c.travel {
+		return 0
+	}
+	net, err := c.part.Bind(values)
+	if err != nil {
+		return 0
+	}
+	line := &net.Lines[c.own]
+	off, length := 0.0, 0.0
+	for i := c.first; i <= c.last; i++ {
+		s := &line.Segments[i]
+		length += s.Length
+		for k, n := range []*scenario.Node{&line.Nodes[i], &line.Nodes[i+1]} {
+			end := k == 0 && i == c.first || k == 1 && i == c.last
+			if end && s.Bending > 0 && (n.Clamped || n.Rotary > 0) {
+				off += math.Sqrt(s.Bending / (s.Tension + s.TensionRise*s.Length/2))
+			}
+		}
+	}
+	return off / length
+}
+
 // rises tells whether the tension rises along a segment that bends.
 func (c *config) rises() bool {
 	for i := range c.part.Model.Lines {

@@ -351,3 +351,15 @@ func TestPeaksOfARecord(t *testing.T) {
 		}
 	}
 }
+
+// Round trips on a line that bends are reckoned as on a string, and that is told
+// with its size: 2/xi for clamped ends.
+func TestTripsOfAStiffLineAreRemarkedOn(t *testing.T) {
+	text := hangerText + "reading r of l {\n returns 10 took 3.8 s +- 0.02 s\n}\nseek pull from 150 kN to 1500 kN\n"
+	r := solve(t, text)
+	pull := r.Best.Unknowns[0].Value
+	want := fmt.Sprintf("about %.1f %% shorter", 100*2*math.Sqrt(100e3/pull)/30)
+	if notes := strings.Join(r.Best.Notes, "\n"); !strings.Contains(notes, want) {
+		t.Errorf("%q does not say %q", notes, want)
+	}
+}
