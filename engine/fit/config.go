@@ -190,7 +190,7 @@ func (c *config) cut(p *Problem) {
 			continue
 		}
 		tie.From.Line, tie.To.Line = index[tie.From.Line], index[tie.To.Line]
-		for _, q := range []formula.Program{tie.Spring, tie.Dashpot, tie.Mass, tie.From.Offset, tie.To.Offset} {
+		for _, q := range []formula.Program{tie.Spring, tie.SpringLoss, tie.Dashpot, tie.Through, tie.Mass, tie.From.Offset, tie.To.Offset} {
 			q.LetsUsed(c.reads)
 		}
 		part.Model.Ties = append(part.Model.Ties, tie)
@@ -215,7 +215,7 @@ func (c *config) quick() bool {
 		return false
 	}
 	l := &c.part.Model.Lines[0]
-	if len(l.Segments) != 1 || l.Sag || c.decays {
+	if len(l.Segments) != 1 || len(l.Segments[0].Every) > 0 || l.Sag || c.decays {
 		return false
 	}
 	rise, level := l.Segments[0].TensionRise.IsConst()
@@ -223,30 +223,80 @@ func (c *config) quick() bool {
 }
 
 // lossy tells whether the vibrations of the config wait for complex roots: it is
-// asked for damping, or dashpots stand on its lines.
+// asked for damping, or something on its lines beside the viscous and internal
+// losses of segments takes energy.
 func (c *config) lossy() bool {
 	if c.decays {
 		return true
 	}
-	for i := range c.part.Model.Lines {
-		for k := range c.part.Model.Lines[i].Nodes {
-			n := &c.part.Model.Lines[i].Nodes[k]
-			lossy := len(n.Dashpots) > 0 || n.Absorbing
-			for _, t := range n.Tuned {
-				d, constant := t.Dashpot.IsConst()
-				lossy = lossy || !constant || d != 0
+	none := func(programs ...formula.Program) bool {
+		for _, p := range programs {
+			if v, constant := p.IsConst(); !constant || v != 0 {
+				return false
 			}
-			if lossy {
+		}
+		return true
+	}
+	node := func(n *scenario.NodeOf[formula.Program]) bool {
+		for _, t := range n.Tuned {
+			if !none(t.Dashpot, t.Loss) {
+				return true
+			}
+		}
+		return len(n.Dashpots) > 0 || len(n.Benches) > 0 || n.Absorbing || !none(n.SpringLoss)
+	}
+	for i := range c.part.Model.Lines {
+		l := &c.part.Model.Lines[i]
+		for k := range l.Nodes {
+			if node(&l.Nodes[k]) {
+				return true
+			}
+		}
+		for k := range l.Segments {
+			s := &l.Segments[k]
+			for e := range s.Every {
+				if node(&s.Every[e].Joint) {
+					return true
+				}
+			}
+			if !none(s.TensionLoss, s.BendingLoss) {
 				return true
 			}
 		}
 	}
 	for _, t := range c.part.Model.Ties {
-		if d, constant := t.Dashpot.IsConst(); !constant || d != 0 {
+		if !none(t.Dashpot, t.SpringLoss) {
 			return true
 		}
 	}
 	return false
+}
+
+// strip takes every loss away.
+func strip(net *scenario.Network) {
+	node := func(n *scenario.Node) {
+		n.Dashpots, n.Benches, n.Absorbing, n.SpringLoss = nil, nil, false, 0
+		n.Tuned = append([]scenario.TunedOf[float64](nil), n.Tuned...)
+		for t := range n.Tuned {
+			n.Tuned[t].Dashpot, n.Tuned[t].Loss = 0, 0
+		}
+	}
+	for i := range net.Lines {
+		line := &net.Lines[i]
+		for k := range line.Segments {
+			s := &line.Segments[k]
+			s.Viscous, s.Internal, s.TensionLoss, s.BendingLoss = 0, 0, 0, 0
+			for e := range s.Every {
+				node(&s.Every[e].Joint)
+			}
+		}
+		for k := range line.Nodes {
+			node(&line.Nodes[k])
+		}
+	}
+	for i := range net.Ties {
+		net.Ties[i].Dashpot, net.Ties[i].SpringLoss = 0, 0
+	}
 }
 
 // bendingOfTrips is the share by which clamped ends shorten the round trips that a
@@ -289,27 +339,6 @@ func (c *config) rises() bool {
 		}
 	}
 	return false
-}
-
-// strip takes every loss away.
-func strip(net *scenario.Network) {
-	for i := range net.Lines {
-		line := &net.Lines[i]
-		for k := range line.Segments {
-			line.Segments[k].Viscous, line.Segments[k].Internal = 0, 0
-		}
-		for k := range line.Nodes {
-			n := &line.Nodes[k]
-			n.Dashpots, n.Absorbing = nil, false
-			n.Tuned = append([]scenario.TunedOf[float64](nil), n.Tuned...)
-			for t := range n.Tuned {
-				n.Tuned[t].Dashpot = 0
-			}
-		}
-	}
-	for i := range net.Ties {
-		net.Ties[i].Dashpot = 0
-	}
 }
 
 // lightLoss is the damping ratio below which losses spread along a line are left

@@ -220,17 +220,24 @@ func lineReads(l *scenario.LineOf[formula.Program], used map[int]bool) {
 			p.LetsUsed(used)
 		}
 	}
-	see(l.Incline, l.Temperature)
-	for _, n := range l.Nodes {
-		see(n.Mass, n.Spring, n.Rotary)
+	node := func(n *scenario.NodeOf[formula.Program]) {
+		see(n.Mass, n.Spring, n.SpringLoss, n.Rotary, n.Inertia, n.AxialGive)
 		for _, d := range n.Dashpots {
 			see(d.C, d.Through)
 		}
 		for _, t := range n.Tuned {
-			see(t.Mass, t.Spring, t.Dashpot)
+			see(t.Mass, t.Spring, t.Dashpot, t.Loss)
 		}
 	}
+	see(l.Incline, l.Temperature)
+	for i := range l.Nodes {
+		node(&l.Nodes[i])
+	}
 	for _, s := range l.Segments {
-		see(s.Length, s.MassPerLength, s.Tension, s.TensionRise, s.Bending, s.Internal, s.Axial, s.Viscous, s.Expansion)
+		see(s.Length, s.MassPerLength, s.Tension, s.TensionRise, s.Bending, s.Internal, s.Axial, s.Viscous, s.Expansion, s.TensionLoss, s.BendingLoss)
+		for k := range s.Every {
+			see(s.Every[k].First, s.Every[k].Spacing)
+			node(&s.Every[k].Joint)
+		}
 	}
 }

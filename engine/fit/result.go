@@ -91,6 +91,12 @@ func (p *Problem) Solve(ctx context.Context) (*Result, error) {
 		return nil, err
 	}
 	if len(found) == 0 {
+		// A model that exists nowhere says why, such as friction that has no vibrations.
+		for _, q := range p.predict(p.middle()) {
+			if q.err != nil {
+				return nil, &Error{Code: "no-solution", Path: "fit", What: "the line cannot be computed: " + q.err.Error()}
+			}
+		}
 		return nil, &Error{Code: "no-solution", Path: "fit", What: "no values of the sought lets within their ranges explain any of the readings"}
 	}
 	res := &Result{}

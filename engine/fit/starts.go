@@ -25,21 +25,26 @@ type size struct {
 	widen  float64 // of the screening, as a share of the value
 }
 
-// Single spans are evaluated in some 20 microseconds, other lines in some
-// hundred times that.
+// Single spans are evaluated in some 20 microseconds, other lines in some ten to a
+// hundred times that, and stiff ones whose tension rises in up to a second.
 var (
 	wide   = size{follow: 30, finish: 12, keep: 12, coarse: 5, ratio: 1.05, widen: 0.02}
 	narrow = size{follow: 24, finish: 5, keep: 8, coarse: 4, ratio: 1.08, widen: 0.03}
+	scarce = size{follow: 24, finish: 2, keep: 8, coarse: 4, ratio: 1.08, widen: 0.03}
 )
 
 // size settles how wide to search.
 func (p *Problem) size() size {
+	out := wide
 	for _, c := range p.configs {
-		if !c.quick() {
-			return narrow
+		switch {
+		case c.rises():
+			return scarce
+		case !c.quick():
+			out = narrow
 		}
 	}
-	return wide
+	return out
 }
 
 // start is a point with its screening cost.
@@ -52,11 +57,7 @@ type start struct {
 // worth following. Lets that several groups of lines share are gone through on a
 // coarse grid; for each of its points every group is searched for itself.
 func (p *Problem) starts() []start {
-	base := make([]float64, len(p.unknowns))
-	for _, i := range p.sought {
-		lo, hi := p.unknowns[i].bounds()
-		base[i] = (lo + hi) / 2
-	}
+	base := p.middle()
 	shared, private := p.split()
 	var all []start
 	for _, s := range p.grid(base, shared, sharedPoints(len(shared))) {
@@ -69,6 +70,16 @@ func (p *Problem) starts() []start {
 	}
 	sort.SliceStable(all, func(a, b int) bool { return all[a].cost < all[b].cost })
 	return p.diverse(all, private)
+}
+
+// middle is the middle of all ranges.
+func (p *Problem) middle() []float64 {
+	x := make([]float64, len(p.unknowns))
+	for _, i := range p.sought {
+		lo, hi := p.unknowns[i].bounds()
+		x[i] = (lo + hi) / 2
+	}
+	return x
 }
 
 func sharedPoints(n int) int {
@@ -119,11 +130,7 @@ func (p *Problem) split() (shared []int, private []own) {
 // the middle of their ranges, and leaves out those that do not move it at all:
 // losses, where the search leaves them out.
 func (p *Problem) byInfluence(list []int) []int {
-	x := make([]float64, len(p.unknowns))
-	for _, i := range p.sought {
-		lo, hi := p.unknowns[i].bounds()
-		x[i] = (lo + hi) / 2
-	}
+	x := p.middle()
 	const look = 0.05
 	pull := map[int]float64{}
 	for _, i := range list {
