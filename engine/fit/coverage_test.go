@@ -7,9 +7,11 @@ import (
 	"strings"
 	"testing"
 
+	"github.com/tautspan/tautspan/dsl"
 	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/modal"
 	"github.com/tautspan/tautspan/engine/scenario"
+	"github.com/tautspan/tautspan/scenarios"
 )
 
 // hangerText is a clamped line of 30 m and 20 kg/m under 500 kN with 180 kN m^2,
@@ -148,6 +150,15 @@ func BenchmarkOneLine(b *testing.B) {
 	f := hangerFrequencies(b, 8)
 	tmpl := templateOf(b, hangerText+"reading r of l {\n peaks "+list2(f)+" Hz +- 0.2 %\n}\n"+hangerSought)
 	benchmarkSolve(b, tmpl)
+}
+
+// BenchmarkThreeHangers is the shipped survey of three lines that share two lets.
+func BenchmarkThreeHangers(b *testing.B) {
+	c := dsl.Compile(scenarios.Files, "hanger-survey.taut", dsl.Options{})
+	if c.Diagnostics.HasErrors() {
+		b.Fatal(c.Diagnostics.Text(3))
+	}
+	benchmarkSolve(b, c.Template)
 }
 
 func benchmarkSolve(b *testing.B, tmpl *scenario.Template) {

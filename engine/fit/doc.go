@@ -12,7 +12,7 @@
 //	     + 0.5 for each natural vibration that is passed over,
 //
 // by Levenberg and Marquardt in logarithms of the lets (lm.go), from many
-// starts (search.go), with peaks paired to vibrations in order (pair.go).
+// starts (starts.go, search.go), with peaks paired to vibrations in order (pair.go).
 // Doubtful lets are prior knowledge: they move too, held by their doubt. What
 // comes out is not one answer but every one whose cost lies within 9 of the
 // best, each with intervals from the curvature of its cost (cover.go), and what

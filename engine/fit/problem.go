@@ -54,7 +54,7 @@ func (u *unknown) bounds() (lo, hi float64) {
 	return u.at(u.from), u.at(u.to)
 }
 
-// Problem is a scenario's fit made ready.
+// Problem is a scenario's fit made ready. It is for one goroutine.
 type Problem struct {
 	template *scenario.Template
 	start    []float64 // values of the lets as they stand

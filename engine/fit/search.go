@@ -79,7 +79,7 @@ var slacks = [...]float64{1.5, 2, 3, 4}
 // Residuals and intervals go on to use what the readings say, widened by their
 // scatter. Source: the likelihood of a normal distribution of unknown width.
 func (p *Problem) loosen(found []solution) []solution {
-	if len(found) == 0 || len(p.lists) == 0 && !slices.Contains(p.mayDrop, true) {
+	if len(found) == 0 {
 		return found
 	}
 	best := 0
@@ -87,6 +87,9 @@ func (p *Problem) loosen(found []solution) []solution {
 		if found[i].cost < found[best].cost {
 			best = i
 		}
+	}
+	if !slices.Contains(found[best].modes, 0) {
+		return found // nothing was thrown out
 	}
 	least, slack := found[best].cost, 1.0
 	for _, s := range slacks {
