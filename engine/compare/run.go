@@ -326,7 +326,7 @@ func (r *runner) narrow(o *Observable, wants map[int]int) {
 			need--
 			continue
 		}
-		if v.exhausted != "" {
+		if v.exhausted != "" || v.dull(r.options.Agree/2) {
 			continue
 		}
 		order, ratio := v.theory()

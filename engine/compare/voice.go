@@ -123,7 +123,7 @@ func (v *voice) bar(c int, k Kind, s scales, all []*voice) Bar {
 		}
 		b.Bound = math.Max(b.Bound, floor)
 	}
-	b.Bound = math.Max(b.Bound, roundOff*scale)
+	b.Bound = math.Max(b.Bound, roundOff*scale) + v.top().result.Neglect*scale
 	return b
 }
 
@@ -144,6 +144,9 @@ func (v *voice) local(c, spot int) func(row int) float64 {
 		return math.Max(math.Abs(fine[i]-middle[i]), fall*math.Abs(middle[i]-coarse[i]))
 	}
 }
+
+// dull tells that no refinement brings the voice to a share of a record's size.
+func (v *voice) dull(share float64) bool { return v.top().result.Neglect > share }
 
 // localFactor turns a change from level to level into an error bar: as the
 // record's bar is to the record's change.
@@ -166,7 +169,13 @@ func (v *voice) band(c, k int) []float64 {
 	for i := range d {
 		d[i] = change(i)
 	}
-	return envelope(d, halfSwing(fine, middle), v.localFactor(c))
+	out := envelope(d, halfSwing(fine, middle), v.localFactor(c))
+	if share := v.top().result.Neglect; share > 0 {
+		for i := range out {
+			out[i] += share * v.top().figures[c].of[Peak]
+		}
+	}
+	return out
 }
 
 // lastBand is the band at the last row, for the final value, whose own changes

@@ -220,12 +220,15 @@ func (b *builder) startAtNodes(parts []Part, at func(float64) float64, origin, s
 	return order
 }
 
+// bandFactor is the band over the root-mean-square frequency.
+const bandFactor = 3
+
 // band estimates the highest frequency of note that the excitations feed in, Hz:
 // three times the root-mean-square frequency of each history, and of each start
 // shape by its root-mean-square wave number. Jumps have no highest frequency and
 // are left out: Mesh.Jump tells of them.
 func (b *builder) band() float64 {
-	const times = 3
+	const times = bandFactor
 	f := 0.0
 	for _, p := range b.m.Pushes {
 		f = math.Max(f, times*b.historyFrequency(p.Force, 0))

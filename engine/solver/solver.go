@@ -59,6 +59,10 @@ type Result struct {
 	// for channels along a line FieldRows values.
 	Series [][][]float64
 	Energy Energy
+	// Neglect is a share of every record's size by which it may be off for what the
+	// solver knowingly leaves out of the mesh, whatever the level: it is added to
+	// the error bars. 0: nothing is left out.
+	Neglect float64
 	// Notes are remarks for the log and the report (a floor on accuracy, a
 	// refused fourth order, ...), each one sentence.
 	Notes []string

@@ -6,6 +6,7 @@ import (
 	"math"
 
 	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/scenario"
 	"github.com/tautspan/tautspan/engine/solver"
 )
 
@@ -35,8 +36,14 @@ func (tracker) Version() string { return version }
 
 // Refuses lists what characteristics cannot represent of the mesh.
 func (tracker) Refuses(m *mesh.Mesh) []string {
-	if beyond := m.Unknown(mesh.Sagging | mesh.JointLaw | mesh.SlackTie); len(beyond) > 0 {
+	const known = mesh.Sagging | mesh.JointLaw | mesh.SlackTie
+	phi := m.Neglect()
+	if beyond := m.Unknown(known | mesh.Bending); len(beyond) > 0 {
 		return beyond
+	}
+	if phi > mesh.NeglectMost || phi > 0 && asksMoment(m) {
+		return []string{fmt.Sprintf("%s: to leave it out would make records wrong by about %.2g of their size (phi), and up to %g is allowed",
+			m.Unknown(known)[0], phi, mesh.NeglectMost)}
 	}
 	var out []string
 	if err := sound(m); err != nil {
@@ -122,10 +129,26 @@ func (t tracker) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, pr
 		return nil, err
 	}
 	out := &solver.Result{Plan: cost, Order: r.order(), Ratio: 2, Layout: lay, Frozen: frozen, Series: r.series, Energy: r.books(), Notes: r.notes}
+	if phi := m.Neglect(); phi > 0 {
+		out.Neglect = phi
+		if phi > mesh.NeglectSilent {
+			out.Notes = append(out.Notes, fmt.Sprintf("Bending stiffness is left out; records may be off by %.2g of their size for it (phi), which the error bars hold.", phi))
+		}
+	}
 	if req.Freeze != nil && !frozen {
 		out.Notes = append(out.Notes, "The earlier discretisation does not fit this line: a travel time has become too short, or a loss or load has come to a piece that had none.")
 	}
 	return out, finite(out)
+}
+
+// asksMoment tells whether a record is of what a string has not.
+func asksMoment(m *mesh.Mesh) bool {
+	for i := range m.Channels {
+		if m.Channels[i].Quantity == scenario.Moment {
+			return true
+		}
+	}
+	return false
 }
 
 // shortest is the share of the longest travel time below which a piece is not

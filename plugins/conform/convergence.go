@@ -20,6 +20,7 @@ type Finding struct {
 	Claimed      float64   // 0: faster than any order
 	Ratio        float64
 	Difference   []float64 // relative L2 difference between successive levels
+	Neglect      float64   // share of a record that the solver says it may be off for what it leaves out
 	Unaccounted  float64   // share of the most energy held
 }
 
@@ -52,7 +53,7 @@ func Measure(ctx context.Context, s solver.Solver, c Case) (Finding, error) {
 		if last != nil {
 			f.Difference = append(f.Difference, differenceOf(m, last, r))
 		}
-		f.Claimed, f.Ratio = r.Order, r.Ratio
+		f.Claimed, f.Ratio, f.Neglect = r.Order, r.Ratio, r.Neglect
 		f.Unaccounted = math.Abs(r.Energy.Unaccounted()) / r.Energy.Most
 		last = r
 	}
