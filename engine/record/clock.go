@@ -10,100 +10,153 @@ import (
 // evenly sampled.
 type clock struct {
 	rate        float64
-	first, last int   // rows used
-	index       []int // of the rows used: sample number on the even grid
+	first, last int   // rows used: first, and one past the last
+	index       []int // of the rows used: sample number on the even grid; nil: one a row
 	samples     int
 	findings    []Finding
 }
 
-// gapMost is how many samples in a row may be missing before a record counts as
-// broken there.
-const gapMost = 8
+const (
+	// gapMost is how many samples in a row may be missing before a record counts
+	// as broken there. Chosen.
+	gapMost = 8
+	// stepsLooked bounds how many steps are sorted to tell their middle.
+	stepsLooked = 200_000
+)
 
 // readClock tells rate, missing rows and gaps from time stamps that loggers
 // round. A first guess of the step is the mean of the middle half of the steps;
 // with it every row gets a sample number, and the step is then that of the
 // longest stretch without a gap, (last - first)/(number of steps).
-func readClock(times []float64, line int) (*clock, error) {
+func readClock(times []float64, line, column int) (*clock, error) {
 	n := len(times)
 	if times[n-1] <= times[0] {
-		return nil, fieldError("time-stands-still", line, 1, "the time does not go on: it is %.9g s in the first and %.9g s in the last row", "swapped columns? say which is the time: --time COLUMN", times[0], times[n-1])
+		return nil, fieldError("time-stands-still", line, column, "the time does not go on: it is %.9g s in the first and %.9g s in the last row", "swapped columns? say which is the time: --time COLUMN", times[0], times[n-1])
 	}
-	steps := make([]float64, n-1)
-	for i := range steps {
-		steps[i] = times[i+1] - times[i]
-	}
-	sorted := append([]float64(nil), steps...)
-	sort.Float64s(sorted)
-	guess, count := 0.0, 0
-	for _, s := range sorted[len(sorted)/4 : len(sorted)-len(sorted)/4] {
-		guess += s
-		count++
-	}
-	if guess /= float64(count); guess <= 0 {
-		// Stamps coarser than the step: rows share them. Only the whole is known.
+	guess, grain := middleStep(times)
+	c := &clock{last: n}
+	if guess <= 0 { // stamps coarser than the step: rows share them
 		guess = (times[n-1] - times[0]) / float64(n-1)
+		c.samples = n
+	} else {
+		c.longest(times, guess, grain)
+		c.number(times, guess, grain)
 	}
-	coarse := sorted[len(sorted)/4] <= 0
-	c := &clock{first: 0, last: n}
-	if !coarse {
-		c.longest(steps, guess)
+	if c.samples < 3 {
+		return nil, fieldError("empty-record", line, column, "the longest stretch without a gap has %d rows", "", c.last-c.first)
 	}
-	c.number(times, steps, guess, coarse)
-	intervals := c.samples - 1
-	if intervals < 2 {
-		return nil, fieldError("empty-record", line, 1, "the longest stretch without a gap has %d rows", "", c.last-c.first)
-	}
-	step := (times[c.last-1] - times[c.first]) / float64(intervals)
+	step := (times[c.last-1] - times[c.first]) / float64(c.samples-1)
 	c.rate = 1 / step
-	worst := 0.0
-	for i := c.first; i < c.last; i++ {
-		worst = math.Max(worst, math.Abs(times[i]-times[c.first]-float64(c.index[i-c.first])*step))
-	}
 	if missing := c.samples - (c.last - c.first); missing > 0 {
 		c.findings = append(c.findings, Finding{Code: "missing-samples", What: fmt.Sprintf("%d rows are missing; straight lines stand for them", missing)})
 	}
-	if worst > 0.02*step {
-		c.findings = append(c.findings, Finding{Code: "rounded-time", What: fmt.Sprintf("time stamps stand up to %.2g of a step off an even grid (rounded by the logger, or jitter); the rate is that of the whole column", worst/step)})
-	}
+	c.unevenness(times, step, grain)
 	return c, nil
 }
 
+// unevenness says how far stamps stand off an even grid: rounding where that
+// explains it, else jitter.
+func (c *clock) unevenness(times []float64, step, grain float64) {
+	worst := 0.0
+	for i := c.first; i < c.last; i++ {
+		worst = math.Max(worst, math.Abs(times[i]-times[c.first]-float64(c.at(i-c.first))*step))
+	}
+	switch {
+	case worst <= 0.02*step:
+	case worst <= 1.1*grain || grain >= step:
+		c.findings = append(c.findings, Finding{Code: "rounded-time", What: fmt.Sprintf("time stamps are rounded, by up to %.2g of a step; the rate is that of the whole column", worst/step)})
+	default:
+		c.findings = append(c.findings, Finding{Code: "jitter", What: fmt.Sprintf("time stamps stand up to %.2g of a step off an even grid; the rate is that of the whole column, and frequencies near the sampling limit suffer most", worst/step)})
+	}
+}
+
+// middleStep is the mean of the middle half of the steps, and the grain to which
+// stamps are rounded: the least difference between two unequal steps. Both are 0
+// where rows share stamps.
+func middleStep(times []float64) (guess, grain float64) {
+	n := len(times) - 1
+	stride := (n + stepsLooked - 1) / stepsLooked
+	sorted := make([]float64, 0, n/stride+1)
+	for i := 0; i < n; i += stride {
+		sorted = append(sorted, times[i+1]-times[i])
+	}
+	sort.Float64s(sorted)
+	quarter := len(sorted) / 4
+	if sorted[quarter] <= 0 {
+		return 0, 0
+	}
+	middle := sorted[quarter : len(sorted)-quarter]
+	for _, s := range middle {
+		guess += s / float64(len(middle))
+	}
+	grain = math.Inf(1)
+	for i := 1; i < len(sorted); i++ {
+		// Differences below a thousandth of a step are the arithmetic's, or do no harm.
+		if d := sorted[i] - sorted[i-1]; d > 1e-3*guess {
+			grain = math.Min(grain, d)
+		}
+	}
+	if math.IsInf(grain, 1) {
+		grain = 0
+	}
+	return guess, grain
+}
+
+// missed is how many sample steps one step of the stamps stands for.
+func missed(step, guess, grain float64) int {
+	if step <= 1.5*guess+min(grain, guess) {
+		return 1
+	}
+	return int(math.Round(step / guess))
+}
+
 // longest finds the longest stretch of rows without a gap.
-func (c *clock) longest(steps []float64, guess float64) {
+func (c *clock) longest(times []float64, guess, grain float64) {
 	from, best, gaps := 0, 0, 0
-	end := func(to int) { // rows from .. to
+	end := func(to int) { // rows from .. to, the latter with it
 		if to-from+1 > best {
 			best, c.first, c.last = to-from+1, from, to+1
 		}
 		from = to + 1
 	}
-	for i, s := range steps {
-		if s > (gapMost+0.5)*guess {
+	for i := 0; i+1 < len(times); i++ {
+		if times[i+1]-times[i] > (gapMost+0.5)*guess+min(grain, guess) {
 			gaps++
 			end(i)
 		}
 	}
-	end(len(steps))
+	end(len(times) - 1)
 	if gaps > 0 {
-		c.findings = append(c.findings, Finding{Code: "gap", What: fmt.Sprintf("%d gaps; the longest stretch without one is used: rows %d to %d of %d", gaps, c.first+1, c.last, len(steps)+1)})
+		c.findings = append(c.findings, Finding{Code: "gap", What: fmt.Sprintf("%d gap(s) in the time column; the longest stretch without one is used: rows %d to %d of %d", gaps, c.first+1, c.last, len(times))})
 	}
 }
 
-// number gives every row used its sample number. The guess of the step is
-// carried along, so that rounding never adds up to a whole step.
-func (c *clock) number(times, steps []float64, guess float64, coarse bool) {
-	c.index = make([]int, c.last-c.first)
-	at := 0
-	for i := 1; i < len(c.index); i++ {
-		jump := 1
-		if !coarse {
-			jump = max(1, int(math.Round(steps[c.first+i-1]/guess)))
+// number gives every row used its sample number.
+func (c *clock) number(times []float64, guess, grain float64) {
+	rows := c.last - c.first
+	extra := 0
+	for i := 1; i < rows; i++ {
+		if jump := missed(times[c.first+i]-times[c.first+i-1], guess, grain); jump > 1 {
+			if c.index == nil {
+				c.index = make([]int, rows)
+				for k := range i {
+					c.index[k] = k
+				}
+			}
+			extra += jump - 1
 		}
-		at += jump
-		c.index[i] = at
+		if c.index != nil {
+			c.index[i] = i + extra
+		}
 	}
-	c.samples = at + 1
+	c.samples = rows + extra
+}
+
+func (c *clock) at(row int) int {
+	if c.index == nil {
+		return row
+	}
+	return c.index[row]
 }
 
 // place puts the rows of a column onto the even grid, NaN where none is.
@@ -115,8 +168,8 @@ func (c *clock) place(column []float64) []float64 {
 	for i := range out {
 		out[i] = math.NaN()
 	}
-	for i, k := range c.index {
-		out[k] = column[c.first+i]
+	for i := range c.last - c.first {
+		out[c.at(i)] = column[c.first+i]
 	}
 	return out
 }

@@ -19,8 +19,9 @@ type columns struct {
 	scale float64 // s
 	kept  []int
 	times []float64 // s
-	lines []int     // of the first two rows, for messages
 	data  [][]float64
+	rows  int         // expected by the size of the file; 0: not known
+	early [][]float64 // the first rows of all columns, to tell which is a time
 }
 
 // timeNames are headings of a time column.
@@ -118,15 +119,58 @@ func (c *columns) factor(u string) (float64, bool) {
 	return 0, false
 }
 
+// earlyRows is how many rows are kept of every column.
+const earlyRows = 64
+
+// evenly names a column that rises evenly in the first rows, for a hint: "".
+func (c *columns) evenly() string {
+	for i, n := range c.head.names {
+		good := i != c.time && len(c.early) >= 3
+		for k := 1; good && k < len(c.early); k++ {
+			step, mean := c.early[k][i]-c.early[k-1][i], (c.early[len(c.early)-1][i]-c.early[0][i])/float64(len(c.early)-1)
+			good = step > 0 && math.Abs(step-mean) < 0.5*mean
+		}
+		if good {
+			return fmt.Sprintf("column %d (%s) rises evenly, as a time does: --time %d", i+1, n, i+1)
+		}
+	}
+	return "swapped columns? say which is the time: --time COLUMN"
+}
+
+// keepEarly notes one of the first rows.
+func (c *columns) keepEarly(row []string) {
+	if len(c.early) >= earlyRows {
+		return
+	}
+	values := make([]float64, len(row))
+	for i, f := range row {
+		v, ok := c.table.number(f)
+		if !ok {
+			v = math.NaN()
+		}
+		values[i] = v
+	}
+	c.early = append(c.early, values)
+}
+
 // read takes all rows in.
 func (c *columns) read() error {
 	c.data = make([][]float64, len(c.kept))
+	// Room for what the file can hold, so that nothing is copied as it grows.
+	room := int(min(int64(c.rows), samplesMost/int64(len(c.kept)+1)))
+	for k := range c.data {
+		c.data[k] = make([]float64, 0, room)
+	}
+	if c.time >= 0 {
+		c.times = make([]float64, 0, room)
+	}
 	row := c.head.first
 	for {
 		line, _ := c.table.place(0)
 		if len(row) != c.head.columns {
 			return fieldError("broken-row", line, 1, "%d fields, where the first row of numbers has %d", "a decimal comma beside commas between columns? write semicolons between columns", len(row), c.head.columns)
 		}
+		c.keepEarly(row)
 		if c.time >= 0 {
 			at, ok := c.instant(row[c.time])
 			if !ok {
@@ -135,7 +179,7 @@ func (c *columns) read() error {
 			}
 			if n := len(c.times); n > 0 && at < c.times[n-1] {
 				l, col := c.table.place(c.time)
-				return fieldError("time-turns-back", l, col, "the time goes from %.9g s back to %.9g s", "swapped columns? say which is the time: --time COLUMN", c.times[n-1], at)
+				return fieldError("time-turns-back", l, col, "the time goes from %.9g s back to %.9g s", c.readOn(), c.times[n-1], at)
 			}
 			c.times = append(c.times, at)
 		}
@@ -159,6 +203,18 @@ func (c *columns) read() error {
 	}
 }
 
+// readOn takes a few more rows in before a hint about columns is given.
+func (c *columns) readOn() string {
+	for len(c.early) < earlyRows {
+		row, err := c.table.next()
+		if err != nil || len(row) != c.head.columns {
+			break
+		}
+		c.keepEarly(row)
+	}
+	return c.evenly()
+}
+
 func (c *columns) instant(field string) (float64, bool) {
 	if c.stamp {
 		return c.table.stamp(field)
@@ -174,20 +230,14 @@ func (c *columns) record() (*Record, error) {
 		return nil, fieldError("empty-record", c.head.line, 1, "%d rows are no record", "", n)
 	}
 	rec := &Record{Rate: c.opt.Rate}
-	first, last := 0, n
 	if c.time >= 0 {
-		clock, err := readClock(c.times, c.head.line)
+		clock, err := readClock(c.times, c.head.line, c.time+1)
 		if err != nil {
 			return nil, err
 		}
 		rec.Rate, rec.Start, rec.Findings = clock.rate, c.times[clock.first], clock.findings
-		first, last = clock.first, clock.last
 		for k := range c.data {
 			c.data[k] = clock.place(c.data[k])
-		}
-	} else {
-		for k := range c.data {
-			c.data[k] = c.data[k][first:last]
 		}
 	}
 	for k, i := range c.kept {

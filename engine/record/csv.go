@@ -222,7 +222,14 @@ func (h *heading) name(before [][]string) {
 // ReadCSV reads a logger's table. Delimiters are commas, semicolons or tabs;
 // with the latter two commas may be decimal points. Rows above the first row of
 // numbers are headings, the last of them units where there are two.
-func ReadCSV(r io.Reader, opt Options) (*Record, error) {
+func ReadCSV(r io.ReadSeeker, opt Options) (*Record, error) {
+	size, err := r.Seek(0, io.SeekEnd)
+	if err != nil {
+		return nil, err
+	}
+	if _, err = r.Seek(0, io.SeekStart); err != nil {
+		return nil, err
+	}
 	t, err := open(r)
 	if err != nil {
 		return nil, err
@@ -231,7 +238,7 @@ func ReadCSV(r io.Reader, opt Options) (*Record, error) {
 	if err != nil {
 		return nil, err
 	}
-	c := &columns{table: t, head: h, opt: opt}
+	c := &columns{table: t, head: h, opt: opt, rows: rowsIn(size, h)}
 	if err := c.choose(); err != nil {
 		return nil, err
 	}
@@ -239,6 +246,16 @@ func ReadCSV(r io.Reader, opt Options) (*Record, error) {
 		return nil, err
 	}
 	return c.record()
+}
+
+// rowsIn is how many rows a file of so many bytes can hold at most: its rows
+// vary in length, and one that is shorter by more than a third is not planned for.
+func rowsIn(size int64, h *heading) int {
+	long := 0
+	for _, f := range h.first {
+		long += len(f) + 1
+	}
+	return int(size/int64(max(1, 2*long/3))) + 1
 }
 
 func fieldError(code string, line, column int, what, hint string, args ...any) error {

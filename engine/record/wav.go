@@ -2,6 +2,7 @@ package record
 
 import (
 	"encoding/binary"
+	"errors"
 	"fmt"
 	"io"
 	"math"
@@ -165,7 +166,7 @@ func readPCM(r io.ReadSeeker, s *wavShape, frames int64, take func([]float64, in
 	if _, err := r.Seek(0, io.SeekStart); err != nil {
 		return err
 	}
-	d := wav.NewDecoder(r)
+	d := wav.NewDecoder(whole{r})
 	if err := d.FwdToPCM(); err != nil {
 		return err
 	}
@@ -191,6 +192,19 @@ func readPCM(r io.ReadSeeker, s *wavShape, frames int64, take func([]float64, in
 		at += int64(n / s.channels)
 	}
 	return nil
+}
+
+// whole reads as much as is asked for: the decoder takes what one Read gives,
+// and would lose step with the channels after a short one.
+type whole struct{ io.ReadSeeker }
+
+// Read fills b, but for the end of the file.
+func (w whole) Read(b []byte) (int, error) {
+	n, err := io.ReadFull(w.ReadSeeker, b)
+	if n > 0 && errors.Is(err, io.ErrUnexpectedEOF) {
+		err = nil
+	}
+	return n, err
 }
 
 // readFloats hands blocks of floating-point samples over. The library's decoder
