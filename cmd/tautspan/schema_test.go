@@ -97,6 +97,12 @@ func TestDocumentsFollowTheirSchemas(t *testing.T) {
 		t.Fatal(err)
 	}
 	printed(t, 1, "sweep", "--json", "--out", "none", swept)
+	records := filepath.Join("..", "..", "testdata", "records")
+	printed(t, 0, "peaks", "--json", filepath.Join(records, "steel_e_open.wav"))
+	printed(t, 0, "peaks", "--json", "--channel", "mic_left", filepath.Join(records, "piano_c4_stereo_6000hz.csv"))
+	printed(t, 2, "peaks", "--json", "--channel", "9", filepath.Join(records, "steel_e_open.wav"))
+	printed(t, 2, "peaks", "--json", bad)
+	printed(t, 3, "peaks", "--json", filepath.Join(dir, "missing.csv"))
 	printed(t, 0, "tidy", "--json", short)
 	printed(t, 0, "why", "--json", "scope")
 	printed(t, 0, "scenarios", "--json")

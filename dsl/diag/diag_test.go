@@ -99,6 +99,16 @@ func TestPositions(t *testing.T) {
 	}
 }
 
+// TestExcerpt: one line of a file that is not held whole.
+func TestExcerpt(t *testing.T) {
+	f := NewExcerpt("long.csv", "1.5,x", 70_000)
+	got := Diagnostic{Code: "broken-row", Span: Span{f, 4, 5}, Summary: "no number"}.Text()
+	want := "long.csv 70000:5  no number\n    1.5,x\n        ~" + strings.Repeat(" ", 47) + "[broken-row]\n"
+	if got != want {
+		t.Errorf("got\n%s\nwant\n%s", got, want)
+	}
+}
+
 func TestList(t *testing.T) {
 	f, g := NewFile("f", "a\nb\n"), NewFile("g", "c\n")
 	var l List

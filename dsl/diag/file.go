@@ -11,6 +11,7 @@ type File struct {
 	name  string
 	text  string
 	lines []int // byte offset of the first byte of each line
+	above int   // lines of the file that stand before the text
 }
 
 // NewFile makes a File from its display name and its text. The text may hold
@@ -23,6 +24,14 @@ func NewFile(name, text string) *File {
 		}
 	}
 	return &File{name: name, text: text, lines: lines}
+}
+
+// NewExcerpt makes a File of one line of a file that is too long to be held; line
+// counts from 1.
+func NewExcerpt(name, text string, line int) *File {
+	f := NewFile(name, text)
+	f.above = max(0, line-1)
+	return f
 }
 
 // Name returns the display name of the file.
@@ -40,12 +49,12 @@ func (f *File) Position(offset int) (line, column int) {
 	offset = min(max(offset, 0), len(f.text))
 	line = sort.SearchInts(f.lines, offset+1)
 	start := f.lines[line-1]
-	return line, utf8.RuneCountInString(f.text[start:offset]) + 1
+	return f.above + line, utf8.RuneCountInString(f.text[start:offset]) + 1
 }
 
 // LineSpan returns the span of a line counted from 1, without its line end.
 func (f *File) LineSpan(line int) Span {
-	line = min(max(line, 1), len(f.lines))
+	line = min(max(line-f.above, 1), len(f.lines))
 	start, end := f.lines[line-1], len(f.text)
 	if line < len(f.lines) {
 		end = f.lines[line] - 1

@@ -36,7 +36,6 @@ func readClock(times []float64, line, column int) (*clock, error) {
 	guess, grain := middleStep(times)
 	c := &clock{last: n}
 	if guess <= 0 { // stamps coarser than the step: rows share them
-		guess = (times[n-1] - times[0]) / float64(n-1)
 		c.samples = n
 	} else {
 		c.longest(times, guess, grain)

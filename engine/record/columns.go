@@ -231,7 +231,7 @@ func (c *columns) record() (*Record, error) {
 	}
 	rec := &Record{Rate: c.opt.Rate}
 	if c.time >= 0 {
-		clock, err := readClock(c.times, c.head.line, c.time+1)
+		clock, err := readClock(c.times, c.head.line, 1)
 		if err != nil {
 			return nil, err
 		}

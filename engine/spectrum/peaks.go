@@ -22,6 +22,7 @@ type Peak struct {
 	Frequency, FrequencyU float64 // Hz, and one standard uncertainty
 	Level                 float64 // dB below the strongest: 0 or less
 	Prominence            float64 // dB above the noise nearby
+	Amplitude             float64 // in the samples' unit, where the analysis starts; NaN where no decay fits
 	Decay, DecayU         float64 // 1/s, of the amplitude; NaN where it cannot be told
 	Straight              bool    // the decay is one: see Why
 	Why                   string  // where it is not: beats, bends, too short, kept going
@@ -280,7 +281,7 @@ const (
 const steady = 0.35
 
 func peakOf(p top, t tone, strongest, duration, rate float64) Peak {
-	out := Peak{Frequency: p.frequency, Level: p.level - strongest, Prominence: p.prominence, Decay: math.NaN(), DecayU: math.NaN(), NearLimit: p.frequency > 0.4*rate}
+	out := Peak{Frequency: p.frequency, Level: p.level - strongest, Prominence: p.prominence, Amplitude: math.NaN(), Decay: math.NaN(), DecayU: math.NaN(), NearLimit: p.frequency > 0.4*rate}
 	// Without a fit a line's place is known to a fraction of its width that the
 	// noise allows.
 	out.FrequencyU = 1 / duration / math.Sqrt(math.Max(1, math.Pow(10, p.prominence/10)))
@@ -290,7 +291,7 @@ func peakOf(p top, t tone, strongest, duration, rate float64) Peak {
 	}
 	out.FrequencyU = t.frequencyU
 	if t.misfit < steady {
-		out.Frequency = t.frequency
+		out.Frequency, out.Amplitude = t.frequency, t.amplitude
 	} else {
 		// Kept going by wind or traffic, or several in one: the peak of the
 		// spectrum, known to the width of the line over the cycles seen.

@@ -9,6 +9,7 @@ import (
 type tone struct {
 	frequency, frequencyU float64 // Hz
 	decay, decayU         float64 // 1/s, of the amplitude
+	amplitude             float64 // at the first sample of the stretch analysed
 	misfit                float64 // rms of what is left, share of the rms of the band
 	rms                   float64 // dB, of the log envelope about its line
 	span, drop            float64 // s, dB: length and fall of the line
@@ -69,6 +70,7 @@ func (b *baseband) fit(floor float64) tone {
 	}
 	b.judge(&t, z, level, a, s, f, floor)
 	t.frequency = b.centre + f
+	t.amplitude = cmplx.Abs(a) * math.Exp(s*float64(skip)*b.step)
 	// The decay told is that of the envelope's line, which weighs early and late
 	// alike; where the fit, which weighs by power, sees another, that is its doubt.
 	t.decay, t.decayU = -sa, math.Hypot(t.decayU, (s+sa)/2)

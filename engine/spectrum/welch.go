@@ -84,3 +84,24 @@ func powerOfTwo(n int) int {
 	}
 	return p
 }
+
+// Thin is the density in dB at count places between two frequencies, each the
+// highest of its stretch so that no peak is lost, against the highest of all.
+func (d *Density) Thin(from, to float64, count int) []float64 {
+	out := make([]float64, count)
+	top := math.Inf(-1)
+	for k := range out {
+		a := int(math.Round((from + (to-from)*float64(k)/float64(count)) / d.Step))
+		b := int((from + (to-from)*float64(k+1)/float64(count)) / d.Step)
+		best := 0.0
+		for i := max(a, 0); i <= max(a, b) && i < len(d.Power); i++ {
+			best = math.Max(best, d.Power[i])
+		}
+		out[k] = 10 * math.Log10(math.Max(best, 1e-300))
+		top = math.Max(top, out[k])
+	}
+	for k := range out {
+		out[k] = math.Max(out[k]-top, -200)
+	}
+	return out
+}

@@ -57,7 +57,10 @@ func explain(code string) (string, bool) {
 	if text, ok := dsl.Explain(code); ok {
 		return text, true
 	}
-	text, ok := explanations()[code]
+	if text, ok := explanations()[code]; ok {
+		return text, true
+	}
+	text, ok := recordExplanations()[code]
 	return text, ok
 }
 
@@ -65,6 +68,9 @@ func explain(code string) (string, bool) {
 func codes() []string {
 	list := append([]string(nil), dsl.Codes()...)
 	for code := range explanations() {
+		list = append(list, code)
+	}
+	for code := range recordExplanations() {
 		list = append(list, code)
 	}
 	sort.Strings(list)

@@ -43,6 +43,7 @@ type grammar struct {
 	Respond   respondCmd   `cmd:"" help:"Steady vibration against frequency; shares of a wave reflected, passed, absorbed at joints and taken at ends."`
 	Arrivals  arrivalsCmd  `cmd:"" help:"The pulse ledger: which front reaches which watch, when, by which path, how strong."`
 	Run       runCmd       `cmd:"" help:"Solve with every solver that can, hold them against one another, judge the requirements."`
+	Peaks     peaksCmd     `cmd:"" help:"What a site record holds: peaks with uncertainty, decays, the series they form."`
 	Plan      planCmd      `cmd:"" help:"Before the climb: frequencies, sensor places off the nodes, record length, the intervals to expect."`
 	Sweep     sweepCmd     `cmd:"" help:"Where a let is best, where two values meet, and every case of what is varied."`
 	Worker    workerCmd    `cmd:"" hidden:"" help:"Lend this machine to sweeps (not built yet)."`
