@@ -25,8 +25,7 @@ const (
 )
 
 // readClock tells rate, missing rows and gaps from time stamps that loggers
-// round. A first guess of the step is the mean of the middle half of the steps;
-// with it every row gets a sample number, and the step is then that of the
+// round. A first guess of the step is the mean of the ordinary steps; with it every row gets a sample number, and the step is then that of the
 // longest stretch without a gap, (last - first)/(number of steps).
 func readClock(times []float64, line, column int) (*clock, error) {
 	n := len(times)
@@ -46,9 +45,6 @@ func readClock(times []float64, line, column int) (*clock, error) {
 	}
 	step := (times[c.last-1] - times[c.first]) / float64(c.samples-1)
 	c.rate = 1 / step
-	if missing := c.samples - (c.last - c.first); missing > 0 {
-		c.findings = append(c.findings, Finding{Code: "missing-samples", What: fmt.Sprintf("%d rows are missing; straight lines stand for them", missing)})
-	}
 	c.unevenness(times, step, grain)
 	return c, nil
 }
@@ -69,9 +65,8 @@ func (c *clock) unevenness(times []float64, step, grain float64) {
 	}
 }
 
-// middleStep is the mean of the middle half of the steps, and the grain to which
-// stamps are rounded: the least difference between two unequal steps. Both are 0
-// where rows share stamps.
+// middleStep is the mean of the ordinary steps, 0 where rows share stamps, and the
+// grain to which stamps are rounded.
 func middleStep(times []float64) (guess, grain float64) {
 	n := len(times) - 1
 	stride := (n + stepsLooked - 1) / stepsLooked
@@ -82,31 +77,73 @@ func middleStep(times []float64) (guess, grain float64) {
 	sort.Float64s(sorted)
 	quarter := len(sorted) / 4
 	if sorted[quarter] <= 0 {
+		for _, s := range sorted {
+			if s > 0 {
+				return 0, s
+			}
+		}
 		return 0, 0
 	}
-	middle := sorted[quarter : len(sorted)-quarter]
-	for _, s := range middle {
-		guess += s / float64(len(middle))
-	}
+	middle := mean(sorted[quarter : len(sorted)-quarter])
 	grain = math.Inf(1)
-	for i := 1; i < len(sorted); i++ {
+	ordinary := 0 // steps in which no row is missing, as far as the middle tells
+	for i, s := range sorted {
 		// Differences below a thousandth of a step are the arithmetic's, or do no harm.
-		if d := sorted[i] - sorted[i-1]; d > 1e-3*guess {
-			grain = math.Min(grain, d)
+		if i > 0 && s-sorted[i-1] > 1e-3*middle && s < 1.9*middle {
+			grain = math.Min(grain, s-sorted[i-1])
+		}
+		if s < 1.9*middle {
+			ordinary = i + 1
 		}
 	}
+	guess = mean(sorted[:ordinary])
 	if math.IsInf(grain, 1) {
 		grain = 0
+		if doubled(times, middle) {
+			return (times[n] - times[0]) / float64(n), middle
+		}
 	}
 	return guess, grain
 }
 
-// missed is how many sample steps one step of the stamps stands for.
-func missed(step, guess, grain float64) int {
-	if step <= 1.5*guess+min(grain, guess) {
-		return 1
+func mean(values []float64) float64 {
+	sum := 0.0
+	for _, v := range values {
+		sum += v
 	}
-	return int(math.Round(step / guess))
+	return sum / float64(len(values))
+}
+
+// doubled tells why some steps are twice the others, and none lies between: by
+// rounding to a grain of one short step they come evenly, and often; where rows are
+// missing they come anyhow, and seldom.
+func doubled(times []float64, short float64) bool {
+	count, last, least, most := 0, -1, math.MaxInt, 0
+	for i := 0; i+1 < len(times); i++ {
+		if step := times[i+1] - times[i]; step < 1.5*short || step > 2.5*short {
+			continue
+		}
+		if last >= 0 {
+			least, most = min(least, i-last), max(most, i-last)
+		}
+		last = i
+		count++
+	}
+	return count >= 5 && most-least <= 2
+}
+
+// missing is how many rows are missing between row i and the next. A late stamp is
+// followed by a short step: three steps together must be too long as well.
+func missing(times []float64, i int, guess, grain float64) int {
+	step := times[i+1] - times[i]
+	if step <= math.Max(1.5*guess, guess+1.01*grain) {
+		return 0
+	}
+	extra := math.Round(step/guess) - 1
+	if i > 0 && i+2 < len(times) {
+		extra = math.Min(extra, math.Floor((times[i+2]-times[i-1])/guess-3+0.25))
+	}
+	return max(0, int(extra))
 }
 
 // longest finds the longest stretch of rows without a gap.
@@ -119,7 +156,7 @@ func (c *clock) longest(times []float64, guess, grain float64) {
 		from = to + 1
 	}
 	for i := 0; i+1 < len(times); i++ {
-		if times[i+1]-times[i] > (gapMost+0.5)*guess+min(grain, guess) {
+		if times[i+1]-times[i] > (gapMost+0.5)*guess+grain {
 			gaps++
 			end(i)
 		}
@@ -135,14 +172,14 @@ func (c *clock) number(times []float64, guess, grain float64) {
 	rows := c.last - c.first
 	extra := 0
 	for i := 1; i < rows; i++ {
-		if jump := missed(times[c.first+i]-times[c.first+i-1], guess, grain); jump > 1 {
+		if more := missing(times[c.first:c.last], i-1, guess, grain); more > 0 {
 			if c.index == nil {
 				c.index = make([]int, rows)
 				for k := range i {
 					c.index[k] = k
 				}
 			}
-			extra += jump - 1
+			extra += more
 		}
 		if c.index != nil {
 			c.index[i] = i + extra

@@ -1,6 +1,7 @@
 package record
 
 import (
+	"bytes"
 	"encoding/binary"
 	"errors"
 	"fmt"
@@ -163,10 +164,10 @@ const framesBlock = 1 << 15
 
 // readPCM hands blocks of integer samples over, as parts of full scale.
 func readPCM(r io.ReadSeeker, s *wavShape, frames int64, take func([]float64, int64)) error {
-	if _, err := r.Seek(0, io.SeekStart); err != nil {
+	if _, err := r.Seek(s.dataAt, io.SeekStart); err != nil {
 		return err
 	}
-	d := wav.NewDecoder(whole{r})
+	d := wav.NewDecoder(&plain{io.MultiReader(bytes.NewReader(s.plainHead()), io.LimitReader(r, s.dataSize))})
 	if err := d.FwdToPCM(); err != nil {
 		return err
 	}
@@ -194,17 +195,40 @@ func readPCM(r io.ReadSeeker, s *wavShape, frames int64, take func([]float64, in
 	return nil
 }
 
-// whole reads as much as is asked for: the decoder takes what one Read gives,
-// and would lose step with the channels after a short one.
-type whole struct{ io.ReadSeeker }
+// plainHead is a head of the simplest form, with what scanWAV has found: the
+// decoder need not know extensible heads, other chunks, or sizes that lie.
+func (s *wavShape) plainHead() []byte {
+	b := append([]byte("RIFF"), 0, 0, 0, 0)
+	binary.LittleEndian.PutUint32(b[4:], uint32(s.dataSize+36))
+	b = append(b, "WAVEfmt "...)
+	b = binary.LittleEndian.AppendUint32(b, 16)
+	b = binary.LittleEndian.AppendUint16(b, formatPCM)
+	b = binary.LittleEndian.AppendUint16(b, uint16(s.channels))
+	b = binary.LittleEndian.AppendUint32(b, s.rate)
+	frame := s.channels * s.bits / 8
+	b = binary.LittleEndian.AppendUint32(b, s.rate*uint32(frame))
+	b = binary.LittleEndian.AppendUint16(b, uint16(frame))
+	b = binary.LittleEndian.AppendUint16(b, uint16(s.bits))
+	b = append(b, "data"...)
+	return binary.LittleEndian.AppendUint32(b, uint32((s.dataSize+1)&^1))
+}
 
-// Read fills b, but for the end of the file.
-func (w whole) Read(b []byte) (int, error) {
-	n, err := io.ReadFull(w.ReadSeeker, b)
+// plain is read forward only, and gives as much as is asked for: the decoder takes
+// what one Read gives, and would lose step with the channels after a short one.
+type plain struct{ r io.Reader }
+
+// Read fills b, but for the end.
+func (p *plain) Read(b []byte) (int, error) {
+	n, err := io.ReadFull(p.r, b)
 	if n > 0 && errors.Is(err, io.ErrUnexpectedEOF) {
 		err = nil
 	}
 	return n, err
+}
+
+// Seek is not needed for a head of the simplest form.
+func (p *plain) Seek(int64, int) (int64, error) {
+	return 0, errors.New("record: a WAV file is read forward only")
 }
 
 // readFloats hands blocks of floating-point samples over. The library's decoder

@@ -87,7 +87,7 @@ func Find(x []float64, rate float64, want Want) (*Result, error) {
 	}
 	r.From, r.To = float64(first)/rate, float64(first+len(x)-1)/rate
 	r.Step = rate / float64(len(x))
-	tops, err := tops(x, rate, want)
+	tops, err := allTops(x, rate, want)
 	if err != nil {
 		return nil, err
 	}
@@ -102,6 +102,42 @@ func Find(x []float64, rate float64, want Want) (*Result, error) {
 type top struct {
 	frequency, level, prominence float64 // Hz, dB absolute, dB
 	floor                        float64 // amplitude of the noise in one bin of the window
+	duration                     float64 // s, of the stretch that it was found in
+}
+
+// stretches are the shares of the record in which peaks are looked for: what has
+// died away long before the record ends is lost in a spectrum of the whole, whose
+// window is all but closed at its beginning.
+var stretches = []int{1, 4, 16}
+
+// allTops are the peaks of the whole stretch, and those of its beginning that the
+// whole does not show, the strongest first in number.
+func allTops(x []float64, rate float64, want Want) ([]top, error) {
+	var out []top
+	for _, k := range stretches {
+		n := len(x) / k
+		if k > 1 && n < 512 {
+			break
+		}
+		found, err := tops(x[:n], rate, want)
+		if err != nil && k == 1 {
+			return nil, err
+		}
+		apart := 4 * rate / float64(n) // half the window's main lobe
+		for _, p := range found {
+			known := false
+			for _, q := range out {
+				known = known || math.Abs(q.frequency-p.frequency) < apart
+			}
+			if !known {
+				out = append(out, p)
+			}
+		}
+	}
+	sort.Slice(out, func(a, b int) bool { return out[a].level > out[b].level })
+	out = out[:min(len(out), want.Count)]
+	sort.Slice(out, func(a, b int) bool { return out[a].frequency < out[b].frequency })
+	return out, nil
 }
 
 // tops finds the peaks of one spectrum of the whole stretch: Blackman-Harris
@@ -148,12 +184,9 @@ func tops(x []float64, rate float64, want Want) ([]top, error) {
 		}
 		out = append(out, top{
 			frequency: (float64(k) + shift) * bin, level: b - 0.25*(a-d)*shift, prominence: b - floor[k],
-			floor: math.Pow(10, floor[k]/20),
+			floor: math.Pow(10, floor[k]/20), duration: float64(n) / rate,
 		})
 	}
-	sort.Slice(out, func(a, b int) bool { return out[a].level > out[b].level })
-	out = out[:min(len(out), want.Count)]
-	sort.Slice(out, func(a, b int) bool { return out[a].frequency < out[b].frequency })
 	return out, nil
 }
 
@@ -243,6 +276,11 @@ func strike(x []float64, rate float64) (at int, found bool) {
 	return max(where, first) / block * block, where-first < len(x)/8
 }
 
+// quickly is how many times over a vibration must fall to 1/e within the record
+// that the whole record's spectrum does not show. Chosen: the window's weight lies
+// on its middle half.
+const quickly = 6
+
 // measure fits a decaying vibration in the band of each peak.
 func (r *Result) measure(t *transform, list []top, rate float64) {
 	strongest := math.Inf(-1)
@@ -259,13 +297,17 @@ func (r *Result) measure(t *transform, list []top, rate float64) {
 			}
 		}
 		// Narrow enough to leave neighbours out, wide enough to follow the decay.
-		duration := float64(t.n) / rate
+		duration := p.duration
 		sigma := math.Min(gap/6, math.Max(5/duration, 0.003*p.frequency))
 		sigma = math.Max(sigma, 1.5/duration)
 		b := t.around(p.frequency, sigma)
 		// The window's bin holds noise of a width of 2/T; the band of sigma sqrt(pi).
 		floor := p.floor * math.Sqrt(sigma*math.Sqrt(math.Pi)*duration/2)
-		r.Peaks = append(r.Peaks, peakOf(p, b.fit(floor), strongest, duration, rate))
+		tone := b.fit(floor)
+		if whole := float64(t.n) / rate; duration < 0.9*whole && !(tone.ok && tone.misfit < steady && tone.decay > quickly/whole) {
+			continue // the whole record would show it, if it were there
+		}
+		r.Peaks = append(r.Peaks, peakOf(p, tone, strongest, duration, rate))
 	}
 }
 

@@ -14,8 +14,14 @@ type Series struct {
 	RMS     float64 // relative, of those that belong
 }
 
+// guessPeaks strongest peaks over each number up to guessOrders give first guesses.
+const (
+	guessPeaks  = 8
+	guessOrders = 6
+)
+
 // FitSeries numbers peaks as partials of one stiff string and fits f0 and B. Every
-// first guess of f0 from a peak over a small number is tried, the one that takes
+// first guess of f0 from a strong peak over a small number is tried, the one that takes
 // in the strongest peaks with the fewest orders skipped wins; then numbers and fit
 // are renewed in turn, and partials more than four robust deviations off are left
 // out. ok is false where fewer than four peaks make a series.
@@ -24,8 +30,13 @@ func FitSeries(peaks []Peak) (s Series, ok bool) {
 		return Series{}, false
 	}
 	best := math.Inf(-1)
-	for i := 0; i < min(len(peaks), 6); i++ {
-		for n := 1; n <= 4; n++ {
+	strongest := make([]int, len(peaks))
+	for i := range strongest {
+		strongest[i] = i
+	}
+	sort.Slice(strongest, func(a, b int) bool { return peaks[strongest[a]].Level > peaks[strongest[b]].Level })
+	for _, i := range strongest[:min(len(peaks), guessPeaks)] {
+		for n := 1; n <= guessOrders; n++ {
 			t := Series{F0: peaks[i].Frequency / float64(n)}
 			if !t.settle(peaks) {
 				continue

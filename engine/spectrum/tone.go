@@ -9,6 +9,7 @@ import (
 type tone struct {
 	frequency, frequencyU float64 // Hz
 	decay, decayU         float64 // 1/s, of the amplitude
+	lineU                 float64 // 1/s, of the slope of the log envelope if there were no more than the noise nearby
 	amplitude             float64 // at the first sample of the stretch analysed
 	misfit                float64 // rms of what is left, share of the rms of the band
 	rms                   float64 // dB, of the log envelope about its line
@@ -71,9 +72,14 @@ func (b *baseband) fit(floor float64) tone {
 	b.judge(&t, z, level, a, s, f, floor)
 	t.frequency = b.centre + f
 	t.amplitude = cmplx.Abs(a) * math.Exp(s*float64(skip)*b.step)
-	// The decay told is that of the envelope's line, which weighs early and late
-	// alike; where the fit, which weighs by power, sees another, that is its doubt.
-	t.decay, t.decayU = -sa, math.Hypot(t.decayU, (s+sa)/2)
+	t.decay = s
+	// Least squares weighs by power and is best in plain noise. Where it and the
+	// envelope's line differ by more than the noise explains, the line is not quite
+	// straight: the envelope, which weighs early and late alike, says what the whole
+	// stretch does, and the difference is part of its doubt.
+	if gap := math.Abs(s + sa); gap > 3*t.lineU {
+		t.decay, t.decayU = -sa, math.Hypot(t.decayU, gap/2)
+	}
 	return t
 }
 
@@ -144,6 +150,14 @@ func (b *baseband) judge(t *tone, z []complex128, level []float64, a complex128,
 	u := math.Sqrt(variance / 2 * w0 / det)
 	t.decayU, t.frequencyU = u, u/(2*math.Pi)
 	l, slope := line(level, b.step)
+	middle, bottom, top := float64(len(level)-1)/2, 0.0, 0.0
+	for i := range level {
+		// Noise of rms floor moves ln|z| by floor/(sqrt(2)|z|), the line taken for |z|.
+		d := (float64(i) - middle) * b.step
+		bottom += d * d
+		top += math.Pow(d*floor/math.Exp(l+slope*float64(i)*b.step), 2) / 2
+	}
+	t.lineU = math.Sqrt(top*b.alike(nil)) / bottom
 	sum := 0.0
 	for i, v := range level {
 		d := v - l - slope*float64(i)*b.step
