@@ -27,6 +27,8 @@ type Peak struct {
 	Straight              bool    // the decay is one: see Why
 	Why                   string  // where it is not: beats, bends, too short, kept going
 	NearLimit             bool    // close to half the sampling rate: it may be an alias
+
+	single bool // beyond doubt one line: hardly anything is left of its band, which no neighbour narrows
 }
 
 // DampingRatio is s/sqrt((2 pi f)^2 + s^2).
@@ -43,8 +45,9 @@ type Result struct {
 	Notes    []string
 }
 
-// Limits of what is analysed at once: 2^22 samples are 7 minutes at 10 kHz.
-const analysedMost = 1 << 22
+// analysedMost bounds the samples of one transform: 3.5 minutes at 10 kHz. Longer
+// records are analysed in two bands, see bands.
+const analysedMost = 1 << 21
 
 // afterStrike is how long after a strike the analysis starts, s: what the mallet
 // and the first waves add has gone by then. Common practice, no source.
@@ -75,27 +78,61 @@ func Find(x []float64, rate float64, want Want) (*Result, error) {
 	}
 	r := &Result{}
 	first := 0
-	if at, struck := strike(x, rate); struck && !want.WholeStart {
+	if at, struck := strike(x, rate); struck && !want.WholeStart && !goesOn(x[at:]) {
 		if skip := int(afterStrike * rate); len(x)-at > 4*skip {
 			first, r.Struck = at+skip, true
 		}
 	}
 	x = x[first:]
-	if len(x) > analysedMost {
-		r.Notes = append(r.Notes, fmt.Sprintf("%.4g s of the record are analysed, from %.4g s on", float64(analysedMost)/rate, float64(first)/rate))
-		x = x[:analysedMost]
-	}
 	r.From, r.To = float64(first)/rate, float64(first+len(x)-1)/rate
 	r.Step = rate / float64(len(x))
-	tops, err := allTops(x, rate, want)
-	if err != nil {
-		return nil, err
+	parts := bands(x, rate, want)
+	switch {
+	case len(parts) == 1 && len(parts[0].x) == analysedMost && len(x) > analysedMost:
+		r.Notes = append(r.Notes, fmt.Sprintf("peaks are of the first %.4g s", analysedMost/rate))
+	case len(parts) > 1:
+		r.Notes = append(r.Notes, fmt.Sprintf("peaks below %.4g Hz are of the whole record, those above of its first %.4g s", parts[0].high, float64(len(parts[1].x))/parts[1].rate))
 	}
-	if len(tops) == 0 {
+	strongest := math.Inf(-1)
+	for i := range parts {
+		p := &parts[i]
+		var err error
+		if p.tops, err = p.allTops(want); err != nil {
+			return nil, err
+		}
+		for _, t := range p.tops {
+			strongest = math.Max(strongest, t.level)
+		}
+	}
+	var rough [][]resonance
+	for i := range parts {
+		var found []resonance
+		if !r.Struck && goesOn(parts[i].x) {
+			found = parts[i].ambient()
+		}
+		for _, a := range found {
+			strongest = math.Max(strongest, a.level)
+		}
+		rough = append(rough, found)
+	}
+	for i := range parts {
+		r.measure(&parts[i], strongest, want)
+	}
+	for _, found := range rough {
+		r.overAmbient(found, strongest, rate/2)
+	}
+	if len(r.Peaks) == 0 {
 		return nil, &ErrNothing{"no peak stands out of the noise"}
 	}
-	r.measure(newTransform(x, rate), tops, rate)
+	r.strongest(want.Count)
 	return r, nil
+}
+
+// strongest keeps so many peaks, rising by frequency.
+func (r *Result) strongest(count int) {
+	sort.SliceStable(r.Peaks, func(a, b int) bool { return r.Peaks[a].Level > r.Peaks[b].Level })
+	r.Peaks = r.Peaks[:min(len(r.Peaks), count)]
+	sort.Slice(r.Peaks, func(a, b int) bool { return r.Peaks[a].Frequency < r.Peaks[b].Frequency })
 }
 
 // top is a peak of the spectrum before it is measured.
@@ -111,8 +148,10 @@ type top struct {
 var stretches = []int{1, 4, 16}
 
 // allTops are the peaks of the whole stretch, and those of its beginning that the
-// whole does not show, the strongest first in number.
-func allTops(x []float64, rate float64, want Want) ([]top, error) {
+// whole does not show.
+func (b *band) allTops(want Want) ([]top, error) {
+	x, rate := b.x, b.rate
+	want.Low, want.High = b.low, b.high
 	var out []top
 	for _, k := range stretches {
 		n := len(x) / k
@@ -134,18 +173,18 @@ func allTops(x []float64, rate float64, want Want) ([]top, error) {
 			}
 		}
 	}
-	sort.Slice(out, func(a, b int) bool { return out[a].level > out[b].level })
-	out = out[:min(len(out), want.Count)]
-	sort.Slice(out, func(a, b int) bool { return out[a].frequency < out[b].frequency })
 	return out, nil
 }
 
 // tops finds the peaks of one spectrum of the whole stretch: Blackman-Harris
-// window, padded at least four times, a parabola through the logarithm of three
+// window, padded four times (twice where it is long), a parabola through the logarithm of three
 // bins. The noise is the running median over about 60 widths of a line.
 func tops(x []float64, rate float64, want Want) ([]top, error) {
 	n := len(x)
 	size := powerOfTwo(4 * n)
+	if n > analysedMost/4 {
+		size = powerOfTwo(2 * n) // memory; the parabola does the rest
+	}
 	w := blackmanHarris(n)
 	gain, mean := 0.0, 0.0
 	for i, v := range x {
@@ -221,12 +260,15 @@ func saddle(level []float64, k int) float64 {
 }
 
 // runningMedian is the median over 60 widths about each bin, worked out at every
-// width and straight between.
+// width (every fourth where there are many) and straight between.
 func runningMedian(level []float64, width int) []float64 {
-	half := 30 * width
+	half, apart := 30*width, width
+	if len(level) > 1<<18 {
+		apart = 4 * width // time
+	}
 	var at []int
 	var mid []float64
-	for k := 0; ; k += width {
+	for k := 0; ; k += apart {
 		k = min(k, len(level)-1)
 		// A tenth of the bins is enough for a median, and a padded spectrum's
 		// neighbours say the same.
@@ -282,12 +324,12 @@ func strike(x []float64, rate float64) (at int, found bool) {
 const quickly = 6
 
 // measure fits a decaying vibration in the band of each peak.
-func (r *Result) measure(t *transform, list []top, rate float64) {
-	strongest := math.Inf(-1)
-	for _, p := range list {
-		strongest = math.Max(strongest, p.level)
-	}
+func (r *Result) measure(part *band, strongest float64, want Want) {
+	t, list := newTransform(part.x, part.rate), part.tops
 	for i, p := range list {
+		if p.level < strongest-want.Below {
+			continue
+		}
 		gap := p.frequency
 		for k, other := range list {
 			// What is 30 dB weaker hardly bends a line; it is not worth a band so
@@ -298,16 +340,25 @@ func (r *Result) measure(t *transform, list []top, rate float64) {
 		}
 		// Narrow enough to leave neighbours out, wide enough to follow the decay.
 		duration := p.duration
-		sigma := math.Min(gap/6, math.Max(5/duration, 0.003*p.frequency))
+		wide := math.Max(5/duration, 0.003*p.frequency)
+		sigma := math.Min(gap/6, wide)
 		sigma = math.Max(sigma, 1.5/duration)
 		b := t.around(p.frequency, sigma)
 		// The window's bin holds noise of a width of 2/T; the band of sigma sqrt(pi).
 		floor := p.floor * math.Sqrt(sigma*math.Sqrt(math.Pi)*duration/2)
 		tone := b.fit(floor)
-		if whole := float64(t.n) / rate; duration < 0.9*whole && !(tone.ok && tone.misfit < steady && tone.decay > quickly/whole) {
+		if whole := float64(t.n) / t.rate; duration < 0.9*whole && !(tone.ok && tone.misfit < steady && tone.decay > quickly/whole) {
 			continue // the whole record would show it, if it were there
 		}
-		r.Peaks = append(r.Peaks, peakOf(p, tone, strongest, duration, rate))
+		out := peakOf(p, tone, strongest, duration, part.limit)
+		out.single = tone.ok && tone.misfit < math.Max(single, math.Min(2*tone.expected, steady)) && !(gap/6 < wide && gap < p.frequency)
+		// A band that must be so narrow rings through half the record and would
+		// smooth the beats away.
+		if ringing := 6 / (2 * math.Pi * sigma); ringing > duration/2 && gap < p.frequency {
+			out.Straight, out.Decay, out.DecayU = false, tone.decay, math.Inf(1)
+			out.Why = fmt.Sprintf("beats with a neighbour %.3g Hz away", gap)
+		}
+		r.Peaks = append(r.Peaks, out)
 	}
 }
 
@@ -322,8 +373,12 @@ const (
 // steady is the misfit above which a band is no single decaying vibration.
 const steady = 0.35
 
-func peakOf(p top, t tone, strongest, duration, rate float64) Peak {
-	out := Peak{Frequency: p.frequency, Level: p.level - strongest, Prominence: p.prominence, Amplitude: math.NaN(), Decay: math.NaN(), DecayU: math.NaN(), NearLimit: p.frequency > 0.4*rate}
+// single is the misfit, beyond that of the noise, below which it is one beyond doubt: the rough spectrum of a
+// resonance that wind keeps going has spikes that look like lines. Chosen.
+const single = 0.15
+
+func peakOf(p top, t tone, strongest, duration, limit float64) Peak {
+	out := Peak{Frequency: p.frequency, Level: p.level - strongest, Prominence: p.prominence, Amplitude: math.NaN(), Decay: math.NaN(), DecayU: math.NaN(), NearLimit: p.frequency > 0.8*limit}
 	// Without a fit a line's place is known to a fraction of its width that the
 	// noise allows.
 	out.FrequencyU = 1 / duration / math.Sqrt(math.Max(1, math.Pow(10, p.prominence/10)))

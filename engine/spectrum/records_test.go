@@ -138,8 +138,10 @@ func TestRealStrings(t *testing.T) {
 						t.Logf("%s partial %d at %.2f Hz: clean there, here %s (%.3f against %.3f)", c.file, p.n, p.frequency, q.Why, q.Decay, p.decay)
 					}
 				} else if q.Straight {
-					if p.off > 2 {
-						t.Errorf("%s partial %d: straight here, %.1f dB rms off its line there", c.file, p.n, p.off)
+					// Here a line is followed less far down into the noise, and may be
+					// straight so far; then its slope is the other analysis' all the same.
+					if p.off > 2 && math.Abs(q.Decay/p.decay-1) > 0.2 {
+						t.Errorf("%s partial %d: straight with %.3g/s here, %.1f dB rms off its line of %.3g/s there", c.file, p.n, q.Decay, p.off, p.decay)
 					}
 					t.Logf("%s partial %d at %.2f Hz: straight here (%.3f), not clean there (%.3f)", c.file, p.n, p.frequency, q.Decay, p.decay)
 				}

@@ -12,6 +12,7 @@ type tone struct {
 	lineU                 float64 // 1/s, of the slope of the log envelope if there were no more than the noise nearby
 	amplitude             float64 // at the first sample of the stretch analysed
 	misfit                float64 // rms of what is left, share of the rms of the band
+	expected              float64 // the misfit that the noise nearby would make
 	rms                   float64 // dB, of the log envelope about its line
 	span, drop            float64 // s, dB: length and fall of the line
 	halves                [2]float64
@@ -142,7 +143,7 @@ func (b *baseband) judge(t *tone, z []complex128, level []float64, a complex128,
 		whole += real(v)*real(v) + imag(v)*imag(v)
 	}
 	n := float64(len(z))
-	t.misfit = math.Sqrt(left / whole)
+	t.misfit, t.expected = math.Sqrt(left/whole), floor*math.Sqrt(n/whole)
 	variance := math.Max(left/math.Max(n-2, 1), floor*floor) // of a complex sample
 	variance *= b.alike(residual)
 	det := w0*w2 - w1*w1
