@@ -351,7 +351,9 @@ func (r *Result) measure(part *band, strongest float64, want Want) {
 			continue // the whole record would show it, if it were there
 		}
 		out := peakOf(p, tone, strongest, duration, part.limit)
-		out.single = tone.ok && tone.misfit < math.Max(single, math.Min(2*tone.expected, steady)) && !(gap/6 < wide && gap < p.frequency)
+		dies := tone.misfit < single/3 && tone.decay*float64(t.n)/t.rate > quickly
+		crowded := gap/6 < wide && gap < p.frequency && !dies
+		out.single = tone.ok && tone.misfit < math.Max(single, 1.3*tone.expected) && !crowded
 		// A band that must be so narrow rings through half the record and would
 		// smooth the beats away.
 		if ringing := 6 / (2 * math.Pi * sigma); ringing > duration/2 && gap < p.frequency {
