@@ -119,7 +119,13 @@ func (a *arrow) shift(p *shifted, f factor, h float64, w *[loadDegree + 1]float6
 		}
 	}
 	for _, b := range a.brackets {
-		p.inv[b.end*n+b.end] += complex(b.k, 0) * p.s / (p.s + complex(b.k/b.c, 0))
+		z := complex(b.k, 0) * p.s / (p.s + complex(b.k/b.c, 0))
+		p.inv[b.end*n+b.end] += z
+		if b.other >= 0 {
+			p.inv[b.other*n+b.other] += z
+			p.inv[b.end*n+b.other] -= z
+			p.inv[b.other*n+b.end] -= z
+		}
 	}
 	for e := range a.elements {
 		el := &a.elements[e]
@@ -301,7 +307,11 @@ func (a *arrow) endRight(p *shifted, st *state, loaded bool) {
 	}
 	for b := range a.brackets {
 		k := &a.brackets[b]
-		a.rh[k.end] += complex(k.k*(st.x[n+k.end]-st.r[b]), 0) * p.s / (complex(k.k/k.c, 0) + p.s)
+		pull := complex(k.k*(k.across(st.x, n)-st.r[b]), 0) * p.s / (complex(k.k/k.c, 0) + p.s)
+		a.rh[k.end] += pull
+		if k.other >= 0 {
+			a.rh[k.other] -= pull
+		}
 	}
 }
 
@@ -312,7 +322,11 @@ func (a *arrow) update(p *shifted, st *state) {
 	for b := range a.brackets {
 		k := &a.brackets[b]
 		rho := complex(k.k/k.c, 0)
-		q := rho * (a.us[k.end] - complex(st.x[n+k.end]-st.r[b], 0)) / (rho + p.s)
+		u := a.us[k.end]
+		if k.other >= 0 {
+			u -= a.us[k.other]
+		}
+		q := rho * (u - complex(k.across(st.x, n)-st.r[b], 0)) / (rho + p.s)
 		st.r[b] += real(p.c * q)
 	}
 	for i, u := range a.us {
@@ -392,7 +406,11 @@ func (a *arrow) accel(dst, x, v, r, f []float64) {
 	}
 	for b := range a.brackets {
 		k := &a.brackets[b]
-		dst[n+k.end] -= k.k * (x[n+k.end] - r[b])
+		pull := k.k * (k.across(x, n) - r[b])
+		dst[n+k.end] -= pull
+		if k.other >= 0 {
+			dst[n+k.other] += pull
+		}
 	}
 	for e := range a.elements {
 		el := &a.elements[e]
@@ -470,7 +488,7 @@ func (a *arrow) stored(x, v, r []float64) float64 {
 	}
 	for b := range a.brackets {
 		k := &a.brackets[b]
-		d := x[n+k.end] - r[b]
+		d := k.across(x, n) - r[b]
 		sum += k.k * d * d
 	}
 	return sum / 2

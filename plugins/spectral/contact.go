@@ -20,7 +20,7 @@ type contact struct {
 	tie    *mesh.Link // of a tie that goes slack, along upper minus lower end
 	place  float64    // m, for formulas
 	e      float64    // elongation now
-	slip   float64    // m, where a friction's slider is; of friction through a spring
+	slip   float64    // m, where the slider of a friction or the dashpot of a tie behind a spring is
 	states []float64
 	next   []float64 // states at the step's end, after force
 	args   []float64
@@ -90,9 +90,13 @@ func stopEnergy(s *mesh.Stop, u float64) float64 {
 // difference of energies, its dashpot while it is taut.
 func (c *contact) pull(e1, d float64) float64 {
 	stop := mesh.Stop{Spring: c.tie.Spring, Up: true}
-	f := secant(&stop, c.e, e1)
-	if (c.e+e1)/2 > 0 {
-		f += c.tie.Dashpot * (e1 - c.e) / d
+	f, mid := secant(&stop, c.e, e1), (c.e+e1)/2
+	if k, damp := c.tie.Through, c.tie.Dashpot; mid > 0 && damp > 0 {
+		if k > 0 { // the bracket's force by the implicit midpoint rule
+			f += k * (mid - c.slip) / (1 + k*d/(2*damp))
+		} else {
+			f += damp * (e1 - c.e) / d
+		}
 	}
 	return math.Max(0, f)
 }
@@ -175,6 +179,15 @@ func (c *contact) settle(e1, f float64, s step) (lost float64) {
 	switch {
 	case c.tie != nil:
 		c.held = stopEnergy(&mesh.Stop{Spring: c.tie.Spring, Up: true}, e1)
+		if k, damp := c.tie.Through, c.tie.Dashpot; k > 0 && damp > 0 {
+			mid := (c.e + e1) / 2
+			if mid > 0 {
+				c.slip += s.d / damp * k * (mid - c.slip) / (1 + k*s.d/(2*damp))
+			} else {
+				c.slip = e1 // slack, and its bracket at rest
+			}
+			c.held += k * (e1 - c.slip) * (e1 - c.slip) / 2
+		}
 	case c.law.Stop != nil:
 		c.held = c.weight * stopEnergy(c.law.Stop, e1)
 	case c.law.Friction != nil && c.law.Friction.Through > 0:

@@ -134,8 +134,8 @@ func (m *meter) powers(st *state, tau, h float64) (work, loss rates) {
 	in := m.sys.inner
 	for b := range m.sys.brackets {
 		k := &m.sys.brackets[b]
-		m.rd[b] = k.k / k.c * (st.x[in+k.end] - st.r[b])
-		m.rdd[b] = k.k / k.c * (st.v[in+k.end] - m.rd[b])
+		m.rd[b] = k.k / k.c * (k.across(st.x, in) - st.r[b])
+		m.rdd[b] = k.k / k.c * (k.across(st.v, in) - m.rd[b])
 	}
 	if m.stiff != nil {
 		m.stiff.settle(m.a, st.v, f1, h)
@@ -179,16 +179,17 @@ func (m *meter) losses(st *state, h float64) rates {
 		2*dot(m.i, m.c[0]) + 6*dot(m.j, m.c[1])}
 	for b := range m.sys.brackets {
 		k := &m.sys.brackets[b]
-		i := m.sys.inner + k.end
+		in := m.sys.inner
+		v, a, j, i := k.across(st.v, in), k.across(m.a, in), k.across(m.j, in), k.across(m.i, in)
 		var f rates
 		if k.k/k.c*h > stiffLimit {
 			e := k.c / k.k
-			f = rates{k.c * (st.v[i] - e*(m.a[i]-e*m.j[i])), k.c * (m.a[i] - e*(m.j[i]-e*m.i[i])), k.c * (m.j[i] - e*m.i[i]), k.c * m.i[i]}
+			f = rates{k.c * (v - e*(a-e*j)), k.c * (a - e*(j-e*i)), k.c * (j - e*i), k.c * i}
 		} else {
-			f[0] = k.k * (st.x[i] - st.r[b])
-			f[1] = k.k * (st.v[i] - m.rd[b])
-			f[2] = k.k * (m.a[i] - m.rdd[b])
-			f[3] = k.k * (m.j[i] - f[2]/k.c)
+			f[0] = k.k * (k.across(st.x, in) - st.r[b])
+			f[1] = k.k * (v - m.rd[b])
+			f[2] = k.k * (a - m.rdd[b])
+			f[3] = k.k * (j - f[2]/k.c)
 		}
 		loss.product(f, rates{f[0] / k.c, f[1] / k.c, f[2] / k.c, f[3] / k.c})
 	}

@@ -133,7 +133,12 @@ func (f *frame) shift(fc factor, h float64, w *[loadDegree + 1]float64) framePol
 		}
 	}
 	for _, b := range f.brackets {
-		p.outer.add(f.place[b.end], f.place[b.end], complex(b.k, 0)*p.s/(p.s+complex(b.k/b.c, 0)))
+		z := complex(b.k, 0) * p.s / (p.s + complex(b.k/b.c, 0))
+		p.outer.add(f.place[b.end], f.place[b.end], z)
+		if b.other >= 0 {
+			p.outer.add(f.place[b.other], f.place[b.other], z)
+			p.outer.add(f.place[b.end], f.place[b.other], -z)
+		}
 	}
 	for e := range f.elements {
 		el := &f.elements[e]
@@ -305,9 +310,11 @@ func (f *frame) apply(p *framePole, st *state, ld *load) {
 	}
 	for b := range f.brackets {
 		k := &f.brackets[b]
-		i := f.inner + k.end
-		d := complex(k.k*(st.x[i]-st.r[b]), 0)
-		t[i] += d * p.s / (complex(k.k/k.c, 0) + p.s)
+		pull := complex(k.k*(k.across(st.x, f.inner)-st.r[b]), 0) * p.s / (complex(k.k/k.c, 0) + p.s)
+		t[f.inner+k.end] += pull
+		if k.other >= 0 {
+			t[f.inner+k.other] -= pull
+		}
 	}
 	if ld != nil && ld.active {
 		for j := range ld.at {
@@ -346,7 +353,11 @@ func (f *frame) update(p *framePole, st *state, t []complex128) {
 	for b := range f.brackets {
 		k := &f.brackets[b]
 		rho := complex(k.k/k.c, 0)
-		q := rho * (t[f.inner+k.end] - complex(st.x[f.inner+k.end]-st.r[b], 0)) / (rho + p.s)
+		u := t[f.inner+k.end]
+		if k.other >= 0 {
+			u -= t[f.inner+k.other]
+		}
+		q := rho * (u - complex(k.across(st.x, f.inner)-st.r[b], 0)) / (rho + p.s)
 		st.r[b] += real(p.c * q)
 	}
 	cs := p.c * p.s
@@ -465,7 +476,11 @@ func (f *frame) accel(dst, x, v, r, load []float64) {
 	}
 	for b := range f.brackets {
 		k := &f.brackets[b]
-		dst[f.inner+k.end] -= k.k * (x[f.inner+k.end] - r[b])
+		pull := k.k * (k.across(x, f.inner) - r[b])
+		dst[f.inner+k.end] -= pull
+		if k.other >= 0 {
+			dst[f.inner+k.other] += pull
+		}
 	}
 	if load != nil {
 		for k := range dst[:n] {
@@ -510,7 +525,7 @@ func (f *frame) stored(x, v, r []float64) float64 {
 	sum += dot(f.fx, v[:f.size()])
 	for b := range f.brackets {
 		k := &f.brackets[b]
-		d := x[f.inner+k.end] - r[b]
+		d := k.across(x, f.inner) - r[b]
 		sum += k.k * d * d
 	}
 	return sum / 2

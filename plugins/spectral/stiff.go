@@ -47,6 +47,10 @@ func newStiff(s *system, h float64) *stiff {
 		if k.k/k.c*h > stiffLimit {
 			st.fast[b] = true
 			c.SetSym(k.end, k.end, c.At(k.end, k.end)+k.c/s.mass[k.end])
+			if o := k.other; o >= 0 {
+				c.SetSym(o, o, c.At(o, o)+k.c/s.mass[o])
+				c.SetSym(k.end, o, c.At(k.end, o)-k.c/math.Sqrt(s.mass[k.end]*s.mass[o]))
+			}
 		}
 	}
 	for i := 0; i < n; i++ {

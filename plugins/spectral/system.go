@@ -36,6 +36,7 @@ type entry struct {
 // bracket is a spring and dashpot in series at an end point.
 type bracket struct {
 	end   int     // end point
+	other int     // the one at its far end; -1: ground
 	k     float64 // N/m
 	c     float64 // N s/m
 	start float64 // m
@@ -250,7 +251,7 @@ func (s *system) attach() {
 		}
 		for _, b := range nd.Brackets {
 			if b.K > 0 && b.C > 0 {
-				s.brackets = append(s.brackets, bracket{end: end, k: b.K, c: b.C, start: b.Start})
+				s.brackets = append(s.brackets, bracket{end: end, other: -1, k: b.K, c: b.C, start: b.Start})
 			}
 		}
 	}
@@ -259,14 +260,43 @@ func (s *system) attach() {
 		if l.A == l.B || l.Slack {
 			continue
 		}
-		s.couple(a, a, l.Spring, l.Dashpot)
-		s.couple(b, b, l.Spring, l.Dashpot)
-		s.couple(a, b, -l.Spring, -l.Dashpot)
-		s.couple(b, a, -l.Spring, -l.Dashpot)
+		dashpot := l.Dashpot
+		if l.Through > 0 {
+			s.tieBracket(&l)
+			dashpot = 0
+		}
+		s.couple(a, a, l.Spring, dashpot)
+		s.couple(b, b, l.Spring, dashpot)
+		s.couple(a, b, -l.Spring, -dashpot)
+		s.couple(b, a, -l.Spring, -dashpot)
 	}
 	for i := range s.rows {
 		sort.Slice(s.rows[i], func(a, b int) bool { return s.rows[i][a].col < s.rows[i][b].col })
 	}
+}
+
+// tieBracket adds a tie's dashpot behind a bracket, relaxed at the start.
+func (s *system) tieBracket(l *mesh.Link) {
+	a, b := l.A, l.B
+	if s.nodeEnd[a] < 0 {
+		a, b = b, a
+	}
+	if s.nodeEnd[a] < 0 || l.Dashpot == 0 {
+		return
+	}
+	k := bracket{end: s.nodeEnd[a], other: max(-1, s.nodeEnd[b]), k: l.Through, c: l.Dashpot, start: s.m.Nodes[a].Start}
+	if k.other >= 0 {
+		k.start -= s.m.Nodes[b].Start
+	}
+	s.brackets = append(s.brackets, k)
+}
+
+// across is the difference between a bracket's ends; in is where the end points start.
+func (k *bracket) across(x []float64, in int) float64 {
+	if k.other < 0 {
+		return x[in+k.end]
+	}
+	return x[in+k.end] - x[in+k.other]
 }
 
 // highest estimates the highest frequency that the time step must follow. A few

@@ -52,7 +52,7 @@ func validate(m *mesh.Mesh) error {
 		}
 	}
 	for _, l := range m.Links {
-		if !within(l.A, m.Nodes) || !within(l.B, m.Nodes) || !finite(l.Spring, l.Dashpot) || l.Spring < 0 || l.Dashpot < 0 {
+		if !within(l.A, m.Nodes) || !within(l.B, m.Nodes) || !finite(l.Spring, l.Dashpot, l.Through) || l.Spring < 0 || l.Dashpot < 0 || l.Through < 0 {
 			return fault("link %q: %g N/m, %g N s/m", l.Name, l.Spring, l.Dashpot)
 		}
 	}
@@ -178,13 +178,18 @@ func validateActions(m *mesh.Mesh) error {
 
 // refuses lists what has no equation of motion here.
 func refuses(m *mesh.Mesh) []string {
-	if beyond := m.Unknown(framed | lawful); len(beyond) > 0 {
+	if beyond := m.Unknown(framed | lawful | mesh.TieBracket); len(beyond) > 0 {
 		return beyond
 	}
 	var out []string
 	for _, r := range m.Rolls {
 		if r.Mass > 0 && r.Spring == 0 {
 			out = append(out, fmt.Sprintf("does not represent a rolling mass without a spring under it (%s)", r.Name))
+		}
+	}
+	for _, l := range m.Links {
+		if l.Through > 0 && within(l.A, m.Nodes) && within(l.B, m.Nodes) && (m.Nodes[l.A].Motion != nil || m.Nodes[l.B].Motion != nil) {
+			out = append(out, fmt.Sprintf("does not represent a bracket that gives in a tie to a moved support (%s)", l.Name))
 		}
 	}
 	attached := m.Attached()
