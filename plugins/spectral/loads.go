@@ -275,7 +275,7 @@ func (x *excitation) addRoll(r *mesh.Roll) {
 		end = p.X0 + p.Length
 		for _, ei := range s.byPiece[pi] {
 			e := &s.elements[ei]
-			if r.Speed != 0 {
+			if r.Speed != 0 && r.Mass == 0 {
 				for _, at := range e.graded() {
 					x.breaks = append(x.breaks, r.Starting+(p.X0+at-r.From)/r.Speed)
 				}

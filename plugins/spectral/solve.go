@@ -240,6 +240,9 @@ func (j *job) choose() {
 	parts = math.Max(1, parts)
 	steps := parts * float64(j.steps)
 	for _, r := range j.m.Rolls {
+		if r.Mass > 0 {
+			continue // a step more for each step, below
+		}
 		for _, p := range j.m.Lines[r.Line].Pieces {
 			for _, e := range s.byPiece[p] {
 				steps += 3 * float64(s.elements[e].ref.p) // a changing step is prepared anew
@@ -256,6 +259,9 @@ func (j *job) choose() {
 		ends := float64(s.ends)
 		if s.frame {
 			work = steps * n * 60 * float64(m+1) / 2
+			if lay.law > 0 { // kicks, trials, accounts
+				work *= 4
+			}
 		} else {
 			work = steps * (n*10*float64(m+1)/2 + 4*ends*ends*float64(m+1)/2)
 		}
@@ -282,7 +288,7 @@ const lawPhase = 0.25
 
 // stretchPhase is chosen: the highest vibration of an element's tension turns by so much
 // a step, of which the stretch may be that tension's 1/stretchPhase^2 (see steady).
-const stretchPhase = 1.6
+const stretchPhase = 5.0
 
 // base is the length of a base step, s.
 func (j *job) base() float64 { return j.m.Timing.Every / float64(j.sub) }
