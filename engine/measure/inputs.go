@@ -22,29 +22,61 @@ func (r reads) place(p scenario.PlaceOf[formula.Program]) { r.see(p.Offset) }
 func (r reads) structure(m *scenario.ModelOf[formula.Program]) {
 	for i := range m.Lines {
 		r.see(m.Lines[i].Incline)
-		for _, n := range m.Lines[i].Nodes {
-			r.see(n.Mass, n.Spring, n.Rotary)
-			for _, d := range n.Dashpots {
-				r.see(d.C, d.Through)
-			}
-			for _, t := range n.Tuned {
-				r.see(t.Mass, t.Spring, t.Dashpot)
-			}
+		for k := range m.Lines[i].Nodes {
+			r.node(&m.Lines[i].Nodes[k])
 		}
-		for _, s := range m.Lines[i].Segments {
-			r.see(s.Length, s.MassPerLength, s.Tension, s.TensionRise, s.Axial, s.Viscous, s.Bending, s.Internal)
+		for k := range m.Lines[i].Segments {
+			r.segment(&m.Lines[i].Segments[k])
 		}
 	}
 	for _, t := range m.Ties {
 		r.place(t.From)
 		r.place(t.To)
-		r.see(t.Spring, t.Dashpot, t.Mass)
+		r.see(t.Spring, t.Dashpot, t.Mass, t.SpringLoss, t.Through)
 	}
 	for _, w := range m.Watches {
 		r.see(w.Mass)
 		if w.Mass.Code != nil {
 			r.place(w.At)
 		}
+	}
+}
+
+func (r reads) node(n *scenario.NodeOf[formula.Program]) {
+	r.see(n.Mass, n.Spring, n.Rotary, n.Inertia, n.SpringLoss)
+	for _, d := range n.Dashpots {
+		r.see(d.C, d.Through)
+	}
+	for _, t := range n.Tuned {
+		r.see(t.Mass, t.Spring, t.Dashpot, t.Loss)
+	}
+	for i := range n.Laws {
+		r.law(&n.Laws[i])
+	}
+}
+
+func (r reads) segment(s *scenario.SegmentOf[formula.Program]) {
+	r.see(s.Length, s.MassPerLength, s.Tension, s.TensionRise, s.Axial, s.Viscous, s.Bending, s.Internal, s.TensionLoss, s.BendingLoss)
+	if s.Law != nil {
+		r.law(s.Law)
+	}
+	for i := range s.Every {
+		r.see(s.Every[i].Spacing, s.Every[i].First)
+		r.node(&s.Every[i].Joint)
+	}
+}
+
+func (r reads) law(l *scenario.LawOf[formula.Program]) {
+	if f := l.Friction; f != nil {
+		r.see(f.Force, f.Through)
+	}
+	if s := l.Stop; s != nil {
+		r.see(s.Gap, s.Spring)
+	}
+	if w := l.Written; w != nil {
+		r.see(w.Force)
+		r.see(w.Starts...)
+		r.see(w.Rates...)
 	}
 }
 
@@ -70,7 +102,13 @@ func (r reads) happenings(m *scenario.ModelOf[formula.Program]) {
 	}
 	for _, l := range m.Rolls {
 		r.place(l.From)
-		r.see(l.Speed, l.Force, l.Starting)
+		r.see(l.Speed, l.Force, l.Starting, l.Mass, l.Spring, l.Dashpot)
+	}
+	for _, l := range m.Loads {
+		r.place(l.At)
+		for _, p := range l.Parameters {
+			r.see(p.Value)
+		}
 	}
 	for _, w := range m.Watches {
 		r.place(w.At)

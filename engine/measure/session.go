@@ -209,9 +209,15 @@ func (s *Session) at(values []float64) (*Point, error) {
 	if earlier := s.points[k]; earlier != nil {
 		return earlier, nil
 	}
-	s.points[k] = p
+	if len(s.points) < mostPoints {
+		s.points[k] = p
+	}
 	return p, nil
 }
+
+// mostPoints is how many points are kept for the questions that come to them
+// again; a long sampling goes on without. Chosen: some 100 MB for a long line.
+const mostPoints = 5000
 
 // values are all lets for values of the inputs; nil for the centre.
 func (s *Session) values(inputs []float64) ([]float64, error) {

@@ -18,6 +18,7 @@ type element struct {
 	rise       float64 // N/m
 	bending    float64 // N m^2; 0: a string
 	weight     float64 // of the distributed load that stands for the line's sag, 1/m
+	whole      *terms  // terms at the end, where tension rises along a beam; else nil
 	at         [4]int  // unknowns: u and slope at the start, u and slope at the end; slope -1 for a string
 }
 

@@ -121,6 +121,10 @@ func (g *grid) number() {
 			}
 			s := &segments[seg]
 			e := element{x0: from, length: to - from, bending: s.Bending, rise: s.TensionRise, tension: math.Max(0, s.Tension+s.TensionRise*(from-start))}
+			if e.beam() && e.rise != 0 {
+				t := e.termsAt(e.length)
+				e.whole = &t
+			}
 			list = append(list, e)
 		}
 		u, slope := make([]int, len(g.x[i])), make([]int, len(g.x[i]))

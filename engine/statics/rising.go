@@ -45,12 +45,22 @@ func (e *element) termsAt(s float64) (out terms) {
 	return out
 }
 
+// full are the terms at the element's end, worked out once for one whose tension
+// rises.
+func (e *element) full() *terms {
+	if e.whole == nil {
+		t := e.termsAt(e.length)
+		return &t
+	}
+	return e.whole
+}
+
 // initial are the second and third derivative at an element's start.
 type initial struct{ second, third float64 }
 
 // initial finds what the values at both ends ask of the start.
 func (e *element) initial(v ends) initial {
-	t := e.termsAt(e.length)
+	t := e.full()
 	u := v.u1 - v.u0 - v.t0*t[0][0] - v.w*t[3][0]
 	slope := v.t1 - v.t0*t[0][1] - v.w*t[3][1]
 	det := t[1][0]*t[2][1] - t[1][1]*t[2][0]
@@ -68,7 +78,7 @@ func (e *element) inSeries(v ends, s float64) float64 {
 
 // farEnd is the force and the moment that act on the end of an element.
 func (e *element) farEnd(v ends, i initial) (force, moment float64) {
-	t := e.termsAt(e.length)
+	t := e.full()
 	d := func(order int) float64 {
 		return v.t0*t[0][order] + i.second*t[1][order] + i.third*t[2][order] + v.w*t[3][order]
 	}
