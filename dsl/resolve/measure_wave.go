@@ -4,6 +4,7 @@ import (
 	"github.com/tautspan/tautspan/dsl/diag"
 	"github.com/tautspan/tautspan/dsl/syntax"
 	"github.com/tautspan/tautspan/dsl/unit"
+	"github.com/tautspan/tautspan/engine/formula"
 	"github.com/tautspan/tautspan/engine/scenario"
 )
 
@@ -56,12 +57,46 @@ func (r *resolver) shareMeasure(c *syntax.Call, sc *scope, kind scenario.Measure
 		sized = true
 		v := r.inRange(r.want(a.Value, plain, unit.Length, "the amplitude of a wave"), a.Value, positive, "the amplitude of a wave")
 		ok = ok && !v.bad
-		r.warnAt(a.Span, "no-effect", "the amplitude has no effect here", "nothing at this joint depends on it", "")
+		if ok && !r.lawful(&m) {
+			r.warnAt(a.Span, "no-effect", "the amplitude has no effect here", "nothing at this joint depends on it", "")
+			continue
+		}
+		m.Args = append(m.Args, v.prog)
 	}
 	if !ok {
 		return badValue
 	}
+	if what := r.lopsided(&m); what != "" {
+		r.errorAt(c.Span, "not-linear", c.Name.Text+" is not defined with "+what, "the first harmonic of what it does to a steady wave is not known", "")
+		return badValue
+	}
+	if r.lawful(&m) && !sized {
+		r.errorAt(c.Span, "wrong-arguments", "what this joint does to a wave depends on its amplitude", "friction, a stop or a law stands there", c.Name.Text+"("+clip(c.Args[0].Value)+", 5 Hz, 10 mm)")
+		return badValue
+	}
 	return sc.measures.ask(m, unit.Dim{}, 0)
+}
+
+// lawful tells whether something at the joint of a measure answers differently to
+// large and small motion.
+func (r *resolver) lawful(m *measureOf) bool {
+	return len(r.tmpl.Model.Lines[m.Line].Nodes[m.Place.Node].Laws) > 0
+}
+
+// lopsided names what stands at the joint of a measure and has no first harmonic
+// by amplitude alone, or "".
+func (r *resolver) lopsided(m *measureOf) string {
+	for _, l := range r.tmpl.Model.Lines[m.Line].Nodes[m.Place.Node].Laws {
+		switch {
+		case l.Stop != nil && !(l.Stop.Up && l.Stop.Down):
+			return "a stop on one side"
+		case l.Written != nil && len(l.Written.Rates) > 0:
+			return "a law with states of its own"
+		case l.Written != nil && l.Written.Force.UsesArg(formula.ArgT):
+			return "a law that reads the time"
+		}
+	}
+	return ""
 }
 
 // nodeArg resolves an argument that names a joint or a support.
@@ -93,6 +128,9 @@ func (r *resolver) takenMeasure(c *syntax.Call, sc *scope) value {
 	if !r.count(c, "taken(SUPPORT, 5 Hz)", 2) {
 		return badValue
 	}
+	if !r.proportional(c) {
+		return badValue
+	}
 	m := blank(scenario.Taken, c)
 	ok := r.nodeArg(c.Args[0], &m, "support", "taken")
 	if !r.frequencyArg(c.Args[1], &m) || !ok {
@@ -104,6 +142,9 @@ func (r *resolver) takenMeasure(c *syntax.Call, sc *scope) value {
 // responseMeasure compiles response(WATCH.QUANTITY, EXCITE, F).
 func (r *resolver) responseMeasure(c *syntax.Call, sc *scope) value {
 	if !r.count(c, "response(WATCH.QUANTITY, EXCITE, 5 Hz)", 3) || !r.plainArg(c.Args[0]) || !r.plainArg(c.Args[1]) {
+		return badValue
+	}
+	if !r.proportional(c) {
 		return badValue
 	}
 	m := blank(scenario.SteadyResponse, c)

@@ -39,7 +39,14 @@ func (p *Point) share(m *scenario.Measure) (figure, error) {
 		_, taken, err := scatter.EndAt(p.Mesh, node, m.Args[0])
 		return figure{value: taken}, err
 	}
-	s, err := scatter.JointAt(p.Mesh, node, m.Args[0], m.After)
+	amplitude := 1.0 // which a joint that answers in proportion does not ask for
+	if len(m.Args) > 1 {
+		amplitude = m.Args[1]
+	}
+	s, err := scatter.JointAtAmplitude(p.Mesh, node, m.Args[0], amplitude, m.After)
+	if err != nil && len(p.Mesh.Nodes[node].Laws) > 0 {
+		return figure{value: math.NaN()}, nil // no steady motion, or several: there is no such value
+	}
 	switch m.Kind {
 	case scenario.Reflected:
 		return figure{value: s.Reflected}, err

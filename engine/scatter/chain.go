@@ -30,6 +30,7 @@ type fitting struct {
 	inertia  float64 // kg m^2
 	hinge    bool
 	benches  []*mesh.Bench
+	law      complex128 // N/m, first harmonic of what answers differently to large motion
 }
 
 // hung is a mass on a spring, with a loss factor, and a dashpot.
@@ -50,6 +51,7 @@ type span struct {
 type echo struct {
 	back, on complex128 // amplitudes thrown back and let through, at the end nodes
 	lost     float64    // share of power that dashpots at the nodes take
+	moved    complex128 // displacement of the first node
 }
 
 // part is where one unknown vector begins and how long it is: the displacement,
@@ -160,7 +162,7 @@ func (c *chain) solve(omega float64, fromBefore bool) (e echo, ok bool) {
 	if !fromBefore {
 		back, on = on, back
 	}
-	e.back = x[back.at]
+	e.back, e.moved = x[back.at], x[l.nodes[0].at]
 	if out != nil {
 		e.on = x[on.at]
 	}
@@ -205,6 +207,7 @@ func (eq *equations) node(i int, f *fitting) {
 // and bench records, N/m.
 func (f *fitting) toGround(omega float64) complex128 {
 	d := complex(f.spring-f.mass*omega*omega, f.spring*f.eta+f.dashpot*omega)
+	d += f.law
 	for _, b := range f.benches {
 		d += complex(0, omega) * modal.Impedance(b, omega)
 	}
