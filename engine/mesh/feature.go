@@ -124,6 +124,33 @@ func (m *Mesh) Words(of Features) []string {
 	return out
 }
 
+// Where is the path of the first thing that has one of the features of joints,
+// pieces, ties and lines, "" where none has.
+func (m *Mesh) Where(of Features) string {
+	for i := range m.Nodes {
+		if m.Nodes[i].features()&of != 0 {
+			return m.Nodes[i].Name
+		}
+	}
+	for i := range m.Pieces {
+		if p := &m.Pieces[i]; p.Law != nil && of&SpreadLaw != 0 && m.Source != nil {
+			l := &m.Source.Lines[p.Line]
+			return "line." + l.Name + "." + l.Segments[p.Segment].Name + ".loss"
+		}
+	}
+	for i := range m.Links {
+		if m.Links[i].Slack && of&SlackTie != 0 {
+			return m.Links[i].Name
+		}
+	}
+	for i := range m.Lines {
+		if m.Lines[i].Stretch != nil && of&Stretching != 0 {
+			return "line." + m.Lines[i].Name
+		}
+	}
+	return ""
+}
+
 // Unknown says in the user's terms which features of the mesh are not among
 // those known, a reason each.
 func (m *Mesh) Unknown(known Features) []string {

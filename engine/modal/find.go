@@ -7,6 +7,7 @@ import (
 	"strings"
 
 	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/scenario"
 )
 
 // Want says how much is asked. Of Count and Below the first that is reached
@@ -65,6 +66,9 @@ type Overdamped struct {
 }
 
 // Find computes the natural vibrations of a network.
+//
+// What is not linear, or known by a bench record alone, is refused with a
+// *scenario.PathError that names the first such place.
 //
 // Validity: linear networks of lines with positive length and mass, and tension
 // that is positive but for beams and for free ends that carry nothing; it returns
@@ -212,10 +216,12 @@ func check(m *mesh.Mesh, want Want) error {
 		}
 	}
 	if words := m.Words(mesh.NonLinear); len(words) > 0 {
-		return fmt.Errorf("natural vibrations and their damping are refused, not linearised, with %s: they would hang on the amplitude; ask a run for settle, peak or rms", strings.Join(words, " and "))
+		return &scenario.PathError{Path: m.Where(mesh.NonLinear), What: "natural vibrations and their damping are refused, not linearised, with " + strings.Join(words, " and ") +
+			": they would hang on the amplitude; ask a run for settle, peak or rms"}
 	}
 	if words := m.Words(mesh.BenchDamper); len(words) > 0 {
-		return fmt.Errorf("natural vibrations are refused with %s: its record holds real frequencies alone, and a vibration that dies away has a complex one; ask for the response at a frequency", words[0])
+		return &scenario.PathError{Path: m.Where(mesh.BenchDamper), What: "natural vibrations are refused with " + words[0] +
+			": its record holds real frequencies alone, and a vibration that dies away has a complex one; ask for the response at a frequency"}
 	}
 	if err := absorbs(m); err != nil {
 		return err

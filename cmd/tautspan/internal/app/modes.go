@@ -2,6 +2,7 @@ package app
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 
@@ -10,6 +11,7 @@ import (
 	"github.com/tautspan/tautspan/engine/measure"
 	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/modal"
+	"github.com/tautspan/tautspan/engine/scenario"
 )
 
 // ModesWant is how many natural vibrations are asked for.
@@ -45,7 +47,7 @@ func (a *App) Modes(ctx context.Context, in Input, want ModesWant) (*ModesDoc, S
 func (l *loaded) modes(ctx context.Context, doc *ModesDoc, want ModesWant) {
 	res, err := modal.Find(l.mesh, modal.Want{Count: want.Count, Below: want.Below, Shapes: want.Shapes})
 	if err != nil {
-		l.note(diag.List{{Code: "no-modes", Severity: diag.Error, Span: diag.Span{File: l.compiled.Sources[0].File}, Summary: err.Error()}})
+		l.noModes(err)
 		return
 	}
 	doc.CompleteBelow = finite(res.CompleteBelow)
@@ -69,6 +71,17 @@ func (l *loaded) modes(ctx context.Context, doc *ModesDoc, want ModesWant) {
 		doc.Overdamped = append(doc.Overdamped, OverRow{Line: l.lineName(o.Line), Decay: o.Decay})
 	}
 	doc.Collected = l.collectExact(ctx)
+}
+
+// noModes refuses natural vibrations, at the place that forbids them where there
+// is one.
+func (l *loaded) noModes(err error) {
+	d := diag.Diagnostic{Code: "no-modes", Severity: diag.Error, Span: diag.Span{File: l.compiled.Sources[0].File}, Summary: err.Error()}
+	var p *scenario.PathError
+	if errors.As(err, &p) {
+		d.Span, d.Summary = l.placeOf(p.Path), p.What
+	}
+	l.note(diag.List{d})
 }
 
 func (l *loaded) lineName(i int) *string {
