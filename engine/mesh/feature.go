@@ -33,7 +33,7 @@ var featureWords = []struct {
 	{Sagging, "the sag term (leave `sag included` out: all but the odd modes in the vertical plane stay right)"},
 	{InternalLoss, "internal loss"},
 	{Stretching, "tension that grows with amplitude"},
-	{Hysteretic, "a hysteretic loss factor, which is defined by frequency and in a run only a solver by transform takes"},
+	{Hysteretic, "a hysteretic loss factor, which is defined by frequency: in a run only transform takes it"},
 	{BenchDamper, "a damper known only by its bench record, which answers by frequency"},
 	{JointLaw, "friction, a stop or a law at a joint"},
 	{SpreadLaw, "a law along a segment"},
