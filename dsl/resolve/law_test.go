@@ -148,3 +148,32 @@ line l {
 		t.Errorf("%v", err)
 	}
 }
+
+// A place that falls on a joint of a row to rounding is that joint: 3 * 0.1 m is
+// not 0.3 m in the arithmetic, and no sliver of line may stand between.
+func TestPlaceOnRow(t *testing.T) {
+	net := bind(t, resolveText(t, `
+stock s {
+    mass 2 kg/m
+}
+line l {
+    tension 1 kN
+    plane sideways
+    support a fixed
+    segment s s 3 m, every 0.3 m mass 0.1 kg
+    support b fixed
+}
+watch q at s (0.1 m * 3) displacement, velocity mass 1 g
+watch r at s.3 displacement
+`, Options{}))
+	rows := scenario.Rows(&net.Lines[0].Segments[0])
+	if len(rows) != 9 {
+		t.Fatalf("%d joints in 3 m at 0.3 m, want 9: one at the end is none", len(rows))
+	}
+	if at := net.Watches[0].At.Offset; at != rows[0].At {
+		t.Errorf("watch at %.17g, joint at %.17g", at, rows[0].At)
+	}
+	if at := net.Watches[1].At.Offset; at != rows[2].At {
+		t.Errorf("watch at %.17g, joint at %.17g", at, rows[2].At)
+	}
+}
