@@ -22,9 +22,9 @@
 // samples of a load. Tension that rises along a piece is taken in steps of equal
 // travel time, halved from level to level (order 2).
 //
-// Hysteretic loss factors turn stiffnesses into K(1 + i eta) at positive
-// frequencies. Such a stiffness is not causal: a trace of the answer, of the order
-// of eta, comes before its cause. It is the convention of the frequency domain.
+// Hysteretic loss factors are made causal (lossy): the loss is the one stated at
+// every frequency, the stiffness is the one stated at one frequency and grows with
+// the logarithm of frequency.
 //
 // Sources, from memory: Wittrick, Williams, Q. J. Mech. Appl. Math. 24 (1971) for
 // dynamic stiffness matrices; Dubner, Abate, J. ACM 15 (1968) 115-123 for the

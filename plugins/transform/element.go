@@ -25,10 +25,10 @@ type wave struct {
 // with bending the waves are e^{-r x} and e^{-r(L-x)} for
 // r1^2 = (T + sqrt(T^2 - 4 EI b))/(2 EI), r2^2 = b/(EI r1^2), which overflow
 // nowhere.
-func (e *element) newWave(p *mesh.Piece, s complex128) *wave {
+func (e *element) newWave(p *mesh.Piece, s complex128, w0 float64) *wave {
 	w := &wave{s: s, length: e.length, stiff: e.stiff}
 	w.b = complex(p.MassPerLength, 0)*s*s + complex(p.Viscous, 0)*s
-	w.t = complex(e.tension, 0) * complex(1, p.TensionLoss)
+	w.t = complex(e.tension, 0) * lossy(s, p.TensionLoss, w0)
 	l := complex(e.length, 0)
 	if !e.stiff {
 		a := cmplx.Sqrt(w.b / w.t)
@@ -46,7 +46,7 @@ func (e *element) newWave(p *mesh.Piece, s complex128) *wave {
 		w.inv[1][0], w.inv[1][2] = -x*n, n
 		return w
 	}
-	w.ei = complex(p.Bending, 0) * (1 + s*complex(p.Internal, 0) + complex(0, p.BendingLoss))
+	w.ei = complex(p.Bending, 0) * (lossy(s, p.BendingLoss, w0) + s*complex(p.Internal, 0))
 	root := cmplx.Sqrt(w.t*w.t - 4*w.ei*w.b)
 	if real(root)*real(w.t)+imag(root)*imag(w.t) < 0 {
 		root = -root

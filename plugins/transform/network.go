@@ -67,6 +67,7 @@ type network struct {
 	motions  map[int]*series // by mesh node
 	varying  bool
 	segments [][]int // elements of each piece, in order
+	refs     references
 }
 
 // places inside a piece where the network is cut.
@@ -141,7 +142,7 @@ func equalTravel(p *mesh.Piece, n int) []float64 {
 
 // newNetwork cuts the pieces and numbers the unknowns in walking order.
 func newNetwork(m *mesh.Mesh, level int) *network {
-	n := &network{m: m, nodeAt: make([]int, len(m.Nodes)), slope: make([][]int, len(m.Nodes)), segments: make([][]int, len(m.Pieces)), motions: map[int]*series{}}
+	n := &network{m: m, nodeAt: make([]int, len(m.Nodes)), slope: make([][]int, len(m.Nodes)), segments: make([][]int, len(m.Pieces)), motions: map[int]*series{}, refs: newReferences(m)}
 	at, varying := cuts(m, level)
 	n.varying = varying
 	for i := range n.nodeAt {

@@ -73,7 +73,7 @@ func (s *system) solve(g *grid, k int) {
 	for i := range n.elements {
 		e := &n.elements[i]
 		p := &n.m.Pieces[e.piece]
-		w := e.newWave(p, at)
+		w := e.newWave(p, at, n.refs.line[p.Line])
 		part := e.under(w, p, k, &s.scratch)
 		s.waves[i], s.parts[i] = w, part
 		list, held := n.unknownsOf(e, k)
@@ -118,7 +118,7 @@ func (s *system) nodes(at complex128) {
 		if u := n.points[n.nodeAt[i]].u; u >= 0 {
 			given, rate := complex(n.given(i), 0), complex(nd.StartRate, 0)
 			m, c := complex(nd.Mass, 0), complex(nd.Dashpot, 0)
-			z := m*at*at + c*at + complex(nd.Spring, nd.Spring*nd.SpringLoss)
+			z := m*at*at + c*at + complex(nd.Spring, 0)*lossy(at, nd.SpringLoss, n.refs.line[max(nd.Line, 0)])
 			r := m*(at*given+rate) + c*given
 			for _, b := range nd.Brackets {
 				kb, cb := complex(b.K, 0), complex(b.C, 0)
@@ -172,7 +172,7 @@ func (n *network) given(node int) float64 {
 func (s *system) link(b int, at complex128, k int) {
 	n := s.n
 	l := &n.m.Links[n.borders[b].link]
-	stiff := complex(l.Spring, l.Spring*l.SpringLoss) + complex(l.Dashpot, 0)*at
+	stiff := complex(l.Spring, 0)*lossy(at, l.SpringLoss, n.refs.link[n.borders[b].link]) + complex(l.Dashpot, 0)*at
 	before := complex(n.given(l.B)-n.given(l.A), 0)
 	s.small[b][b] = -1 / stiff
 	s.smallR[b] = complex(l.Dashpot, 0) / stiff * before
