@@ -165,6 +165,11 @@ func TestWrittenLawWithState(t *testing.T) {
 	b.Nodes[1].Laws = []mesh.Law{{Written: &mesh.Written{Force: formula.Mul(formula.Const(-k), arm), Starts: []float64{0},
 		Rates: []formula.Program{formula.Mul(formula.Const(k/c), arm)}}}}
 	want := solve(t, a, 3)
+	// The bracket's spring stores, of which a written law knows nothing: all that it
+	// takes is lost.
+	if e := solve(t, b, 3).Energy; !(e.Lost > 0) || math.Abs(e.Work/want.Energy.Work-1) > 1e-4 || math.Abs(e.Unaccounted()) > 1e-5*e.Most {
+		t.Errorf("account %+v, with a bracket %+v", e, want.Energy)
+	}
 	e1, e2 := 0.0, 0.0
 	for spot := range 2 {
 		e1 = math.Max(e1, relative(solve(t, b, 1).Series[0][spot], want.Series[0][spot]))

@@ -103,7 +103,7 @@ func (e *resistance) book(c *cluster) {
 		f := l.f
 		switch {
 		case l.written != nil:
-			c.account.work += f * way
+			lost -= f * way // less than 0 where the law gives
 			copy(l.state, l.trial)
 		case l.through > 0:
 			lost += -f * (l.to - l.q)
