@@ -19,7 +19,7 @@ const (
 // l = sqrt(EI/T), tau the line's travel time; the largest of all lines. For one
 // uniform line the second term is 2/xi between clamps, xi = L sqrt(T/EI). 0 without
 // bending; infinite where the excitation has a kink or jump, or a band of its own
-// is not known, so that no frequency bounds it. An end with a spring against
+// is not known, or a law sets off fronts of its own, so that no frequency bounds it. An end with a spring against
 // turning counts as clamped. Fittings inside the line are not counted.
 //
 // Source: derived here. A stiff string's phase runs ahead by k c t eps/2 and by the
@@ -32,7 +32,7 @@ func (m *Mesh) Neglect() float64 {
 	if m.Features()&Bending == 0 {
 		return 0
 	}
-	if m.Jump <= 2 || !(m.Band > 0) || m.BandCut {
+	if m.Features()&NonLinear != 0 || m.Jump <= 2 || !(m.Band > 0) || m.BandCut {
 		return math.Inf(1)
 	}
 	omega := 2 * math.Pi * m.Band / bandFactor

@@ -41,9 +41,16 @@ func (tracker) Refuses(m *mesh.Mesh) []string {
 	if beyond := m.Unknown(known | mesh.Bending); len(beyond) > 0 {
 		return beyond
 	}
-	if phi > mesh.NeglectMost || phi > 0 && asksMoment(m) {
-		return []string{fmt.Sprintf("%s: to leave it out would make records wrong by about %.2g of their size (phi), and up to %g is allowed",
-			m.Unknown(known)[0], phi, mesh.NeglectMost)}
+	if phi > 0 {
+		bending := m.Unknown(known)[0]
+		switch {
+		case math.IsInf(phi, 1):
+			return []string{bending + "; what leaving it out would do has no bound here, since the motion has kinks or jumps"}
+		case phi > mesh.NeglectMost:
+			return []string{fmt.Sprintf("%s; to leave it out would make records wrong by about %.2g of their size (phi), and up to %g is allowed", bending, phi, mesh.NeglectMost)}
+		case asksMoment(m):
+			return []string{bending + ", of which a moment is asked"}
+		}
 	}
 	var out []string
 	if err := sound(m); err != nil {
@@ -67,8 +74,9 @@ func (tracker) Refuses(m *mesh.Mesh) []string {
 			}
 		}
 	}
-	if place, short := stub(m); short {
-		out = append(out, fmt.Sprintf("the piece at x = %.4g m is so short beside the longest that its steps would rule the run; merge it with its neighbour", place))
+	m = unspliced(m)
+	if k, short := stub(m); short {
+		out = append(out, fmt.Sprintf("the piece at x = %.4g m is so short beside the longest that its steps would rule the run; leave it out", m.Pieces[k].X0))
 	}
 	for i := range m.Pieces {
 		p := &m.Pieces[i]
@@ -100,6 +108,7 @@ func (tracker) Plan(m *mesh.Mesh, req solver.Request) (solver.Plan, error) {
 	if err := sound(m); err != nil {
 		return solver.Plan{}, err
 	}
+	m = unspliced(m)
 	lay, _ := plan(m, req)
 	p := size(m, &lay)
 	return p, within(p)
@@ -116,6 +125,7 @@ func (t tracker) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, pr
 	if no := t.Refuses(m); len(no) > 0 {
 		return nil, &solver.FaultError{Solver: name, What: no[0]}
 	}
+	m = unspliced(m)
 	lay, frozen := plan(m, req)
 	cost := size(m, &lay)
 	if err := within(cost); err != nil {
@@ -156,15 +166,15 @@ func asksMoment(m *mesh.Mesh) bool {
 // millionth took a minute where a thousandth takes a second.
 const shortest = 1e-5
 
-// stub finds a piece below that share, and where it begins.
-func stub(m *mesh.Mesh) (x float64, found bool) {
+// stub finds a piece below that share.
+func stub(m *mesh.Mesh) (piece int, found bool) {
 	longest := 0.0
 	for i := range m.Pieces {
 		longest = math.Max(longest, m.Pieces[i].TravelTime())
 	}
 	for i := range m.Pieces {
 		if m.Pieces[i].TravelTime() < shortest*longest {
-			return m.Pieces[i].X0, true
+			return i, true
 		}
 	}
 	return 0, false
