@@ -87,13 +87,16 @@ func (l *laws) add(c contact, row []float64) {
 	l.contacts = append(l.contacts, c)
 }
 
+// lawPoints is on how many points an element of a degree carries a law.
+func lawPoints(degree int) int { return max(3, (degree+1)/2) }
+
 // spread puts the law of a piece on Gauss points, half as many as the element's
 // degree: laws are no smoother than that.
 func (l *laws) spread(piece int) {
 	p := &l.sys.m.Pieces[piece]
 	for _, i := range l.sys.byPiece[piece] {
 		e := &l.sys.elements[i]
-		gx, gw := gauss(max(3, (e.ref.p+1)/2))
+		gx, gw := gauss(lawPoints(e.ref.p))
 		for g, x := range gx {
 			row := make([]float64, l.sys.size()+len(l.sys.watched))
 			l.sys.spread(row, e, e.values(make([]float64, e.ref.p+1), x, 0))
@@ -215,7 +218,7 @@ func (l *laws) find(s step) error {
 			most = math.Max(most, math.Abs(f-l.forces[i])*a.give[i][i])
 			l.forces[i] = f
 		}
-		if len(l.contacts) < 2 || most <= 1e-14*l.scale {
+		if len(l.contacts) < 2 || most <= 1e-13*l.scale {
 			return nil
 		}
 	}
