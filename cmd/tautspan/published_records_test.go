@@ -93,7 +93,7 @@ func (c published) holds(t *testing.T, r records, watch string, at float64, name
 		}
 		found = append(found, fmt.Sprintf("%s: %.12g, off by %.2g", column, values[row], off))
 	}
-	if len(found) != 3 || within < 2 {
+	if len(found) != 4 || within < 2 {
 		t.Errorf("%s %s: published %.12g, band %.2g; %s", c.ID, name, want, band[row], strings.Join(found, "; "))
 	}
 }
@@ -203,7 +203,7 @@ func TestPublishedPluckEnergy(t *testing.T) {
 			sharp++
 		}
 	}
-	if len(doc.Energy) != 3 || sharp == 0 {
+	if len(doc.Energy) != 4 || sharp == 0 {
 		t.Errorf("%d energy accounts, of which %d have a point at the kink and meet the class", len(doc.Energy), sharp)
 	}
 }

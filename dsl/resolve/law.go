@@ -157,6 +157,9 @@ func (r *resolver) useLaw(c *syntax.Call, k unit.Kind, path string) (*lawOf, boo
 		if p, ok = r.plugin(c.Name.Span, name, "law"); !ok {
 			return nil, false
 		}
+		if p.Body == "" {
+			return r.followedLaw(p, c, path)
+		}
 		e = r.pluginLaw(p, c)
 	} else if e = r.laws[name]; e == nil {
 		r.unknownLaw(c, name)

@@ -185,10 +185,6 @@ func (r *resolver) pluginLaw(p *Plugin, c *syntax.Call) *lawEntry {
 	}
 	bad := &lawEntry{bad: true}
 	r.pluginLaws[p.Name] = bad
-	if p.Body == "" {
-		r.notYet(c.Span, "a law that must be followed step by step", "`law NAME { … }` writes a law into the file")
-		return bad
-	}
 	text := setHead + "law plugin_law {\n"
 	for i, q := range p.Parameters {
 		lead := "    takes "
@@ -241,4 +237,14 @@ func (r *resolver) pluginParameters(p *Plugin, c *syntax.Call, path string) (map
 		out[list[i].Name] = value{prog: list[i].Value, dim: dim.Dim, angle: dim.Angle}
 	}
 	return out, true
+}
+
+// followedLaw is a law that its plugin answers step by step. Whether it gives a
+// force or a force per length is the plugin's to know.
+func (r *resolver) followedLaw(p *Plugin, c *syntax.Call, path string) (*lawOf, bool) {
+	list, ok := r.parameters(p, c, path)
+	if !ok {
+		return nil, false
+	}
+	return &lawOf{Name: p.Name, Followed: &scenario.FollowedOf[formula.Program]{Plugin: p.Name, Parameters: list}}, true
 }

@@ -235,14 +235,21 @@ func (r *runner) band(c int, o *Observable) [][]float64 {
 			if !v.usable() || i == o.Best || i == o.OddOneOut {
 				continue
 			}
+			split := o.Verdict == Differ && o.OddOneOut < 0
 			var own []float64
-			if i != next && !(o.Verdict == Differ && o.OddOneOut < 0) {
+			if !split {
 				own = v.band(c, k)
 			}
 			mine, theirs := best.series(c)[k], v.series(c)[k]
 			for j := range out[k] {
 				spread := math.Abs(mine[j] - theirs[j])
-				if own != nil {
+				switch {
+				case split:
+				case i == next:
+					// The truth may lie beyond the second solver as well, by its own
+					// band; no further than it stands off, or it would not be second.
+					spread += math.Min(own[j], spread)
+				default:
 					spread -= own[j]
 				}
 				out[k][j] = math.Max(out[k][j], spread)

@@ -155,6 +155,18 @@ func (m *Mesh) Where(of Features) string {
 // those known, a reason each.
 func (m *Mesh) Unknown(known Features) []string {
 	var out []string
+	for i := range m.Nodes {
+		for k := range m.Nodes[i].Laws {
+			if l := &m.Nodes[i].Laws[k]; !l.Open() {
+				out = append(out, "cannot follow the law "+l.Name+" step by step: its plugin answers in `run` only, and not to solvers in processes of their own")
+			}
+		}
+	}
+	for i := range m.Pieces {
+		if l := m.Pieces[i].Law; l != nil && !l.Open() {
+			out = append(out, "cannot follow the law "+l.Name+" step by step: its plugin answers in `run` only, and not to solvers in processes of their own")
+		}
+	}
 	for _, words := range m.Words(^known) {
 		out = append(out, "does not represent "+words)
 	}

@@ -50,6 +50,8 @@ func (b *builder) law(l *scenario.LawOf[float64]) *Law {
 		out.Friction = &Friction{Force: l.Friction.Force, Through: l.Friction.Through}
 	case l.Stop != nil:
 		out.Stop = &Stop{Gap: l.Stop.Gap, Spring: l.Stop.Spring, Up: l.Stop.Up, Down: l.Stop.Down}
+	case l.Followed != nil:
+		out.Written = &Written{Start: l.Followed.Start}
 	default:
 		out.Written = &Written{Force: l.Written.Force, Starts: l.Written.Starts, Rates: l.Written.Rates}
 	}

@@ -1,6 +1,9 @@
 package mesh
 
-import "github.com/tautspan/tautspan/engine/formula"
+import (
+	"github.com/tautspan/tautspan/engine/formula"
+	"github.com/tautspan/tautspan/engine/scenario"
+)
 
 // Law is a force that the line feels from its own motion and that is not
 // linear in it: friction, a stop, or a law written out. At a node it acts to
@@ -10,6 +13,12 @@ type Law struct {
 	Friction *Friction // one of the three is not nil
 	Stop     *Stop
 	Written  *Written
+}
+
+// Open tells whether the law can be solved: one that is followed step by step
+// needs its plugin to run.
+func (l *Law) Open() bool {
+	return l.Written == nil || l.Written.Start != nil || l.Written.Force.Depth() > 0
 }
 
 // Friction is dry friction: at most Force against the motion, sticking where
@@ -34,6 +43,9 @@ type Written struct {
 	Force  formula.Program // N, or N/m along a piece: the force on the line
 	Starts []float64       // of the states, at t = 0
 	Rates  []formula.Program
+	// Start, where not nil, begins a law that is followed step by step; the
+	// formulas are then empty.
+	Start func() (scenario.Follow, error)
 }
 
 // The arguments of a written law.

@@ -146,7 +146,7 @@ func (w *network) list(res *Result, f found, group int, want Want) {
 			mode := newMode(f.osc[k])
 			mode.Group, mode.Line, mode.Number = group, w.line, k+1
 			mode.Multiplicity, mode.Defective = last-i, rank < last-i
-			if want.Shapes {
+			if want.Shapes && len(shapes) > 0 {
 				mode.Shape = shapes[min(k-i, len(shapes)-1)]
 			}
 			res.Modes = append(res.Modes, mode)

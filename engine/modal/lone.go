@@ -13,6 +13,7 @@ import (
 type lone struct {
 	t, m, ei, len float64    // N, kg/m, N m^2, m
 	turn          [2]float64 // N m/rad
+	piece         int
 }
 
 // lone tells whether the group is a single span.
@@ -24,7 +25,7 @@ func (w *network) lone() (*lone, bool) {
 	if p.Bending < 0 || p.TensionRise != 0 || p.Tension < 0 || p.Bending == 0 && p.Tension == 0 || p.TensionLoss != 0 || p.BendingLoss != 0 || p.Law != nil {
 		return nil, false
 	}
-	out := &lone{t: p.Tension, m: p.MassPerLength, ei: p.Bending, len: p.Length}
+	out := &lone{t: p.Tension, m: p.MassPerLength, ei: p.Bending, len: p.Length, piece: w.elements[0].piece}
 	for k, i := range []int{p.From, p.To} {
 		n := &w.m.Nodes[i]
 		if !held(n) || n.Inertia != 0 || n.Hinge || p.From == p.To {
@@ -101,4 +102,62 @@ func (l *lone) modes(want Want, notes []string) found {
 		}
 		f.osc = append(f.osc, complex(0, omega))
 	}
+}
+
+// spanShape is a E(y) + b O(y), y from the middle, with
+//
+//	E = cos(qy) - cos(qh) cosh(py)/cosh(ph),  O = sin(qy) - sin(qh) sinh(py)/sinh(ph),
+//
+// which are zero at both ends.
+type spanShape struct {
+	piece         int
+	q, p, h, a, b float64
+}
+
+// shape is the shape at an angular frequency that is a root: with the first end's
+// N(a cos - b sin)(qh) + K1 (a S - b A) = 0.
+func (l *lone) shape(omega float64) *Shape {
+	q := math.Sqrt(2 * l.m * omega * omega / (l.t + math.Sqrt(l.t*l.t+4*l.ei*l.m*omega*omega)))
+	s := &spanShape{piece: l.piece, q: q, p: math.Sqrt(q*q + l.t/l.ei), h: l.len / 2}
+	sin, cos := math.Sincos(q * s.h)
+	tanh := math.Tanh(s.p * s.h)
+	n := l.ei * (s.p*s.p + q*q)
+	sym, anti := q*sin+s.p*tanh*cos, s.p/tanh*sin-q*cos
+	if k := l.turn[0]; math.IsInf(k, 1) {
+		s.a, s.b = anti, sym
+	} else {
+		s.a, s.b = n*sin+k*anti, n*cos+k*sym
+	}
+	// The first of the largest places: looks, then thirds of the interval about it.
+	looks := max(400, int(40*q*l.len))
+	most, where := 0.0, 0.0
+	for i := 1; i < looks; i++ {
+		x := l.len * float64(i) / float64(looks)
+		if v := math.Abs(s.at(x)); v > most*(1+1e-3) { // equal tops: looks hit one better than another
+			most, where = v, x
+		}
+	}
+	low, high := where-l.len/float64(looks), where+l.len/float64(looks)
+	for range 60 {
+		a, b := low+(high-low)/3, high-(high-low)/3
+		if math.Abs(s.at(a)) < math.Abs(s.at(b)) {
+			low = a
+		} else {
+			high = b
+		}
+	}
+	return &Shape{span: s, factor: complex(1/s.at((low+high)/2), 0)}
+}
+
+// at is the shape at x from the start.
+func (s *spanShape) at(x float64) float64 {
+	y := x - s.h
+	e := math.Exp(-s.p * (s.h - math.Abs(y))) // cosh(py)/cosh(ph) without overflow
+	low := math.Exp(-2 * s.p * math.Abs(y))
+	end := math.Exp(-2 * s.p * s.h)
+	even := e * (1 + low) / (1 + end)
+	odd := math.Copysign(e*(1-low)/(1-end), y)
+	sin, cos := math.Sincos(s.q * y)
+	sinh, cosh := math.Sincos(s.q * s.h)
+	return s.a*(cos-cosh*even) + s.b*(sin-sinh*odd)
 }

@@ -14,7 +14,8 @@ import (
 type Shape struct {
 	nodes  map[int]complex128
 	pieces map[int]arc
-	motion *motion // in place of both for a general group
+	motion *motion    // in place of both for a general group
+	span   *spanShape // in place of all for a single span
 	factor complex128
 }
 
@@ -31,6 +32,12 @@ type arc struct {
 // At is the complex displacement at a spot: modulus and phase of the motion
 // there. It is 0 outside the mode's group.
 func (s *Shape) At(spot mesh.Spot) complex128 {
+	if s.span != nil {
+		if spot.Node >= 0 || spot.Piece != s.span.piece {
+			return 0
+		}
+		return s.factor * complex(s.span.at(spot.At), 0)
+	}
 	if s.motion != nil {
 		if spot.Node >= 0 && !s.motion.y.in(spot.Node) {
 			return 0
@@ -69,6 +76,9 @@ func (p *arc) at(x float64) complex128 {
 
 // shapes gives the shapes at a root: as many as there are, want at most.
 func (w *network) shapes(s complex128, want int) (shapes []*Shape, rank int) {
+	if l, ok := w.lone(); ok && l.ei > 0 {
+		return []*Shape{l.shape(imag(s))}, 1
+	}
 	if w.sys != nil {
 		return w.generalShapes(s, want)
 	}

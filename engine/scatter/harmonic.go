@@ -168,7 +168,7 @@ const harmonicLooks = 512
 
 // writtenAt is the first harmonic of a law in formulas of displacement and velocity.
 func writtenAt(l *mesh.Law, omega, u float64) (complex128, error) {
-	if len(l.Written.Rates) > 0 || l.Written.Force.UsesArg(0) {
+	if l.Written.Start != nil || !l.Open() || len(l.Written.Rates) > 0 || l.Written.Force.UsesArg(0) {
 		return 0, fmt.Errorf("the law %s hangs on time or on states of its own, of which the first harmonic is not known here", l.Name)
 	}
 	mean, largest, first := 0.0, 0.0, complex128(0)

@@ -8,14 +8,29 @@ import (
 )
 
 // LawOf is a force that the line feels from its own motion and that is not
-// linear in it; one of the three is not nil. At a node it acts to ground; along a
+// linear in it; one of the four is not nil. At a node it acts to ground; along a
 // segment it is a force per length.
 type LawOf[V any] struct {
 	Name     string
 	Friction *FrictionOf[V]
 	Stop     *StopOf[V]
 	Written  *WrittenOf[V]
+	Followed *FollowedOf[V]
 }
+
+// FollowedOf is a law of a plugin that cannot be written and is asked step by
+// step. Start is filled in where the plugin runs; without it the law can be looked
+// at, not solved.
+type FollowedOf[V any] struct {
+	Plugin     string
+	Parameters []ParameterOf[V]
+	Start      func() (Follow, error) `json:"-"`
+}
+
+// Follow gives the force at time t, s, with displacement u, m, and velocity v,
+// m/s: N, or N/m along a segment. settled tells that the step is taken and states
+// move on; else it is a trial from the last settled step. NaN: it failed.
+type Follow func(t, u, v float64, settled bool) float64
 
 // FrictionOf is dry friction, perhaps behind a bracket that gives.
 type FrictionOf[V any] struct {
@@ -137,6 +152,11 @@ func (b *binder) law(l *LawOf[formula.Program], path string) LawOf[float64] {
 			b.fail(path+"stop", fmt.Sprintf("has a gap of %g m: the line would rest on it already", s.Gap))
 		}
 		out.Stop = s
+	case l.Followed != nil:
+		out.Followed = &FollowedOf[float64]{Plugin: l.Followed.Plugin}
+		for _, p := range l.Followed.Parameters {
+			out.Followed.Parameters = append(out.Followed.Parameters, ParameterOf[float64]{Name: p.Name, Value: b.num(p.Value, path+"law"), Factor: p.Factor})
+		}
 	case l.Written != nil:
 		w := &WrittenOf[float64]{Force: l.Written.Force.Bind(b.values)}
 		args := []float64{0, 0, 0, 0}

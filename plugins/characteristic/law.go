@@ -4,6 +4,7 @@ import (
 	"math"
 
 	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/scenario"
 )
 
 // resistance is what acts at a node, or between two, and is not linear: the laws
@@ -40,6 +41,8 @@ type law struct {
 	state    []float64
 	trial    []float64
 	args     []float64
+	follow   scenario.Follow // of a law that is asked step by step
+	mid      [3]float64      // time, displacement and velocity of its last trial
 }
 
 // makeLaws gives a cluster its resistances.
@@ -64,8 +67,16 @@ func (r *run) makeLaws(c *cluster) {
 			case given.Written != nil:
 				w := given.Written
 				size := mesh.ArgState + len(w.Starts)
-				e.laws = append(e.laws, law{written: w, x: n.X, state: append([]float64(nil), w.Starts...),
-					trial: make([]float64, len(w.Starts)), args: make([]float64, size)})
+				l := law{written: w, x: n.X, state: append([]float64(nil), w.Starts...),
+					trial: make([]float64, len(w.Starts)), args: make([]float64, size)}
+				if w.Start != nil {
+					follow, err := w.Start()
+					if err != nil { // every question then fails, and the run says so
+						follow = func(float64, float64, float64, bool) float64 { return math.NaN() }
+					}
+					l.follow = follow
+				}
+				e.laws = append(e.laws, l)
 			}
 		}
 		c.laws = append(c.laws, e)
@@ -162,6 +173,10 @@ func chord(force, energy func(d float64) float64, d0, d1 float64) float64 {
 // writtenMean is a written law at mid-step; its states go by the implicit
 // midpoint rule.
 func (l *law) writtenMean(t, h, d0, d1, v float64) float64 {
+	if l.follow != nil {
+		l.mid = [3]float64{t + h/2, 0.5 * (d0 + d1), v}
+		return l.follow(l.mid[0], l.mid[1], l.mid[2], false)
+	}
 	a := l.args
 	a[0], a[1], a[mesh.ArgU], a[mesh.ArgV] = t+h/2, l.x, 0.5*(d0+d1), v
 	copy(l.trial, l.state)

@@ -105,6 +105,9 @@ func (e *resistance) book(c *cluster) {
 		case l.written != nil:
 			lost -= f * way // less than 0 where the law gives
 			copy(l.state, l.trial)
+			if l.follow != nil {
+				l.follow(l.mid[0], l.mid[1], l.mid[2], true)
+			}
 		case l.through > 0:
 			lost += -f * (l.to - l.q)
 			l.q = l.to

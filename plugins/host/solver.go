@@ -7,6 +7,9 @@ import (
 	"math"
 	"time"
 
+	"google.golang.org/grpc/codes"
+	"google.golang.org/grpc/status"
+
 	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/solver"
 	"github.com/tautspan/tautspan/plugins/wire"
@@ -173,6 +176,10 @@ func (s *Solver) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, pr
 func (s *Solver) broken(ctx context.Context, err error) error {
 	if ctx.Err() != nil {
 		return ctx.Err()
+	}
+	// The connection's own timer may be a moment ahead of the context's.
+	if _, timed := ctx.Deadline(); timed && status.Code(err) == codes.DeadlineExceeded {
+		return context.DeadlineExceeded
 	}
 	if err == io.EOF {
 		return &solver.FaultError{Solver: s.Name(), What: "ended without an outcome"}

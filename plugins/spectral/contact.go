@@ -5,6 +5,7 @@ import (
 
 	"github.com/tautspan/tautspan/engine/formula"
 	"github.com/tautspan/tautspan/engine/mesh"
+	"github.com/tautspan/tautspan/engine/scenario"
 )
 
 // contact is a force along one direction of the motion that is not linear in it. Over
@@ -24,7 +25,8 @@ type contact struct {
 	states []float64
 	next   []float64 // states at the step's end, after force
 	args   []float64
-	held   float64 // J, stored
+	follow scenario.Follow // of a law that is asked step by step
+	held   float64         // J, stored
 }
 
 // step is the time and length of a step that a law is asked about.
@@ -105,6 +107,9 @@ func (c *contact) pull(e1, d float64) float64 {
 // implicit midpoint rule.
 func (c *contact) written(e1 float64, s step) float64 {
 	w := c.law.Written
+	if c.follow != nil {
+		return c.follow(s.t+s.d/2, (c.e+e1)/2, (e1-c.e)/s.d, false)
+	}
 	a := c.args
 	a[formula.ArgT], a[formula.ArgX] = s.t+s.d/2, c.place
 	a[mesh.ArgU], a[mesh.ArgV] = (c.e+e1)/2, (e1-c.e)/s.d
@@ -197,6 +202,8 @@ func (c *contact) settle(e1, f float64, s step) (lost float64) {
 			c.slip = mid - math.Copysign(most/k, over)
 		}
 		c.held = c.weight * k * (e1 - c.slip) * (e1 - c.slip) / 2
+	case c.follow != nil:
+		c.follow(s.t+s.d/2, (c.e+e1)/2, (e1-c.e)/s.d, true)
 	case c.law.Written != nil:
 		c.written(e1, s)
 		copy(c.states, c.next)

@@ -83,6 +83,13 @@ func (l *laws) add(c contact, row []float64) {
 		c.states = append([]float64(nil), w.Starts...)
 		c.next = make([]float64, len(w.Starts))
 		c.args = make([]float64, mesh.ArgState+len(w.Starts))
+		if w.Start != nil {
+			follow, err := w.Start()
+			if err != nil { // every question then fails, and the run says so
+				follow = func(float64, float64, float64, bool) float64 { return math.NaN() }
+			}
+			c.follow = follow
+		}
 	}
 	l.contacts = append(l.contacts, c)
 }

@@ -60,6 +60,8 @@ func (b *book) judge(name string, f *conform.Finding) {
 		b.note(name, false, "errors %.1e", f.Error)
 	case last < rounding:
 		b.note(name, true, "exact but for rounding")
+	case f.Neglect > 0 && last <= bar.Bound+f.Neglect:
+		b.note(name, true, "errors %.1e; leaves something out and says so: %.1e", f.Error, f.Neglect)
 	case f.Claimed == 0 && last > before/10:
 		b.note(name, false, "claims to be faster than any order, and its errors fall as %.1e", f.Error)
 	case f.Claimed > 0 && f.Observed < f.Claimed-0.3:

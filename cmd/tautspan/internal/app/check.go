@@ -284,7 +284,7 @@ func (l *loaded) tryLoads() {
 	if len(l.net.Loads) == 0 {
 		return
 	}
-	var set loadSet
+	var set forceSet
 	defer set.close()
 	net := *l.net
 	net.Loads = append([]scenario.LoadOf[float64](nil), l.net.Loads...)

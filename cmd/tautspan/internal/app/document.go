@@ -231,6 +231,7 @@ type RunDoc struct {
 	Cautions     []CautionNote    `json:"cautions"`
 	Run          *RunFacts        `json:"run"`
 	Plucks       []PluckFacts     `json:"plucks"`
+	Plugins      []PluginUse      `json:"plugins"` // loads and laws that the run used
 	Notes        []string         `json:"notes"`
 	Cut          bool             `json:"cut"`
 	Verdict      string           `json:"verdict"`
@@ -260,6 +261,14 @@ type WatchVoice struct {
 	TimeOfPeak *float64 `json:"time_of_peak_s"`
 	ErrorBar   *float64 `json:"error_bar"`
 	Order      *float64 `json:"order"`
+}
+
+// PluginUse says which load or law a run used; the solvers' rows say it of theirs.
+type PluginUse struct {
+	Name    string  `json:"name"`
+	Kind    string  `json:"kind"`
+	Version string  `json:"version"`
+	SHA256  *string `json:"sha256"` // of a plugin's file; null: built in
 }
 
 // SolverRow is a solver that ran, or why it did not.

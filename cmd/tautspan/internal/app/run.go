@@ -46,7 +46,7 @@ type runner struct {
 	want      RunWant
 	file      string
 	solvers   *solverSet
-	loads     loadSet
+	loads     forceSet
 	session   *measure.Session
 	outcome   *compare.Outcome
 	answers   *measure.Answers
@@ -96,7 +96,7 @@ func (a *App) Run(ctx context.Context, in Input, want RunWant) (*RunDoc, []Histo
 func emptyRun() *RunDoc {
 	return &RunDoc{
 		Watches: []WatchRow{}, Solvers: []SolverRow{}, Requirements: []RequirementRow{}, Collected: []Collected{}, Energy: []EnergyRow{},
-		Cautions: []CautionNote{}, Plucks: []PluckFacts{}, Notes: []string{}, Verdict: "unsettled",
+		Cautions: []CautionNote{}, Plugins: []PluginUse{}, Plucks: []PluckFacts{}, Notes: []string{}, Verdict: "unsettled",
 	}
 }
 

@@ -13,6 +13,8 @@ import (
 func (r *runner) document() {
 	d := r.doc
 	d.Run, d.Plucks = r.runFacts(), r.pluckFacts()
+	d.Plugins = append(d.Plugins, r.loads.used...)
+	d.Plugins = append(d.Plugins, r.builtInLaws()...)
 	d.Cautions = cautions(r.net, formatEnergy)
 	d.Collected = collectedRows(r.answers.Collected[:min(r.asked, len(r.answers.Collected))])
 	var verdicts []string

@@ -31,7 +31,7 @@ type SweepWant struct {
 type sweeper struct {
 	*loaded
 	want    SweepWant
-	loads   loadSet
+	loads   forceSet
 	solvers *solverSet
 	doc     *SweepDoc
 	table   store.Table

@@ -67,20 +67,11 @@ func swings(net *scenario.Network, dissipates bool) []tryout.Check {
 
 // eachWritten visits the written laws of a network with the names that use them.
 func eachWritten(net *scenario.Network, visit func(name string, w *scenario.WrittenOf[float64])) {
-	for i := range net.Lines {
-		for k := range net.Lines[i].Nodes {
-			for _, l := range net.Lines[i].Nodes[k].Laws {
-				if l.Written != nil {
-					visit(l.Name, l.Written)
-				}
-			}
+	eachLaw(net, func(l *scenario.LawOf[float64]) {
+		if l.Written != nil {
+			visit(l.Name, l.Written)
 		}
-		for k := range net.Lines[i].Segments {
-			if l := net.Lines[i].Segments[k].Law; l != nil && l.Written != nil {
-				visit(l.Name, l.Written)
-			}
-		}
-	}
+	})
 }
 
 // givesBack is the share of the energy that went to and fro below which a law is
