@@ -12,7 +12,17 @@ func travelTime(p *mesh.Piece) float64 {
 	if p.TensionRise == 0 {
 		return p.TravelTime()
 	}
-	return 2 * p.Length * math.Sqrt(p.MassPerLength) / (math.Sqrt(p.Tension) + math.Sqrt(p.Tension+p.TensionRise*p.Length))
+	return 2 * p.Length * math.Sqrt(p.MassPerLength) / (math.Sqrt(p.Tension) + math.Sqrt(endTension(p)))
+}
+
+// endTension is the tension at a piece's end, N; 0, where a line hangs free, within
+// rounding.
+func endTension(p *mesh.Piece) float64 {
+	end := p.Tension + p.TensionRise*p.Length
+	if math.Abs(end) < 1e-12*p.Tension {
+		return 0
+	}
+	return end
 }
 
 // stiffer is the frequency at which a wave is as short as omega makes it on a string:

@@ -67,12 +67,12 @@ func validatePiece(m *mesh.Mesh, i int) error {
 		return fault("piece %d joins nodes %d and %d", i, p.From, p.To)
 	}
 	if !finite(p.Length, p.MassPerLength, p.Tension, p.Viscous) ||
-		!(p.Length > 0) || !(p.MassPerLength > 0) || !(p.Tension > 0) || p.Viscous < 0 ||
-		!finite(p.TravelTime(), 1/p.TravelTime(), p.Impedance()) {
+		!(p.Length > 0) || !(p.MassPerLength > 0) || p.Tension < 0 || p.Tension == 0 && !(p.TensionRise > 0) || p.Viscous < 0 ||
+		!finite(travelTime(p), 1/travelTime(p), p.Impedance()) {
 		return fault("piece %d: %g m, %g kg/m, %g N, %g N s/m^2", i, p.Length, p.MassPerLength, p.Tension, p.Viscous)
 	}
-	end := p.Tension + p.TensionRise*p.Length
-	if !finite(end, p.Bending, p.Internal) || !(end > 0) || p.Bending < 0 || p.Internal < 0 {
+	end := endTension(p)
+	if !finite(end, p.Bending, p.Internal) || end < 0 || p.Tension+end == 0 || p.Bending < 0 || p.Internal < 0 {
 		return fault("piece %d: %g N at its end, bending %g N m^2, internal loss %g s", i, end, p.Bending, p.Internal)
 	}
 	if p.Law != nil {
