@@ -278,8 +278,8 @@ func TestTieBracket(t *testing.T) {
 			for row := 0; row < 501; row++ {
 				want[0], want[1] = append(want[0], y[0]), append(want[1], y[2])
 				// A slack rope's bracket is at rest: set so after every short step.
-				for i := 0; i < 200; i++ {
-					y = runge(y, 1e-5, 2, 1, func(_ float64, y, dst []float64) {
+				for i := 0; i < 50; i++ {
+					y = runge(y, 4e-5, 2, 1, func(_ float64, y, dst []float64) {
 						e := y[0] - y[2]
 						bracket := 3000 * (e - y[4])
 						f := 2000*e + bracket
