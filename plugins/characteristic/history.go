@@ -114,6 +114,18 @@ func (h *history) after(t float64, side int) int {
 // left or the right of a break there. Error O(delta^(6-d)) away from breaks,
 // O(delta^(4-d)) beside one, on what is smooth between breaks.
 func (h *history) at(t float64, side, d int) float64 {
+	p, dp, ddp := h.jet(t, side)
+	switch d {
+	case 0:
+		return p
+	case 1:
+		return dp * h.inv
+	}
+	return ddp * h.inv * h.inv
+}
+
+// jet is the value and its first two derivatives by the number of samples; see at.
+func (h *history) jet(t float64, side int) (p, dp, ddp float64) {
 	i := h.after(t, side)
 	pos := t * h.inv
 	k := int(math.Floor(pos))
@@ -134,14 +146,14 @@ func (h *history) at(t float64, side, d int) float64 {
 		for j := range v {
 			v[j] = h.get(k - 2 + j)
 		}
-		return uniform(&v, pos-float64(k)+2, d, h.inv)
+		return uniform(&v, pos-float64(k)+2)
 	}
-	return h.beside(pos, k, kmin, kmax, i, d)
+	return h.beside(pos, k, kmin, kmax, i)
 }
 
 // beside reads near a break or the newest end: up to four knots, among them the
 // value at the break itself.
-func (h *history) beside(pos float64, k, kmin, kmax, i, d int) float64 {
+func (h *history) beside(pos float64, k, kmin, kmax, i int) (p, dp, ddp float64) {
 	first, last := kmin, kmax
 	if i > 0 {
 		first = kmin - 1
@@ -169,57 +181,56 @@ func (h *history) beside(pos float64, k, kmin, kmax, i, d int) float64 {
 			x[j], v[j] = float64(q)-pos, h.get(q)
 		}
 	}
-	return newton(&x, &v, n, d, h.inv)
+	return divided(&x, &v, n)
 }
 
 // newton is the d-th derivative at 0 of the polynomial through n points (x, v),
 // scaled by inv^d, by divided differences.
 func newton(x, v *[wide]float64, n, d int, inv float64) float64 {
+	p, dp, ddp := divided(x, v, n)
+	switch d {
+	case 0:
+		return p
+	case 1:
+		return dp * inv
+	}
+	return ddp * inv * inv
+}
+
+func divided(x, v *[wide]float64, n int) (p, dp, ddp float64) {
 	if n < 1 {
-		return 0
+		return 0, 0, 0
 	}
 	for j := 1; j < n; j++ {
 		for i := n - 1; i >= j; i-- {
 			v[i] = (v[i] - v[i-1]) / (x[i] - x[i-j])
 		}
 	}
-	p, dp, ddp := v[n-1], 0.0, 0.0
+	p = v[n-1]
 	for i := n - 2; i >= 0; i-- {
 		ddp = 2*dp - ddp*x[i]
 		dp = p - dp*x[i]
 		p = v[i] - p*x[i]
 	}
-	switch d {
-	case 0:
-		return p
-	case 1:
-		return dp * inv
-	}
-	return ddp * inv * inv
+	return p, dp, ddp
 }
 
-// uniform is newton for six values at 0, 1, ... 5, evaluated at x.
-func uniform(v *[wide]float64, x float64, d int, inv float64) float64 {
+// uniform is divided for six values at 0, 1, ... 5, evaluated at x.
+func uniform(v *[wide]float64, x float64) (p, dp, ddp float64) {
 	recip := [wide]float64{0, 1, 0.5, 1.0 / 3, 0.25, 0.2}
 	for j := 1; j < wide; j++ {
 		for i := wide - 1; i >= j; i-- {
 			v[i] = (v[i] - v[i-1]) * recip[j]
 		}
 	}
-	p, dp, ddp := v[wide-1], 0.0, 0.0
+	p = v[wide-1]
 	for i := wide - 2; i >= 0; i-- {
 		y := x - float64(i)
 		ddp = 2*dp + ddp*y
 		dp = p + dp*y
 		p = v[i] + p*y
 	}
-	switch d {
-	case 0:
-		return p
-	case 1:
-		return dp * inv
-	}
-	return ddp * inv * inv
+	return p, dp, ddp
 }
 
 // lagrange fills w with the weights of samples -2 .. 3 for a value at theta in
@@ -236,11 +247,11 @@ func lagrange(w *[wide]float64, theta float64) {
 	}
 }
 
-// leaky is the integral of exp(-gamma (b-t)) times the history over a .. b, by
-// Gauss's three points on panels of two samples at most, cut at breaks.
-func (h *history) leaky(gamma, a, b float64) float64 {
+// leaky is the integral of exp(-gamma (b-t)) times the history over a .. b, and
+// that of its rate squared, by Gauss's three points on panels of two samples at
+// most, cut at breaks.
+func (h *history) leaky(gamma, a, b float64) (sum, square float64) {
 	places, weights := gauss()
-	sum := 0.0
 	for i := h.after(a, 1); a < b; i++ {
 		end := b
 		if i < len(h.breaks) && h.breaks[i].t < b {
@@ -251,7 +262,9 @@ func (h *history) leaky(gamma, a, b float64) float64 {
 		for k := 0.0; k < n; k++ {
 			for g, x := range places {
 				t := a + (k+x)*step
-				sum += weights[g] * step * math.Exp(-gamma*(b-t)) * h.at(t, 1, 0)
+				v, rate, _ := h.jet(t, 1)
+				sum += weights[g] * step * math.Exp(-gamma*(b-t)) * v
+				square += weights[g] * step * rate * rate
 			}
 		}
 		if end == b {
@@ -259,7 +272,7 @@ func (h *history) leaky(gamma, a, b float64) float64 {
 		}
 		a = end
 	}
-	return sum
+	return sum, square * h.inv * h.inv
 }
 
 // reader reads a history that lags behind by a fixed delay. Where the lag is

@@ -69,13 +69,15 @@ func (l *lattice) begin(f, g, v func(x float64) float64) {
 	p := l.p
 	for j := 0; j < l.n; j++ {
 		lag := float64(j) * l.ds
-		l.jf[j] = p.decay(lag) * p.sent[0].leaky(p.gamma, -lag-l.ds, -lag)
-		l.jg[l.n-j] = p.decay(lag) * p.sent[1].leaky(p.gamma, -lag-l.ds, -lag)
+		f, _ := p.sent[0].leaky(p.gamma, -lag-l.ds, -lag)
+		g, _ := p.sent[1].leaky(p.gamma, -lag-l.ds, -lag)
+		l.jf[j], l.jg[l.n-j] = p.decay(lag)*f, p.decay(lag)*g
 	}
 	for end := range l.squares {
 		for j := l.n; j >= 0; j-- {
 			t := -float64(j) * l.ds
-			l.squares[end].depart(together(p.sent[end], p.sent[end], 0, t-l.ds, t))
+			_, square := p.sent[end].leaky(p.gamma, t-l.ds, t)
+			l.squares[end].depart(square)
 		}
 	}
 	l.jlast = [2]float64{l.jf[0], l.jg[l.n]}
@@ -103,10 +105,10 @@ func (l *lattice) advance() {
 		l.psi[j] = l.e * (l.psi[j+1] + half*l.r[j+1])
 	}
 	l.jlast = [2]float64{l.jf[0], l.jg[n]}
-	l.jf[0] = p.sent[0].leaky(p.gamma, t1-l.ds, t1)
-	l.jg[n] = p.sent[1].leaky(p.gamma, t1-l.ds, t1)
-	for end := range l.squares {
-		l.squares[end].depart(together(p.sent[end], p.sent[end], 0, t1-l.ds, t1))
+	for end, first := range [2]*float64{&l.jf[0], &l.jg[n]} {
+		part, square := p.sent[end].leaky(p.gamma, t1-l.ds, t1)
+		*first = part
+		l.squares[end].depart(square)
 	}
 	f, g := p.sent[0].at(t1, 1, 0), p.sent[1].at(t1, 1, 0)
 	l.f[0], l.df[0], l.phi[0] = f, f-l.f[0], 0
@@ -130,24 +132,41 @@ func (l *lattice) advance() {
 // to a wave at point j; it returns the source's own gain over the step.
 func (l *lattice) join(end, j int, src *source, t, fade float64, wave, gained, part *float64) float64 {
 	p := l.p
-	now := fade * src.h.at(t, 1, 0)
+	now, last := fade*src.h.at(t, 1, 0), fade*src.h.at(t-l.ds, 1, 0)
+	gain, before := now-last, *gained+last // what the wave gained by itself
 	*wave += now
 	*gained += now
-	*part += fade * src.h.leaky(p.gamma, t-l.ds, t)
-	square := together(src.h, src.h, 0, t-l.ds, t)
+	own, square := src.h.leaky(p.gamma, t-l.ds, t)
+	*part += fade * own
+	square *= fade * fade
+	const even = 1e-4 // chosen
+	if square*l.ds-gain*gain <= even*square*l.ds {
+		square += 2 * gain * before / l.ds // the source is as good as steady
+	} else {
+		square += 2 * fade * fade * l.meeting(end, src, t)
+	}
+	if end == 1 {
+		j = l.n - j
+	}
+	l.squares[end].add(j, square)
+	return gain
+}
+
+// meeting is the integral over the step to t of a source's rate times that of the
+// wave that it meets.
+func (l *lattice) meeting(end int, src *source, t float64) float64 {
+	p := l.p
 	away := src.x / p.c
 	if end == 1 {
 		away = (p.length - src.x) / p.c
-		j = l.n - j
 	}
-	square += 2 * p.decay(away) * together(src.h, p.sent[end], away, t-l.ds, t)
+	sum := p.decay(away) * together(src.h, p.sent[end], away, t-l.ds, t)
 	for _, o := range p.sources {
 		if between := (src.x - o.x) / p.c * float64(1-2*end); between > 0 {
-			square += 2 * p.decay(between) * together(src.h, o.h, between, t-l.ds, t)
+			sum += p.decay(between) * together(src.h, o.h, between, t-l.ds, t)
 		}
 	}
-	l.squares[end].add(j, fade*fade*square)
-	return now - fade*src.h.at(t-l.ds, 1, 0)
+	return sum
 }
 
 // settle finds r and u at the new time: v_j holds r_j with a weight of at most

@@ -75,7 +75,8 @@ func (r *run) makeSags(lag float64) {
 			}
 			for k := range s.flows {
 				f := &s.flows[k]
-				f.sum = p.c * f.h.leaky(p.gamma, -f.span, 0)
+				sum, _ := f.h.leaky(p.gamma, -f.span, 0)
+				f.sum = p.c * sum
 			}
 			if p.wind != nil {
 				s.press = pressOf(m, pi)
@@ -228,7 +229,9 @@ func (s *sway) gather(t float64) {
 	was := s.integral()
 	for i := range s.flows {
 		f := &s.flows[i]
-		f.sum = p.decay(dt)*f.sum + p.c*(f.h.leaky(p.gamma, t-dt, t)-p.decay(f.span)*f.h.leaky(p.gamma, t-dt-f.span, t-f.span))
+		in, _ := f.h.leaky(p.gamma, t-dt, t)
+		out, _ := f.h.leaky(p.gamma, t-dt-f.span, t-f.span)
+		f.sum = p.decay(dt)*f.sum + p.c*(in-p.decay(f.span)*out)
 	}
 	if p.lattice == nil && p.wind == nil {
 		return

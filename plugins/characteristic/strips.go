@@ -70,12 +70,7 @@ func together(a, b *history, lag, t0, t1 float64) float64 {
 			for k := 0.0; k < n; k++ {
 				for g, x := range places {
 					t := t0 + (k+x)*h
-					v := a.at(t, 1, 1)
-					w := v
-					if a != b {
-						w = b.at(t-lag, 1, 1)
-					}
-					sum += weights[g] * h * v * w
+					sum += weights[g] * h * a.at(t, 1, 1) * b.at(t-lag, 1, 1)
 				}
 			}
 		}
