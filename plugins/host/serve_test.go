@@ -34,6 +34,8 @@ func serve(what string) {
 		ServeSolver(spectral.New())
 	case "characteristic":
 		ServeSolver(characteristic.New())
+	case "a host":
+		hostUntilKilled()
 	case "not a plugin":
 		fmt.Println("good morning")
 	case "never starts":

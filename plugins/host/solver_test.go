@@ -55,6 +55,11 @@ func mustStart(t *testing.T, what string, limits Limits) *Process {
 // plucked is a small line at a watch.
 func plucked(t *testing.T) *mesh.Mesh {
 	t.Helper()
+	return pluckedMesh(t)
+}
+
+func pluckedMesh(t testing.TB) *mesh.Mesh {
+	t.Helper()
 	net := &scenario.Network{}
 	net.Lines = []scenario.Line{{Name: "l", Nodes: []scenario.Node{{Name: "a", Fixed: true}, {Name: "b", Fixed: true}},
 		Segments: []scenario.Segment{{Name: "s", Length: 2, MassPerLength: 0.5, Tension: 800}}}}
