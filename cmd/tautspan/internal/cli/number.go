@@ -29,7 +29,27 @@ func (r reader) show(v float64, si string, digits int) string {
 	if si == "rad" {
 		return unit.Digits(v*1e3, digits) + " mrad"
 	}
+	if si == moment {
+		factor, word := r.momentUnit(v)
+		return unit.Digits(v*factor, digits) + " " + word
+	}
 	return unit.Format(v, dimOf(si), r.system, digits)
+}
+
+// moment is the unit of a moment. It has the dimension of an energy, and nobody
+// reads a moment in joules.
+const moment = "N*m"
+
+func (r reader) momentUnit(scale float64) (factor float64, word string) {
+	switch scale = math.Abs(scale); {
+	case r.system == unit.US:
+		return 1 / 1.3558179483314004, "lbf*ft" // exact: 0.3048 m times 4.4482216152605 N
+	case scale >= 1e6:
+		return 1e-6, "MN*m"
+	case scale >= 1e3:
+		return 1e-3, "kN*m"
+	}
+	return 1, moment
 }
 
 // split is the value and the unit as two words, for columns; scale is the value
@@ -37,6 +57,9 @@ func (r reader) show(v float64, si string, digits int) string {
 func (r reader) unitFor(scale float64, si string) (factor float64, word string) {
 	if si == "rad" {
 		return 1e3, "mrad"
+	}
+	if si == moment {
+		return r.momentUnit(scale)
 	}
 	u, v := unit.Display(scale, dimOf(si), r.system)
 	if scale == 0 || u.Text == "" {

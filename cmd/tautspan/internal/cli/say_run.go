@@ -141,9 +141,9 @@ func (p *printer) sayRecords(records []record) {
 			label := ""
 			switch {
 			case i == 0:
-				label = p.show(top, r.unit, 3)
+				label = p.edge(top, top-bottom, r.unit)
 			case i == recordRows-1:
-				label = p.show(bottom, r.unit, 3)
+				label = p.edge(bottom, top-bottom, r.unit)
 			case i == zero:
 				label = "0"
 			}
@@ -152,6 +152,14 @@ func (p *printer) sayRecords(records []record) {
 		end := p.show(r.every*float64(len(r.values)-1), "s", 4)
 		p.line("%*s └0%s%s", left-2, "", strings.Repeat(" ", max(1, width-1-len(end))), end)
 	}
+}
+
+// edge is the label of a picture's edge; rounding about zero is zero.
+func (p *printer) edge(v, height float64, si string) string {
+	if math.Abs(v) < 1e-3*height {
+		return "0"
+	}
+	return p.show(v, si, 3)
 }
 
 func (p *printer) saySolvers(d *app.RunDoc) {
