@@ -135,6 +135,30 @@ func (s *still) Solve(ctx context.Context, p *author.Problem, w author.Want, out
 		for i := range out.Row(0, 0) {
 			out.Row(0, 0)[i] = u[i%2]
 		}
+	case "work":
+		// A mode sum of the start shape and the push: every question, real numbers.
+		at, times := make([]float64, 401), make([]float64, p.Rows)
+		for i := range at {
+			at[i] = p.Pieces[0].Length * float64(i) / 400
+		}
+		for i := range times {
+			times[i] = p.Every * float64(i)
+		}
+		u, err := p.Start(0, at)
+		if err != nil {
+			return o, err
+		}
+		f, err := p.PushForce(0, times)
+		if err != nil {
+			return o, err
+		}
+		row := out.Row(0, 0)
+		for i, t := range times {
+			for j, v := range u {
+				row[i] += v * math.Sin(float64(j)*t) / 401
+			}
+			row[i] += 1e-5 * f[i]
+		}
 	}
 	progress(1)
 	return o, nil

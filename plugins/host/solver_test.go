@@ -15,6 +15,7 @@ import (
 
 	"go.uber.org/goleak"
 
+	"github.com/tautspan/tautspan/engine/formula"
 	"github.com/tautspan/tautspan/engine/mesh"
 	"github.com/tautspan/tautspan/engine/scenario"
 	"github.com/tautspan/tautspan/engine/solver"
@@ -178,6 +179,29 @@ func TestFaults(t *testing.T) {
 	r, err := s.Solve(context.Background(), m, solver.Request{}, nil)
 	if err != nil || r.Series[0][0][0] != 0.01 || math.Abs(r.Series[0][0][1]-0.01*2/3) > 1e-15 {
 		t.Errorf("a healthy plugin: %v", err)
+	}
+}
+
+// An author's solver gives the same bits in this process and in one of its own.
+func TestForeignSameBits(t *testing.T) {
+	m := plucked(t)
+	shape := formula.Apply(formula.OpSine, formula.Arg(formula.ArgT), formula.Const(3), formula.Const(7.7), formula.Const(0.2))
+	m.Pushes = append(m.Pushes, mesh.Push{Name: "p", At: mesh.Spot{Node: -1, Piece: 0, At: 0.7}, Force: scenario.History{Value: shape, Breaks: []float64{0}}})
+	here, err := InProcess(&still{bad: "work"}).Solve(context.Background(), m, solver.Request{}, nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	s, err := NewSolver(mustStart(t, "work", Limits{}), false)
+	if err != nil {
+		t.Fatal(err)
+	}
+	there, err := s.Solve(context.Background(), m, solver.Request{}, nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	same(t, "an author's solver", here, there)
+	if here.Series[0][0][7] == 0 {
+		t.Error("nothing was worked out")
 	}
 }
 
