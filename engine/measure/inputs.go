@@ -73,6 +73,11 @@ func (r reads) law(l *scenario.LawOf[formula.Program]) {
 	if s := l.Stop; s != nil {
 		r.see(s.Gap, s.Spring)
 	}
+	if f := l.Followed; f != nil {
+		for _, p := range f.Parameters {
+			r.see(p.Value)
+		}
+	}
 	if w := l.Written; w != nil {
 		r.see(w.Force)
 		r.see(w.Starts...)

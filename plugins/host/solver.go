@@ -156,6 +156,9 @@ func (s *Solver) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, pr
 				return nil, &solver.FaultError{Solver: s.Name(), What: err.Error()}
 			}
 		case *wire.FromSolver_Fault:
+			if err := ended(ctx, of.Fault); err != nil {
+				return nil, err
+			}
 			return nil, &solver.FaultError{Solver: s.Name(), What: of.Fault}
 		case *wire.FromSolver_Outcome:
 			r, err := a.finish(of.Outcome)
@@ -170,6 +173,18 @@ func (s *Solver) Solve(ctx context.Context, m *mesh.Mesh, req solver.Request, pr
 			return nil, &solver.FaultError{Solver: s.Name(), What: "sent a message of no known kind"}
 		}
 	}
+}
+
+// ended tells a fault that is the caller's own wish to stop from others. The
+// plugin's copy of a deadline may pass a moment before the caller's.
+func ended(ctx context.Context, fault string) error {
+	if fault == context.DeadlineExceeded.Error() || fault == context.Canceled.Error() {
+		select {
+		case <-ctx.Done():
+		case <-time.After(100 * time.Millisecond):
+		}
+	}
+	return ctx.Err()
 }
 
 // broken says why a stream ended early: the caller's wish first.
