@@ -134,6 +134,9 @@ func (r *resolver) parameters(p *Plugin, c *syntax.Call, path string) ([]scenari
 // parameter compiles one value and checks dimension and range.
 func (r *resolver) parameter(q *Parameter, arg *syntax.Arg, u unit.Unit, path string) (formula.Program, bool) {
 	kind := unit.Kind{Word: "parameter", Name: u.Dim.Name(), Dim: u.Dim, SI: q.Unit}
+	if !named(u.Dim) {
+		kind.Name = "a quantity in " + q.Unit // as its author says it
+	}
 	v := r.want(arg.Value, plain, kind, q.Name)
 	r.path(path+"."+q.Name, arg.Value.Place())
 	if v.bad {
@@ -146,6 +149,9 @@ func (r *resolver) parameter(q *Parameter, arg *syntax.Arg, u unit.Unit, path st
 	}
 	return v.prog, true
 }
+
+// named tells whether a dimension has a name of its own.
+func named(d unit.Dim) bool { return !strings.HasPrefix(d.Name(), "a quantity in ") }
 
 // takes lists the parameters for a message.
 func (p *Plugin) takes() string {
