@@ -15,6 +15,7 @@ import (
 	"github.com/tautspan/tautspan/plugins/characteristic"
 	"github.com/tautspan/tautspan/plugins/conform"
 	"github.com/tautspan/tautspan/plugins/differences"
+	"github.com/tautspan/tautspan/plugins/laws"
 	"github.com/tautspan/tautspan/plugins/spectral"
 	"github.com/tautspan/tautspan/scenarios"
 )
@@ -26,7 +27,7 @@ const standingTransits = 3
 // bound is a shipped scenario as a network, shortened.
 func bound(t *testing.T, name string) *scenario.Network {
 	t.Helper()
-	c := dsl.Compile(scenarios.Files, name, dsl.Options{})
+	c := dsl.Compile(scenarios.Files, name, dsl.Options{Plugins: builtInLaws()})
 	if c.Diagnostics.HasErrors() {
 		t.Fatal(c.Diagnostics.Text(3))
 	}
@@ -124,4 +125,17 @@ func TestStandingChecks(t *testing.T) {
 			same(t, "in other units", base, outcomeOf(t, conform.Rescaled(net, length, duration, mass)), inUnits)
 		})
 	}
+}
+
+// builtInLaws tells the language of the laws that the program carries.
+func builtInLaws() []dsl.Plugin {
+	var out []dsl.Plugin
+	for _, l := range laws.BuiltIn() {
+		p := dsl.Plugin{Name: l.Is.Name, Kind: "law", Body: l.Text}
+		for _, q := range l.Is.Parameters {
+			p.Parameters = append(p.Parameters, dsl.Parameter{Name: q.Name, Unit: q.Unit, Least: q.Least, Most: q.Most, Preset: q.Preset, HasPreset: q.HasPreset})
+		}
+		out = append(out, p)
+	}
+	return out
 }

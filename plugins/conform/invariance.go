@@ -211,11 +211,24 @@ func Rescaled(net *scenario.Network, length, time, mass float64) *scenario.Netwo
 			s.Tension *= force
 			s.Axial *= force
 			s.Viscous *= mass / time / length
+			s.TensionRise *= force / length
+			s.Bending *= force * length * length
+			s.Internal *= time
+			if s.Law != nil {
+				l := rescaledLaw(s.Law, length, time, force, force/length)
+				s.Law = &l
+			}
 		}
 		for i := range l.Nodes {
 			n := &l.Nodes[i]
 			n.Mass *= mass
 			n.Spring *= force / length
+			n.Rotary *= force * length
+			n.Inertia *= mass * length * length
+			n.Laws = append([]scenario.LawOf[float64](nil), n.Laws...)
+			for k := range n.Laws {
+				n.Laws[k] = rescaledLaw(&n.Laws[k], length, time, force, force)
+			}
 			for k := range n.Dashpots {
 				n.Dashpots[k].C *= mass / time
 				n.Dashpots[k].Through *= force / length
@@ -273,4 +286,29 @@ func Rescaled(net *scenario.Network, length, time, mass float64) *scenario.Netwo
 	c.Run.For *= time
 	c.Run.Every *= time
 	return c.Network
+}
+
+// rescaledLaw is a law in other units; out is the unit of its force, or of its
+// force per length. States keep their own units: what they are fed is turned back.
+func rescaledLaw(l *scenario.LawOf[float64], length, time, force, out float64) scenario.LawOf[float64] {
+	n := *l
+	if f := l.Friction; f != nil {
+		n.Friction = &scenario.FrictionOf[float64]{Force: f.Force * force, Bracket: f.Bracket, Through: f.Through * force / length}
+	}
+	if s := l.Stop; s != nil {
+		n.Stop = &scenario.StopOf[float64]{Gap: s.Gap * length, Spring: s.Spring * force / length, Up: s.Up, Down: s.Down}
+	}
+	if w := l.Written; w != nil {
+		old := func(p formula.Program) formula.Program {
+			for arg, by := range map[int]float64{formula.ArgT: time, formula.ArgX: length, formula.ArgU: length, formula.ArgV: length / time} {
+				p = substitute(p, arg, formula.Div(formula.Arg(arg), formula.Const(by)))
+			}
+			return p
+		}
+		n.Written = &scenario.WrittenOf[float64]{Force: formula.Mul(formula.Const(out), old(w.Force)), Starts: w.Starts}
+		for _, r := range w.Rates {
+			n.Written.Rates = append(n.Written.Rates, formula.Mul(formula.Const(1/time), old(r)))
+		}
+	}
+	return n
 }
