@@ -2,6 +2,7 @@ package compare
 
 import (
 	"math"
+	"sync"
 	"testing"
 
 	"github.com/tautspan/tautspan/engine/scenario"
@@ -17,10 +18,13 @@ func TestNeglectIsInTheBars(t *testing.T) {
 		fakes := three()
 		truth := fakes[0].truth
 		fakes[0].truth = func(c int, s float64) float64 { return (1 + 0.6*share) * truth(c, s) }
-		fakes[0].work = 1 // the cheapest
+		fakes[0].work = 1   // the cheapest
+		var lock sync.Mutex // levels are solved at once
 		finest := 0
 		fakes[0].after = func(level int, r *solver.Result) {
+			lock.Lock()
 			finest = max(finest, level)
+			lock.Unlock()
 			if admits {
 				r.Neglect = share
 			}
